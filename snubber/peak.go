@@ -74,14 +74,10 @@ func (r Response) turns(offer func(tau float64), done func(tau float64) bool) {
 
 // turn is the one zero of the slope of s in [lo, hi], rising before and falling after it.
 func (m modes) turn(s series, lo, hi float64) float64 {
-	flat := 1e-15 * (math.Abs(s.y0) + math.Abs(s.y1))
 	tau := (lo + hi) / 2
 	for range 100 {
 		b := m.basis(tau)
 		f := m.slope(s, b)
-		if math.Abs(f) <= flat {
-			break
-		}
 		if f > 0 {
 			lo = tau
 		} else {
