@@ -1,0 +1,114 @@
+package page
+
+import (
+	"bytes"
+	"encoding/csv"
+	"fmt"
+	"io"
+	"strconv"
+	"time"
+)
+
+// CSV writes the page's tables and key figures for a spreadsheet or a script: comma-separated, a header
+// row each (RFC 4180, but with LF line ends as encoding/csv has them), values unscaled in SI units. Tables
+// after the first are set off by an empty line. Text that a spreadsheet would take for a formula gets a
+// leading apostrophe; numbers never do. Nothing is written when there is an error.
+func (p *Page) CSV(w io.Writer) error {
+	var buf bytes.Buffer
+	for _, it := range p.items {
+		records, err := it.body.csv()
+		if err != nil {
+			return fmt.Errorf("page %q as CSV: %w", p.title, err)
+		}
+		if records == nil {
+			continue
+		}
+		if buf.Len() > 0 {
+			buf.WriteByte('\n')
+		}
+		if err := csv.NewWriter(&buf).WriteAll(records); err != nil {
+			return fmt.Errorf("page %q as CSV: %w", p.title, err)
+		}
+	}
+	if _, err := w.Write(buf.Bytes()); err != nil {
+		return fmt.Errorf("page %q as CSV: %w", p.title, err)
+	}
+	return nil
+}
+
+// CSV writes the table alone, as Page.CSV does.
+func (t *Table) CSV(w io.Writer) error {
+	records, err := t.csv()
+	if err != nil {
+		return fmt.Errorf("write CSV: %w", err)
+	}
+	if err := csv.NewWriter(w).WriteAll(records); err != nil {
+		return fmt.Errorf("write CSV of table %q: %w", t.title, err)
+	}
+	return nil
+}
+
+// csvNames are the names in the header row.
+func (t *Table) csvNames() []string {
+	var names []string
+	for _, c := range t.columns {
+		switch c.kind {
+		case measured:
+			names = append(names, c.csv, c.csv+"_u")
+		case interval:
+			names = append(names, c.csv+"_low", c.csv+"_high")
+		default:
+			names = append(names, c.csv)
+		}
+	}
+	return names
+}
+
+func (t *Table) csv() ([][]string, error) {
+	rows, err := t.check()
+	if err != nil {
+		return nil, err
+	}
+	records := make([][]string, 0, len(rows)+1)
+	records = append(records, t.csvNames())
+	for _, row := range rows {
+		record := make([]string, 0, len(records[0]))
+		for j, x := range row {
+			record = x.appendCSV(record, t.columns[j].kind)
+		}
+		records = append(records, record)
+	}
+	return records, nil
+}
+
+// appendCSV appends the cell's fields.
+func (x cell) appendCSV(record []string, k kind) []string {
+	switch {
+	case k == measured && !x.full, k == interval && !x.full:
+		return append(record, "", "")
+	case !x.full:
+		return append(record, "")
+	}
+	switch k {
+	case words, label:
+		return append(record, guardCSV(x.text))
+	case instant:
+		return append(record, x.at.Format(time.RFC3339Nano))
+	case measured:
+		u := ""
+		if x.u != 0 {
+			u = csvNumber(x.u)
+		}
+		return append(record, csvNumber(x.value), u)
+	case interval:
+		if !x.bounded() {
+			return append(record, "", "")
+		}
+		return append(record, csvNumber(x.low), csvNumber(x.high))
+	}
+	return append(record, csvNumber(x.value))
+}
+
+// csvNumber is the shortest text that reads back as v. A value that is no number (NaN, +Inf, -Inf) is
+// written so, not hidden.
+func csvNumber(v float64) string { return strconv.FormatFloat(v, 'g', -1, 64) }
