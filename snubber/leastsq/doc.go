@@ -1,0 +1,31 @@
+// Package leastsq fits parameters to readings by weighted least squares: nonlinear models by the
+// Levenberg-Marquardt method (Fit), linear ones by an orthogonal factorisation (Linear), the straight
+// line with uncertainties in both coordinates (Line), and the propagation of a covariance through a
+// function's derivatives (Propagate).
+//
+// It is not a general optimiser: there is one minimum, the one downhill from the start, and no search for
+// others. Bounds are kept by transforming the parameters, not by active sets.
+//
+// Everything goes through an orthogonal factorisation of the Jacobian (QR with column pivoting in the
+// iteration, the singular values of its R for rank and covariance). The normal equations, which square the
+// condition number, are never formed.
+//
+// A fit that ends without an answer to trust says so in its Status; an error means there is no answer at
+// all. Uncertainties are standard uncertainties (k = 1). Units are the caller's: nothing here depends on
+// their size, as long as squares of the values stay within a float64.
+//
+// Methods:
+//
+//	Levenberg, "A method for the solution of certain non-linear problems in least squares",
+//	    Quart. Appl. Math. 2, 164 (1944)
+//	Marquardt, "An algorithm for least-squares estimation of nonlinear parameters",
+//	    J. SIAM 11, 431 (1963)
+//	More, "The Levenberg-Marquardt algorithm: implementation and theory", Lecture Notes in
+//	    Mathematics 630, 105 (1978): the scaling of the parameters
+//	Nielsen, "Damping parameter in Marquardt's method", report IMM-REP-1999-05, Technical University
+//	    of Denmark (1999): the damping from the gain ratio
+//	Bates and Watts, "A relative offset orthogonality convergence criterion for nonlinear least
+//	    squares", Technometrics 23, 179 (1981)
+//
+// The titles above are cited from memory; the code is checked against certified results, not against them.
+package leastsq
