@@ -8,3 +8,11 @@ type Estimate struct {
 	Low   float64 `json:"low"`  // lower end of the 95 % interval
 	High  float64 `json:"high"` // upper end of the 95 % interval
 }
+
+// normal95 is the half-width of a normal distribution's 95 % interval in standard deviations.
+const normal95 = 1.959963984540054
+
+// estimate is a value with its standard uncertainty and the interval of coverage factor k around it.
+func estimate(value, u, k float64) *Estimate {
+	return &Estimate{Value: value, U: u, Low: value - k*u, High: value + k*u}
+}

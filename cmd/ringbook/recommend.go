@@ -1,0 +1,80 @@
+package main
+
+import (
+	"ringbook/recipes"
+	"ringbook/recipes/page"
+	"ringbook/snubber"
+	"ringbook/snubber/preferred"
+	"ringbook/snubber/quantity"
+
+	"github.com/spf13/cobra"
+)
+
+func recommendCommand(a *app) *cobra.Command {
+	var scope scopeFlags
+	var maxPeak quantity.Volt
+	var derate, minDamping, cTol, rTol quantity.Fraction
+	var maxLoss quantity.Watt
+	var hz quantity.Hertz
+	cSeries, rSeries := preferred.E12, preferred.E24
+	network := "rc"
+	cmd := &cobra.Command{
+		Use:   "recommend",
+		Short: "R and C, ratings, losses, alternatives",
+		Long: `recommend fits the trials in scope and gives the RC network of least loss whose peak, with the parts anywhere in
+tolerance, stays under the limit: --max-peak, or the board's device rating times --derate. When nothing keeps the
+limits the nearest miss is shown and the exit code is 3.`,
+		Example: `  ringbook recommend --board winch-drive --revision B --max-peak 80V
+  ringbook recommend --max-peak 80V --c-tol 5% --r-tol 1% --c-series E6 --json`,
+		Args: words(0, 0),
+		RunE: func(cmd *cobra.Command, args []string) (err error) {
+			ctx := cmd.Context()
+			if network != "rc" && network != "any" {
+				if _, err := snubber.ParseKind(network); err != nil || network == string(snubber.Bare) {
+					return usagef("--network %q: it must be one of rc, c, rcd, any", network)
+				}
+				return usagef("--network %s: this version recommends RC networks only; leave the flag out", network)
+			}
+			src, err := a.source(ctx, &scope)
+			if err != nil {
+				return err
+			}
+			defer closing(src.Logbook, &err)
+			src.Limits = recipes.Request{
+				Limits: snubber.Limits{
+					MaxPeak: float64(maxPeak), MinDamping: float64(minDamping), MaxLoss: float64(maxLoss),
+					SwitchingHz: float64(hz), CSeries: cSeries, RSeries: rSeries, CTol: float64(cTol), RTol: float64(rTol),
+				},
+				Derate: float64(derate),
+			}
+			fit, rec, err := recipes.Recommendation(ctx, src)
+			if err != nil {
+				return err
+			}
+			if a.json {
+				err = a.printJSON(rec)
+			} else {
+				p := page.New("Network for " + src.Scope.Board + " " + src.Scope.Revision)
+				recipes.ChoicePage(p, fit, rec)
+				err = a.print(p)
+			}
+			if err == nil && !rec.Met {
+				return errNo
+			}
+			return err
+		},
+	}
+	scope.add(cmd)
+	f := cmd.Flags()
+	f.Var(&maxPeak, "max-peak", "highest voltage allowed across the switch")
+	f.Var(&derate, "derate", "share of the device's rating taken as the limit without --max-peak (80%)")
+	f.Var(&minDamping, "min-damping", "least damping ratio of the ring")
+	f.Var(&maxLoss, "max-loss", "most power the ring and the network may lose")
+	f.Var(&hz, "switching-hz", "switching frequency, where the trials state none or another is meant")
+	f.Var(&cTol, "c-tol", "tolerance of the capacitor to buy, such as 5%")
+	f.Var(&rTol, "r-tol", "tolerance of the resistor to buy, such as 1%")
+	f.Var(&cSeries, "c-series", "IEC 60063 series of the capacitor")
+	f.Var(&rSeries, "r-series", "IEC 60063 series of the resistor")
+	f.StringVar(&network, "network", network, "rc, or any")
+	return cmd
+}

@@ -1,0 +1,115 @@
+package recipes
+
+import (
+	"context"
+	"errors"
+	"fmt"
+
+	"ringbook/recipes/page"
+	"ringbook/snubber"
+	"ringbook/snubber/quantity"
+)
+
+// Request is what a recommendation is asked to keep. What is left zero comes from the trials and the board.
+type Request struct {
+	snubber.Limits
+	Derate float64 // share of the device's rating used as the limit where MaxPeak is zero; 0: 0.8, common practice
+}
+
+const usualDerate = 0.8
+
+// Recommendation fits the trials in scope and recommends a network for them.
+func Recommendation(ctx context.Context, src Source) (*snubber.FitResult, *snubber.Recommendation, error) {
+	trials, err := src.Trials(ctx)
+	if err != nil {
+		return nil, nil, err
+	}
+	fit, err := snubber.Fit(ctx, trials)
+	if err != nil {
+		return nil, nil, err
+	}
+	at, notes, err := snubber.Worst(fit, trials)
+	if err != nil {
+		return nil, nil, err
+	}
+	lim := src.Limits.Limits
+	if lim.SwitchingHz == 0 {
+		lim.SwitchingHz = at.SwitchingHz
+	}
+	if lim.SwitchingHz == 0 {
+		return nil, nil, errors.New("recommending a network: no trial states a switching frequency and none was given, so the loss is unknown; give --switching-hz")
+	}
+	if lim.MaxPeak == 0 {
+		if lim.MaxPeak, err = src.ratedPeak(ctx, fit.Board); err != nil {
+			return nil, nil, err
+		}
+	}
+	rec, err := snubber.Recommend(ctx, fit.Nominal(), at.Excitation, lim)
+	if err != nil {
+		return nil, nil, err
+	}
+	rec.Warnings = append(append(append([]string{}, fit.Warnings...), notes...), rec.Warnings...)
+	return fit, rec, nil
+}
+
+// ratedPeak is the board's device rating times the derating.
+func (s Source) ratedPeak(ctx context.Context, board string) (float64, error) {
+	boards, err := s.Logbook.Boards(ctx)
+	if err != nil {
+		return 0, err
+	}
+	derate := s.Limits.Derate
+	if derate == 0 {
+		derate = usualDerate
+	}
+	for _, b := range boards {
+		if b.Name == board && b.DeviceV > 0 {
+			return b.DeviceV * derate, nil
+		}
+	}
+	return 0, fmt.Errorf("recommending a network: board %q has no voltage rating and no limit was given; give --max-peak, or the rating by `ringbook board add`", board)
+}
+
+// Choice is the page of a recommendation: the network, what it does, and what else would do.
+func Choice(ctx context.Context, p *page.Page, src Source) error {
+	// The loop as the trials have it, and the cheapest network that holds with its parts anywhere in tolerance.
+	fit, rec, err := Recommendation(ctx, src)
+	if err != nil {
+		return err
+	}
+	ChoicePage(p, fit, rec)
+	return nil
+}
+
+// ChoicePage puts a recommendation on a page.
+func ChoicePage(p *page.Page, fit *snubber.FitResult, rec *snubber.Recommendation) {
+	c := rec.Choice
+	if rec.Met {
+		p.Say("Fit **%s in series with %s** across the switch.", quantity.Code(c.R, quantity.Resistance), quantity.Code(c.C, quantity.Capacitance))
+	} else {
+		p.Say("**No network of these series keeps the limits.** The nearest miss is shown.")
+	}
+	t := choiceTable("Networks compared")
+	choiceRow(t, "bare", rec.Bare)
+	if rec.Met {
+		choiceRow(t, "recommended", c)
+	} else {
+		choiceRow(t, "nearest miss", c)
+	}
+	for i := range rec.Alternatives {
+		choiceRow(t, "alternative", &rec.Alternatives[i])
+	}
+	choiceRow(t, "rule of thumb", rec.RuleOfThumb).Note("R next to Z0 and C three times the loop's: common practice")
+	t.Note("loss is that of the ring and the network: in R, in the switch at turn-on, in the loop")
+	p.Table(t)
+	if rec.Met {
+		p.Figures(
+			page.Figure{Name: "resistor to buy", CSV: "rating_resistor_w", Unit: quantity.Power, Value: c.Ratings.ResistorW, Remark: "non-inductive; at least twice the loss; the data sheet's derating line decides"},
+			page.Figure{Name: "capacitor sees", CSV: "rating_capacitor_v", Unit: quantity.Voltage, Value: c.Ratings.CapacitorV, Remark: "C0G or film; rate it above this"},
+		)
+		p.Say("The resistor runs hot and the node stays live: switch off, discharge and measure before touching. Local codes and licensed practice decide.")
+	}
+	for _, w := range rec.Warnings {
+		p.Warn("%s.", w)
+	}
+}

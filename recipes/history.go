@@ -1,0 +1,45 @@
+package recipes
+
+import (
+	"context"
+
+	"ringbook/recipes/page"
+	"ringbook/snubber/quantity"
+
+	"ringbook/snubber"
+	"ringbook/store"
+)
+
+// History is the page of the logbook itself: every trial in scope, the latest last.
+func History(ctx context.Context, p *page.Page, src Source) error {
+	// The rows come in the order they were read. A struck trial stays, with its reason.
+	trials, err := src.Trials(ctx)
+	if err != nil {
+		return err
+	}
+	if len(trials) == 0 {
+		p.Say("No trial is in scope. `ringbook trial take` and `ringbook trial enter` log one, `ringbook trial import` many.")
+		return nil
+	}
+	t := page.NewTable("History",
+		page.Label("trial", "id"),
+		page.Instant("at", "at"),
+		page.Label("board", "board"),
+		page.Label("rev", "revision"),
+		page.Label("network", "network"),
+		page.Part("C", quantity.Capacitance, "c"),
+		page.Part("R", quantity.Resistance, "r"),
+		page.Measured("ring", quantity.Frequency, "ring_hz"),
+		page.Measured("peak", quantity.Voltage, "peak_v"),
+		page.Words("note", "note"),
+	)
+	for _, x := range trials {
+		row := t.Row(store.ShortID(x.ID), x.At.UTC(), x.Board, x.Revision, string(x.Network.Kind), orNone(x.Network.C), orNone(x.Network.R),
+			reading(x, snubber.RingHz), reading(x, snubber.PeakV), x.Note)
+		if x.Struck != "" {
+			row.Note("struck: %s", x.Struck)
+		}
+	}
+	p.Table(t)
+	return nil
+}

@@ -1,0 +1,217 @@
+package snubber
+
+import (
+	"errors"
+	"fmt"
+	"math"
+
+	"ringbook/snubber/leastsq"
+)
+
+// What is taken where a trial states no uncertainty, as a fraction of the value (standard uncertainties) or as a
+// bound (the capacitor's tolerance). A warning says so.
+const (
+	unstatedRing  = 0.005
+	unstatedDecay = 0.05
+	unstatedPeak  = 0.02
+	unstatedCTol  = 0.05
+)
+
+// LinePoint is one trial on the substitution line.
+type LinePoint struct {
+	Trial    string
+	AddedC   float64 // F: what was fitted across the node, with the probe
+	AddedU   float64 // F, standard uncertainty
+	Inverse  float64 // 1/(2 pi f0)^2, s^2, of the undamped frequency
+	InverseU float64 // s^2, standard uncertainty
+	Residual float64 // Inverse less the line's, s^2
+}
+
+// SubstitutionLine is the straight line of 1/(2 pi f0)^2 against added capacitance: its slope is the loop's
+// inductance, and it meets zero at minus the loop's capacitance.
+//
+//	1/(2 pi f0)^2 = L Cadd + L C
+type SubstitutionLine struct {
+	Points    []LinePoint
+	Slope     float64 // H
+	Intercept float64 // s^2
+	SlopeU    float64 // H
+	InterU    float64 // s^2
+	Cov       float64 // H s^2, of slope and intercept
+	Chi2      float64
+	DOF       int
+	Warnings  []string
+}
+
+// At is the line at an added capacitance (F), s^2, with its standard uncertainty.
+func (s *SubstitutionLine) At(c float64) (y, u float64) {
+	return s.Intercept + s.Slope*c, math.Sqrt(math.Max(0, s.InterU*s.InterU+2*c*s.Cov+c*c*s.SlopeU*s.SlopeU))
+}
+
+// FitLine fits the substitution line to the trials of one board revision that fitted nothing or a capacitor alone
+// and read the ring's frequency.
+//
+// Both coordinates carry uncertainty (York, Evensen, Martinez and De Basabe Delgado, Am. J. Phys. 72, 367, 2004):
+// the capacitor's, from its measurement or its tolerance, and the frequency's. The frequency as seen is damped; it
+// is corrected to undamped by f0^2 = f^2 + 1/(2 pi tau)^2 with the trial's decay time tau, or with the mean of the
+// others' where it read none: a series loss makes tau = 2 L/r whatever the capacitance. The probe's capacitance
+// counts as added.
+func FitLine(trials []Trial) (*SubstitutionLine, error) {
+	line := &SubstitutionLine{}
+	rate, rateU := meanDecayRate(trials)
+	var unstated, undamped, tolerance int
+	for _, t := range trials {
+		ring, ok := t.Reading(RingHz)
+		if !ok || t.Struck != "" || (t.Network.Kind != Bare && t.Network.Kind != C) {
+			continue
+		}
+		if ring.U == 0 {
+			ring.U = unstatedRing * ring.Value
+			unstated++
+		}
+		d, du := rate, rateU
+		if decay, ok := t.Reading(DecayS); ok {
+			d = 1 / decay.Value
+			du = d * decayU(decay) / decay.Value
+		} else if rate == 0 {
+			undamped++
+		}
+		w := 2 * math.Pi * ring.Value
+		w0 := w*w + d*d
+		p := LinePoint{Trial: t.ID, Inverse: 1 / w0}
+		p.InverseU = math.Hypot(2*w*2*math.Pi*ring.U, 2*d*du) / (w0 * w0)
+		var stated bool
+		p.AddedC, p.AddedU, stated = fittedC(t.Network)
+		if !stated {
+			tolerance++
+		}
+		p.AddedC += t.ProbeC
+		line.Points = append(line.Points, p)
+	}
+	if err := line.enough(); err != nil {
+		return nil, fmt.Errorf("fitting the substitution line: %w", err)
+	}
+	if unstated > 0 {
+		line.warn("%d ring frequencies state no uncertainty: %g %% was taken; state ring_hz_u", unstated, 100*unstatedRing)
+	}
+	if undamped > 0 {
+		line.warn("no decay was read: the ring's frequency was taken as undamped, which makes the loop look slower; read decay_s")
+	}
+	if tolerance > 0 {
+		line.warn("%d capacitors state no tolerance: %g %% was taken; state c_tol or measure them", tolerance, 100*unstatedCTol)
+	}
+	if err := line.fit(); err != nil {
+		return nil, fmt.Errorf("fitting the substitution line: %w", err)
+	}
+	return line, nil
+}
+
+func (s *SubstitutionLine) warn(format string, args ...any) {
+	s.Warnings = append(s.Warnings, fmt.Sprintf(format, args...))
+}
+
+// enough says what is missing for a line.
+func (s *SubstitutionLine) enough() error {
+	switch n := len(s.Points); n {
+	case 0:
+		return errors.New("no trial in scope read a ring frequency with nothing or a capacitor alone fitted; take at least one bare trial and one with a known capacitor")
+	case 1:
+		return errors.New("only one trial in scope read a ring frequency with nothing or a capacitor alone fitted: one point makes no line; fit a known capacitor, about three times the node's capacitance, and read again")
+	}
+	low, high := s.Points[0].AddedC, s.Points[0].AddedC
+	for _, p := range s.Points {
+		low, high = math.Min(low, p.AddedC), math.Max(high, p.AddedC)
+	}
+	switch {
+	case high == 0:
+		return fmt.Errorf("all %d trials are bare: without a known capacitor inductance and capacitance cannot be told apart; fit one that brings the frequency down to about half", len(s.Points))
+	case high-low <= 1e-6*high:
+		return fmt.Errorf("all %d trials had the same capacitance, %.4g F, across the node: a line needs two; read the bare node too, or fit another capacitor", len(s.Points), high)
+	}
+	return nil
+}
+
+// fit is York's line with the capacitance along x.
+func (s *SubstitutionLine) fit() error {
+	n := len(s.Points)
+	x, y, ux, uy := make([]float64, n), make([]float64, n), make([]float64, n), make([]float64, n)
+	for i, p := range s.Points {
+		x[i], y[i], ux[i], uy[i] = p.AddedC, p.Inverse, p.AddedU, p.InverseU
+	}
+	l, err := leastsq.Line(x, y, ux, uy, nil)
+	if err != nil {
+		return err
+	}
+	s.Intercept, s.Slope = l.Intercept, l.Slope
+	s.InterU, s.SlopeU, s.Cov = l.InterceptU, l.SlopeU, l.Cov
+	s.Chi2, s.DOF = l.Chi2, l.DOF
+	for i := range s.Points {
+		p := &s.Points[i]
+		p.Residual = p.Inverse - (s.Intercept + s.Slope*p.AddedC)
+	}
+	switch {
+	case !(s.Slope > 0):
+		return s.rising()
+	case !(s.Intercept > 0):
+		return fmt.Errorf("the line meets zero at %.3g F: the loop's capacitance would be negative; a capacitor is mislabelled, a frequency misread (twice the ring, or the switching frequency), or the probe's capacitance overstated", s.Intercept/s.Slope)
+	}
+	return nil
+}
+
+// rising names the two trials that contradict the resonance.
+func (s *SubstitutionLine) rising() error {
+	a, b := s.Points[0], s.Points[0]
+	for _, p := range s.Points {
+		if p.AddedC < a.AddedC {
+			a = p
+		}
+		if p.AddedC > b.AddedC {
+			b = p
+		}
+	}
+	hz := func(p LinePoint) float64 { return 1 / (2 * math.Pi * math.Sqrt(p.Inverse)) }
+	return fmt.Errorf("the frequency rises with added capacitance (%.4g Hz at %.3g F, %.4g Hz at %.3g F): no resonance does; check the capacitors' marking and whether the ring was read, not the switching frequency", hz(a), a.AddedC, hz(b), b.AddedC)
+}
+
+// fittedC is the network's capacitance, F, with its standard uncertainty; stated is false where neither a
+// measurement nor a tolerance was given. A tolerance is the bound of a rectangular distribution (GUM 4.3.7).
+func fittedC(n Network) (c, u float64, stated bool) {
+	switch {
+	case n.C == 0:
+		return 0, 0, true
+	case n.MeasuredC > 0 && n.MeasuredU > 0:
+		return n.MeasuredC, n.MeasuredU, true
+	case n.MeasuredC > 0:
+		return n.MeasuredC, n.MeasuredC * n.CTol / math.Sqrt(3), n.CTol > 0
+	case n.CTol > 0:
+		return n.C, n.C * n.CTol / math.Sqrt(3), true
+	}
+	return n.C, n.C * unstatedCTol / math.Sqrt(3), false
+}
+
+func decayU(r Reading) float64 {
+	if r.U == 0 {
+		return unstatedDecay * r.Value
+	}
+	return r.U
+}
+
+// meanDecayRate is the weighted mean of 1/tau over the trials that fitted nothing or a capacitor alone and read a
+// decay, 1/s; zero when none did.
+func meanDecayRate(trials []Trial) (rate, u float64) {
+	var sum, weight float64
+	for _, t := range trials {
+		d, ok := t.Reading(DecayS)
+		if !ok || t.Struck != "" || (t.Network.Kind != Bare && t.Network.Kind != C) || !(d.Value > 0) {
+			continue
+		}
+		r := 1 / d.Value
+		ur := r * decayU(d) / d.Value
+		sum += r / (ur * ur)
+		weight += 1 / (ur * ur)
+	}
+	if weight == 0 {
+		return 0, 0
+	}
+	return sum / weight, 1 / math.Sqrt(weight)
+}
