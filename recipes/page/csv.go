@@ -36,18 +36,6 @@ func (p *Page) CSV(w io.Writer) error {
 	return nil
 }
 
-// CSV writes the table alone, as Page.CSV does.
-func (t *Table) CSV(w io.Writer) error {
-	records, err := t.csv()
-	if err != nil {
-		return fmt.Errorf("write CSV: %w", err)
-	}
-	if err := csv.NewWriter(w).WriteAll(records); err != nil {
-		return fmt.Errorf("write CSV of table %q: %w", t.title, err)
-	}
-	return nil
-}
-
 // csvNames are the names in the header row.
 func (t *Table) csvNames() []string {
 	var names []string

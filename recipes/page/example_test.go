@@ -69,4 +69,28 @@ func Example() {
 		fmt.Println(err)
 	}
 	// Output:
+	// Loop of winch-drive B
+	// ═════════════════════
+	//
+	// The line through 3 trials gives the loop of the board alone, without the
+	// probe.
+	//
+	// Quantity                  Value  95 % interval         Remark
+	// ────────────────────────────────────────────────────────────────────────
+	// loop inductance    36.20(41) nH  35.40 nH to 37.00 nH
+	// node capacitance  405.0(73) pF   390.7 pF to 419.3 pF  the probe's 8 pF
+	//                                                        taken off
+	// loop resistance     –                                  no decay was read
+	//
+	// Trials
+	//
+	// read (UTC)        network     C  ring / MHz  peak / V
+	// ────────────────────────────────────────────────────────
+	// 2031-03-14 09:30  bare        –  41.200(62)      87.5
+	// 2031-03-14 09:34  c        470p  28.310(42)      92.0
+	// 2031-03-14 09:39  c         2n2  16.440(25)       –    a
+	//
+	// a  The peak was not read; read it at the switch's own pins.
+	//
+	// Warning: The loop resistance is unknown: read decay_s of one trial.
 }

@@ -103,29 +103,48 @@ func cellMarkdown(s string) string {
 func markdownSpans(spans []span, atStart bool) string {
 	var b strings.Builder
 	for i, s := range spans {
-		open, shut := "", ""
-		if s.style&strong != 0 {
-			open, shut = "**", "**"
-		}
-		if s.style&emphasis != 0 {
-			open, shut = open+"*", "*"+shut
-		}
-		body := escapeMarkdown(s.text, atStart && i == 0)
 		if s.style&code != 0 {
-			body = codeMarkdown(s.text)
+			b.WriteString(s.style.enclose(codeMarkdown(s.text)))
+			continue
 		}
-		b.WriteString(open + body + shut)
+		// A delimiter beside a space is no delimiter (CommonMark 0.31.2, 6.2), so spaces stay outside.
+		body := strings.Trim(s.text, " ")
+		before, after := 0, 0
+		if body != "" {
+			before = len(s.text) - len(strings.TrimLeft(s.text, " "))
+			after = len(s.text) - before - len(body)
+			body = s.style.enclose(escapeMarkdown(body, atStart && i == 0))
+		} else {
+			before = len(s.text)
+		}
+		b.WriteString(strings.Repeat(" ", before) + body + strings.Repeat(" ", after))
 	}
-	return b.String()
+	return strings.TrimSpace(b.String())
+}
+
+// enclose puts the style's delimiters around what stands between them.
+func (st style) enclose(s string) string {
+	if st&emphasis != 0 {
+		s = "*" + s + "*"
+	}
+	if st&strong != 0 {
+		s = "**" + s + "**"
+	}
+	return s
 }
 
 // codeMarkdown fences code with more backticks than it has in a row (CommonMark 0.31.2, 6.1).
 func codeMarkdown(s string) string {
-	fence := "`"
-	for strings.Contains(s, fence) {
-		fence += "`"
+	longest, run := 0, 0
+	for i := range len(s) {
+		run++
+		if s[i] != '`' {
+			run = 0
+		}
+		longest = max(longest, run)
 	}
-	if s == "" || strings.HasPrefix(s, "`") || strings.HasSuffix(s, "`") {
+	fence := strings.Repeat("`", longest+1)
+	if s == "" || strings.Trim(s, "` ") != s {
 		s = " " + s + " "
 	}
 	return fence + s + fence

@@ -2,6 +2,7 @@ package page
 
 import (
 	"math"
+	"strconv"
 	"strings"
 
 	"ringbook/snubber/quantity"
@@ -46,8 +47,8 @@ func (s scale) withUnit(n string) string {
 
 // number writes a value known to a few digits only, without the zeros at its end.
 func (s scale) number(v float64) string {
-	if s.symbol == "" && v == math.Trunc(v) && math.Abs(v) < 1e6 {
-		return quantity.Format(v, quantity.Ratio, 0)
+	if s.symbol == "" && v == math.Trunc(v) && math.Abs(v) < 1e15 {
+		return strconv.FormatFloat(v, 'f', 0, 64)
 	}
 	return trimZeros(s.rounded(v))
 }

@@ -46,7 +46,7 @@ func (o origin) statement() (file string, line int) {
 }
 
 // New gives an empty page with a title.
-func New(title string) *Page { return &Page{title: plain(title)} }
+func New(title string) *Page { return &Page{title: strings.TrimSpace(plain(title))} }
 
 // Table puts a table on the page. Rows and notes added to it later still appear.
 func (p *Page) Table(t *Table) { p.items = append(p.items, item{here(), t}) }
@@ -74,17 +74,6 @@ func (p *Page) Warn(format string, args ...any) {
 // unit, uncertainty and interval.
 func (p *Page) Figures(figures ...Figure) {
 	p.items = append(p.items, item{here(), figureList(figures)})
-}
-
-// Tables lists the page's tables in order, for a caller that writes each one's CSV to a file of its own.
-func (p *Page) Tables() []*Table {
-	var ts []*Table
-	for _, it := range p.items {
-		if t, ok := it.body.(*Table); ok && t != nil {
-			ts = append(ts, t)
-		}
-	}
-	return ts
 }
 
 // sentence and warning are prose.

@@ -58,12 +58,12 @@ func escapeMarkdown(s string, atStart bool) string {
 	var b strings.Builder
 	for i := 0; i < len(s); i++ {
 		switch c := s[i]; {
-		case strings.IndexByte("\\`*_[]<>&|~$@", c) >= 0,
+		case strings.IndexByte("\\`*_[]<>&|~$@#", c) >= 0,
 			c == ':' && strings.HasPrefix(s[i:], "://"),
 			c == '.' && i >= 3 && strings.EqualFold(s[i-3:i], "www"),
 			c == '!' && strings.HasPrefix(s[i:], "!["):
 			b.WriteByte('\\')
-		case atStart && strings.IndexByte("#+-=", c) >= 0 && strings.TrimSpace(s[:i]) == "",
+		case atStart && strings.IndexByte("+-=", c) >= 0 && strings.TrimSpace(s[:i]) == "",
 			atStart && (c == '.' || c == ')') && i > 0 && strings.Trim(s[:i], "0123456789") == "":
 			b.WriteByte('\\')
 		}

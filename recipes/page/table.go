@@ -4,6 +4,7 @@ import (
 	"errors"
 	"fmt"
 	"slices"
+	"strings"
 )
 
 // Table is a table of results: typed columns, rows, footnotes. NewTable makes it.
@@ -22,7 +23,7 @@ type Row struct {
 
 // NewTable gives an empty table.
 func NewTable(title string, columns ...Column) *Table {
-	return &Table{title: plain(title), columns: columns}
+	return &Table{title: strings.TrimSpace(plain(title)), columns: columns}
 }
 
 // Row adds a row, one cell a column; what a cell may be depends on its column. A row that does not fit

@@ -21,7 +21,9 @@ func (p *Page) Text(w io.Writer, o TextOptions) error {
 		o.Width = 80
 	}
 	t := &terminal{width: max(o.Width, 40), colour: o.Colour}
-	t.line(t.strong(p.title))
+	for _, l := range wrap(p.title, t.width) {
+		t.line(t.strong(l))
+	}
 	t.line(strings.Repeat("═", min(width(p.title), t.width)))
 	for _, it := range p.items {
 		t.line("")
@@ -42,8 +44,9 @@ type terminal struct {
 	colour bool
 }
 
+// line writes one line. No-break spaces have done their work by now and become spaces, which can be searched for.
 func (t *terminal) line(s string) {
-	t.buf.WriteString(strings.TrimRight(s, " "))
+	t.buf.WriteString(strings.TrimRight(strings.ReplaceAll(s, "\u00a0", " "), " "))
 	t.buf.WriteByte('\n')
 }
 
