@@ -12,9 +12,9 @@ import (
 // The prefix is that of the larger of the two: an uncertainty of 560 nH about 3 nH is "0(560) nH", not a value
 // to its own digits.
 //
-// An uncertainty of zero is left out and the value written in full, as is one below about 1e-13 of the value, whose
-// place a float64 does not hold. An uncertainty that is negative, infinite or
-// NaN is not known, and written 470(?) pF. A value that is NaN or infinite is written as Format does.
+// An uncertainty of zero is left out and the value written in full, as is one below about 1e-13 of the value,
+// whose place a float64 does not hold. An uncertainty that is negative, infinite or NaN is not known, and written
+// 470(?) pF. A value that is NaN or infinite is written as Format does.
 func FormatUncertain(v, u float64, unit Unit) string {
 	if u == 0 || math.IsNaN(v) || math.IsInf(v, 0) {
 		return Format(v, unit, 0)
