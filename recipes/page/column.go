@@ -29,7 +29,7 @@ const (
 // with one SI prefix for the whole column.
 //
 // A cell may be nil in any column: nothing was read, or the trials cannot tell. It prints as an en dash
-// and is empty in CSV.
+// and is empty in CSV. A nil *snubber.Estimate and a zero time.Time are the same; an empty string is blank.
 type Column struct {
 	head string
 	unit quantity.Unit
@@ -41,7 +41,8 @@ type Column struct {
 // after three lines in the terminal. No other output cuts them.
 func Words(head, csv string) Column { return Column{head, quantity.Ratio, csv, words} }
 
-// Label is a column of short names: string cells, never wrapped.
+// Label is a column of short names: string cells, never wrapped, and cut in the terminal beyond 38
+// columns or half its width.
 func Label(head, csv string) Column { return Column{head, quantity.Ratio, csv, label} }
 
 // Part is a column of parts' values as their IEC 60062 codes (470p, 4k7); cells as for Number.

@@ -11,7 +11,7 @@ type Figure struct {
 	Name   string // in words, such as "loop inductance"
 	CSV    string // its name in CSV, with the unit, such as inductance_h
 	Unit   quantity.Unit
-	Value  any    // as a cell of a Measured column, or a string; nil: the trials cannot tell
+	Value  any    // as a cell of a Measured column, or a short string; nil: the trials cannot tell
 	Remark string // one short remark, or ""
 }
 
@@ -43,7 +43,7 @@ func (fs figureList) grid() (*grid, error) {
 		return nil, err
 	}
 	g := &grid{columns: []gridColumn{
-		{head: "Quantity", label: true}, {head: "Value", align: decimal}, {head: "95\u00a0% interval"}, {head: "Remark", flexible: true},
+		{head: "Quantity", label: true}, {head: "Value", align: decimal, label: true}, {head: "95\u00a0% interval"}, {head: "Remark", flexible: true},
 	}}
 	hasInterval, hasRemark := false, false
 	for i, f := range fs {

@@ -9,7 +9,7 @@ import (
 
 const (
 	gap      = 2  // columns of the terminal between columns of a table
-	maxLabel = 40 // columns a label may take
+	maxLabel = 38 // columns a label may take, and no more than half the terminal: two fit side by side
 	minWords = 12 // columns a prose column is not squeezed below
 	maxLines = 3  // lines of a prose cell
 )
@@ -22,7 +22,7 @@ func (t *terminal) grid(g *grid) {
 		}
 		t.line("")
 	}
-	prepare(g)
+	prepare(g, t.width)
 	for i, panel := range panels(g, t.width) {
 		if i > 0 {
 			t.line("")
@@ -45,27 +45,35 @@ func (t *terminal) grid(g *grid) {
 }
 
 // prepare cuts labels and lines numbers up on the decimal point.
-func prepare(g *grid) {
+func prepare(g *grid, total int) {
 	for j, c := range g.columns {
-		switch {
-		case c.label:
-			for _, row := range g.rows {
-				row[j] = cut(row[j], maxLabel)
-			}
-		case c.align == decimal:
-			before := 0
-			for _, row := range g.rows {
-				before = max(before, width(row[j][:point(row[j])]))
-			}
-			after := 0
-			for _, row := range g.rows {
-				row[j] = strings.Repeat(" ", before-width(row[j][:point(row[j])])) + row[j]
-				after = max(after, width(row[j]))
+		if c.label {
+			most := min(maxLabel, (total-gap)/2)
+			if c.align == decimal { // a key figure's value: cut only what can be no number
+				most = maxLabel
 			}
 			for _, row := range g.rows {
-				row[j] += strings.Repeat(" ", after-width(row[j]))
+				row[j] = cut(row[j], most)
 			}
 		}
+		if c.align == decimal {
+			lineUp(g.rows, j)
+		}
+	}
+}
+
+// lineUp pads column j so that its decimal points stand under each other and all cells are as wide.
+func lineUp(rows [][]string, j int) {
+	before, all := 0, 0
+	for _, row := range rows {
+		before = max(before, width(row[j][:point(row[j])]))
+	}
+	for _, row := range rows {
+		row[j] = strings.Repeat(" ", before-width(row[j][:point(row[j])])) + row[j]
+		all = max(all, width(row[j]))
+	}
+	for _, row := range rows {
+		row[j] += strings.Repeat(" ", all-width(row[j]))
 	}
 }
 

@@ -109,15 +109,12 @@ func markdownSpans(spans []span, atStart bool) string {
 		}
 		// A delimiter beside a space is no delimiter (CommonMark 0.31.2, 6.2), so spaces stay outside.
 		body := strings.Trim(s.text, " ")
-		before, after := 0, 0
-		if body != "" {
-			before = len(s.text) - len(strings.TrimLeft(s.text, " "))
-			after = len(s.text) - before - len(body)
-			body = s.style.enclose(escapeMarkdown(body, atStart && i == 0))
-		} else {
-			before = len(s.text)
+		if body == "" {
+			b.WriteString(s.text)
+			continue
 		}
-		b.WriteString(strings.Repeat(" ", before) + body + strings.Repeat(" ", after))
+		before, after, _ := strings.Cut(s.text, body)
+		b.WriteString(before + s.style.enclose(escapeMarkdown(body, atStart && i == 0)) + after)
 	}
 	return strings.TrimSpace(b.String())
 }
