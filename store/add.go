@@ -1,0 +1,167 @@
+package store
+
+import (
+	"context"
+	"fmt"
+	"iter"
+	"slices"
+	"time"
+
+	"github.com/google/uuid"
+
+	"ringbook/snubber"
+)
+
+// Add logs one trial and gives it its id, a UUID version 7. Its board, revision and session are made when new. When Add
+// returns, the trial is on the disk.
+//
+// A trial without a time is dated at its logging. A trial with Struck set is logged as struck. The trial must pass
+// Check, and must not have an id: one that has is in a logbook already.
+func (lb *Logbook) Add(ctx context.Context, t snubber.Trial) (id string, err error) {
+	if err := checkNew(t); err != nil {
+		return "", fmt.Errorf("log the trial: %w", err)
+	}
+	err = lb.write(ctx, func(w *writer) error {
+		id, err = w.add(context.WithoutCancel(ctx), t)
+		return err
+	})
+	if err != nil {
+		return "", fmt.Errorf("log the trial: %w", err)
+	}
+	return id, nil
+}
+
+// progressEvery is how many trials lie between two calls of AddAll's progress.
+const progressEvery = 1000
+
+// AddAll logs every trial of trials in one transaction, or none: the first error of the sequence, or of a trial that
+// fails its check, takes all of them back. It holds one trial at a time in memory. progress, unless nil, is told the count
+// so far now and then. Other programs can read meanwhile, and have to wait to write.
+func (lb *Logbook) AddAll(ctx context.Context, trials iter.Seq2[snubber.Trial, error], progress func(n int)) (n int, err error) {
+	// Each insert is short and ctx is looked at between them; watching it inside each would double their cost.
+	unwatched := context.WithoutCancel(ctx)
+	err = lb.write(ctx, func(w *writer) error {
+		for t, err := range trials {
+			if err != nil {
+				return err
+			}
+			if err := ctx.Err(); err != nil {
+				return err
+			}
+			if err := checkNew(t); err != nil {
+				return fmt.Errorf("trial %d of board %s: %w", n+1, quote(t.Board), err)
+			}
+			if _, err := w.add(unwatched, t); err != nil {
+				return err
+			}
+			if n++; progress != nil && n%progressEvery == 0 {
+				progress(n)
+			}
+		}
+		return nil
+	})
+	if err != nil {
+		return 0, err
+	}
+	return n, nil
+}
+
+// timeLayout is RFC 3339 in UTC of one length, so that the order of the text is the order of time.
+const timeLayout = "2006-01-02T15:04:05.000000000Z"
+
+func timeText(t time.Time) string { return t.UTC().Format(timeLayout) }
+
+const (
+	insertTrial = `INSERT INTO trial (id, revision, session, operating_point, at, logged_at, network,
+  c, c_tol, r, r_tol, esr, measured_c, measured_c_u, probe_c, part, note)
+  VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?)`
+	insertReading = `INSERT INTO reading (trial, quantity, value, u, instrument) VALUES (?, ?, ?, ?, ?)`
+	insertRepeat  = `INSERT INTO reading_repeat (trial, quantity, n, value) VALUES (?, ?, ?, ?)`
+	insertStrike  = `INSERT INTO strike (id, trial, at, because) VALUES (?, ?, ?, ?)`
+)
+
+func (w *writer) add(ctx context.Context, t snubber.Trial) (string, error) {
+	id, err := uuid.NewV7()
+	if err != nil {
+		return "", fmt.Errorf("make an id: %w", err)
+	}
+	revision, err := w.revision(ctx, t.Board, t.Revision)
+	if err != nil {
+		return "", err
+	}
+	session, err := w.session(ctx, t.Session)
+	if err != nil {
+		return "", err
+	}
+	point, err := w.point(ctx, t.Point)
+	if err != nil {
+		return "", err
+	}
+	now := time.Now()
+	if t.At.IsZero() {
+		t.At = now
+	}
+	n := t.Network
+	seq, err := w.insert(ctx, insertTrial, id.String(), revision, session, point, timeText(t.At), timeText(now), string(n.Kind),
+		orNull(n.C), orNull(n.CTol), orNull(n.R), orNull(n.RTol), orNull(n.ESR), orNull(n.MeasuredC), orNull(n.MeasuredU),
+		orNull(t.ProbeC), orNull(t.Part), orNull(t.Note))
+	if err != nil {
+		return "", err
+	}
+	for _, r := range t.Readings {
+		if err := w.addReading(ctx, seq, r); err != nil {
+			return "", err
+		}
+	}
+	if t.Struck != "" {
+		if err := w.strike(ctx, seq, now, t.Struck); err != nil {
+			return "", err
+		}
+	}
+	return id.String(), nil
+}
+
+func (w *writer) addReading(ctx context.Context, seq int64, r snubber.Reading) error {
+	device, err := w.instrument(ctx, r.Instrument)
+	if err != nil {
+		return err
+	}
+	if _, err := w.insert(ctx, insertReading, seq, string(r.Quantity), r.Value, orNull(r.U), device); err != nil {
+		return err
+	}
+	for i, v := range r.Repeats {
+		if _, err := w.insert(ctx, insertRepeat, seq, string(r.Quantity), i+1, v); err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
+func (w *writer) strike(ctx context.Context, seq int64, at time.Time, because string) error {
+	id, err := uuid.NewV7()
+	if err != nil {
+		return fmt.Errorf("make an id: %w", err)
+	}
+	_, err = w.insert(ctx, insertStrike, id.String(), seq, timeText(at), because)
+	return err
+}
+
+// orNull is v, or NULL for the zero value that means "not stated".
+func orNull[T comparable](v T) any {
+	var zero T
+	if v == zero {
+		return nil
+	}
+	return v
+}
+
+// inOrder sorts readings as snubber.Quantities lists them.
+func inOrder(readings []snubber.Reading) {
+	if len(readings) < 2 {
+		return
+	}
+	order := snubber.Quantities()
+	slices.SortStableFunc(readings, func(a, b snubber.Reading) int {
+		return slices.Index(order, a.Quantity) - slices.Index(order, b.Quantity)
+	})
+}

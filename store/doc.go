@@ -1,0 +1,48 @@
+// Package store is the logbook: boards and their revisions, and every trial made on them, in one SQLite file.
+//
+// A logbook is written once. A trial, its readings, its waveforms and its strikes are rows that are added and never
+// changed or deleted; triggers in the file itself refuse it, whoever asks. A trial found to be wrong is struck: a row
+// with the reason, beside the trial, which stays readable. What Add has acknowledged is on the disk: the file is kept in
+// write-ahead-log mode with synchronous FULL, and a process killed at any moment leaves it sound.
+//
+// It is not a database layer for other programs: it knows this one schema, and it refuses a file that is not its own
+// without touching it.
+//
+// # The file
+//
+// SQLite 3 (https://sqlite.org/fileformat2.html), application_id 0x726E6762 ("rngb"), user_version the number of the
+// last migration. Schema changes are migrations in migrations/, numbered, added at the end and never edited once
+// released; each runs in one transaction with its user_version.
+//
+// # The view trial_table
+//
+// Any SQL tool can read the history from one view, a row for each trial. Its columns are those of the CSV, with the same
+// names and units, between the trial's id and its strike:
+//
+//	id            the trial's identity, a UUID version 7 (RFC 9562) in text
+//	board         the board's name
+//	revision      the board revision's name
+//	network       what was fitted across the switch: bare, c, rc, rcd
+//	c             its capacitor, F
+//	c_tol         bound of the capacitor's error as a fraction of c
+//	r             its resistor, ohm
+//	r_tol         bound of the resistor's error as a fraction of r
+//	probe_c       the probe's capacitance across the node while reading, F
+//	bus_v         bus voltage, V: as set for the operating point, else as read
+//	current_a     load current, A: the same
+//	switching_hz  switching frequency, Hz: the same
+//	ring_hz       the ring's damped frequency as seen, Hz
+//	ring_hz_u     its standard uncertainty (k = 1), Hz
+//	decay_s       1/e time of the ring's envelope, s
+//	decay_s_u     its standard uncertainty, s
+//	peak_v        highest voltage across the switch, V
+//	peak_v_u      its standard uncertainty, V
+//	at            when it was read, RFC 3339 in UTC with nine decimals, so that text order is time order
+//	part          what was fitted, in words
+//	note          whatever was noted
+//	struck        why the trial was marked as wrong; NULL while it stands
+//
+// NULL is "not read" or "not stated". For example, the stiffest ring of each board:
+//
+//	SELECT board, revision, max(ring_hz) FROM trial_table WHERE struck IS NULL AND network = 'bare' GROUP BY 1, 2;
+package store

@@ -1,0 +1,205 @@
+package store
+
+import (
+	"context"
+	"database/sql"
+	"errors"
+	"fmt"
+	"io/fs"
+	"net/url"
+	"os"
+	"path/filepath"
+	"sync"
+	"time"
+
+	"modernc.org/sqlite" // the driver "sqlite"
+)
+
+// busyWait is how long a write waits for another program's before it gives up.
+const busyWait = 10 * time.Second
+
+// Logbook is an open logbook. It may be used by several goroutines at once, and several programs may have the same file
+// open: readers see the whole of the last write, writers take turns.
+type Logbook struct {
+	path   string
+	db     *sql.DB
+	turn   chan *writer // holds the writer while nobody writes; nil for a logbook open for reading alone
+	closed sync.Once
+}
+
+// Open opens the logbook at path for reading and writing, and makes one where there is no file or an empty one. An older
+// schema is brought up to date.
+//
+// Errors are of kind ErrStranger, ErrNewer, ErrReadOnly, ErrDamaged or ErrBusy; the file is then left as it was.
+func Open(ctx context.Context, path string) (*Logbook, error) { return open(ctx, path, busyWait) }
+
+func open(ctx context.Context, path string, wait time.Duration) (*Logbook, error) {
+	path, err := locate(path)
+	if err != nil {
+		return nil, err
+	}
+	if err := inspect(ctx, path, true); err != nil {
+		return nil, err
+	}
+	db, err := sql.Open("sqlite", dsn(path, "mode=rwc", wait))
+	if err != nil {
+		return nil, explain(path, err)
+	}
+	lb := &Logbook{path: path, db: db, turn: make(chan *writer, 1)}
+	w, err := prepareFile(ctx, lb)
+	if err != nil {
+		return nil, errors.Join(explain(path, err), db.Close())
+	}
+	lb.turn <- w
+	return lb, nil
+}
+
+// OpenReadOnly opens the logbook at path for reading alone. It works on a write-protected file or folder, where a
+// logbook that was closed in an orderly way is read as it stands.
+//
+// Errors are of kind ErrMissing, ErrStranger, ErrNewer, ErrDamaged or ErrBusy.
+func OpenReadOnly(ctx context.Context, path string) (*Logbook, error) {
+	path, err := locate(path)
+	if err != nil {
+		return nil, err
+	}
+	if err := inspect(ctx, path, false); err != nil {
+		return nil, err
+	}
+	lb, err := openToRead(ctx, path, "mode=ro")
+	if errors.Is(err, ErrReadOnly) && !exists(path+"-wal") {
+		// No room for the files that let readers and writers share; with no writes pending, none are needed.
+		lb, err = openToRead(ctx, path, "mode=ro&immutable=1")
+	}
+	return lb, err
+}
+
+func openToRead(ctx context.Context, path, mode string) (*Logbook, error) {
+	db, err := sql.Open("sqlite", dsn(path, mode, busyWait))
+	if err != nil {
+		return nil, explain(path, err)
+	}
+	var version int
+	if err := db.QueryRowContext(ctx, "PRAGMA user_version").Scan(&version); err != nil {
+		return nil, errors.Join(explain(path, err), db.Close())
+	}
+	latest, err := latestVersion()
+	switch {
+	case err != nil:
+	case version > latest:
+		err = newer(path, version, latest)
+	case version < latest:
+		err = &Fault{Path: path, Kind: ErrReadOnly, What: fmt.Sprintf("its schema is version %d and this ringbook reads %d", version, latest),
+			Cure: "open it once for writing, which brings it up to date"}
+	}
+	if err != nil {
+		return nil, errors.Join(err, db.Close())
+	}
+	return &Logbook{path: path, db: db}, nil
+}
+
+// Path is the absolute path of the file.
+func (lb *Logbook) Path() string { return lb.path }
+
+// Close ends the use of the logbook, after a write in progress. Closing twice is closing once.
+func (lb *Logbook) Close() (err error) {
+	lb.closed.Do(func() {
+		if lb.turn != nil {
+			err = (<-lb.turn).close()
+			close(lb.turn)
+		}
+		err = explain(lb.path, errors.Join(err, lb.db.Close()))
+	})
+	return err
+}
+
+// locate makes path absolute and sees that it can be a file.
+func locate(path string) (string, error) {
+	if path == "" {
+		return "", &Fault{Path: `""`, Kind: ErrMissing, What: "it has no name", Cure: "name a file, such as ringbook.db"}
+	}
+	abs, err := filepath.Abs(path)
+	if err != nil {
+		return "", fmt.Errorf("logbook %s: %w", path, err)
+	}
+	return abs, nil
+}
+
+// dsn is path as an SQLite URI (https://sqlite.org/uri.html) with the settings of every connection.
+func dsn(path, mode string, wait time.Duration) string {
+	u := url.URL{Scheme: "file", OmitHost: true, Path: filepath.ToSlash(path)}
+	return u.String() + "?" + mode +
+		fmt.Sprintf("&_pragma=busy_timeout(%d)", wait.Milliseconds()) +
+		"&_pragma=foreign_keys(1)&_pragma=synchronous(FULL)" +
+		"&_pragma=recursive_triggers(1)" + // so that a REPLACE meets the triggers that refuse a DELETE
+		"&_pragma=cache_size(-16384)" + // KiB for each connection: a bulk import spills beyond it, and stays in bounds
+		"&_pragma=journal_size_limit(67108864)" // bytes of log kept after a bulk import
+}
+
+// prepareFile makes or updates the schema, and hands out the connection that writes.
+func prepareFile(ctx context.Context, lb *Logbook) (_ *writer, err error) {
+	conn, err := lb.db.Conn(ctx)
+	if err != nil {
+		return nil, err
+	}
+	defer func() {
+		if err != nil {
+			err = errors.Join(err, conn.Close())
+		}
+	}()
+	if err := refuseReadOnly(conn, lb.path); err != nil {
+		return nil, err
+	}
+	// The schema goes in before the write-ahead log is turned on: so application_id and user_version stand in the file
+	// itself from its first write, where inspect looks for them.
+	if err := migrate(ctx, conn, lb.path); err != nil {
+		return nil, err
+	}
+	if err := useLog(ctx, conn, lb.path); err != nil {
+		return nil, err
+	}
+	return newWriter(conn), nil
+}
+
+func refuseReadOnly(conn *sql.Conn, path string) error {
+	return conn.Raw(func(c any) error {
+		asker, ok := c.(interface{ IsReadOnly(string) (bool, error) })
+		if !ok {
+			return nil // the first write will tell
+		}
+		if no, err := asker.IsReadOnly("main"); err != nil || !no {
+			return err
+		}
+		return &Fault{Path: path, Kind: ErrReadOnly, What: "the file is read-only",
+			Cure: "make it and its folder writable, or copy it to a folder that is"}
+	})
+}
+
+// useLog turns the write-ahead log on. SQLite does not wait its turn for this, so it is asked again until it has it.
+func useLog(ctx context.Context, conn *sql.Conn, path string) error {
+	deadline := time.Now().Add(busyWait)
+	for {
+		var mode string
+		err := conn.QueryRowContext(ctx, "PRAGMA journal_mode = WAL").Scan(&mode)
+		var lite *sqlite.Error
+		switch {
+		case err == nil && mode == "wal":
+			return nil
+		case err == nil:
+			return &Fault{Path: path, What: "its file system cannot keep a write-ahead log (journal mode stays " + mode + ")",
+				Cure: "keep the logbook on a disk of this computer"}
+		case !errors.As(err, &lite) || !isBusy(lite) || time.Now().After(deadline):
+			return err
+		}
+		select {
+		case <-ctx.Done():
+			return ctx.Err()
+		case <-time.After(10 * time.Millisecond):
+		}
+	}
+}
+
+func exists(path string) bool {
+	_, err := os.Stat(path)
+	return !errors.Is(err, fs.ErrNotExist)
+}

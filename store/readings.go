@@ -1,0 +1,101 @@
+package store
+
+import (
+	"context"
+	"database/sql"
+	"errors"
+	"fmt"
+
+	"ringbook/snubber"
+)
+
+// The same order as selectTrials: the cursors are merged by the trial's seq.
+const (
+	selectReadings = `
+SELECT r.trial, r.quantity, r.value, ifnull(r.u, 0), ifnull(i.idn, '')
+FROM (%s) picked CROSS JOIN reading r ON r.trial = picked.seq LEFT JOIN instrument i ON i.id = r.instrument
+ORDER BY picked.at, picked.seq, r.quantity`
+	selectRepeats = `
+SELECT r.trial, r.quantity, r.value
+FROM (%s) picked CROSS JOIN reading_repeat r ON r.trial = picked.seq
+ORDER BY picked.at, picked.seq, r.quantity, r.n`
+)
+
+// readings are the cursors over the readings and their repeats, each one row ahead.
+type readings struct {
+	values, repeats *cursor[snubber.Reading]
+}
+
+func openReadings(ctx context.Context, tx *sql.Tx, picked string, args []any) (*readings, error) {
+	values, err := openCursor(ctx, tx, selectReadings, picked, args, func(rows *sql.Rows, seq *int64, r *snubber.Reading) error {
+		return rows.Scan(seq, &r.Quantity, &r.Value, &r.U, &r.Instrument)
+	})
+	if err != nil {
+		return nil, err
+	}
+	repeats, err := openCursor(ctx, tx, selectRepeats, picked, args, func(rows *sql.Rows, seq *int64, r *snubber.Reading) error {
+		return rows.Scan(seq, &r.Quantity, &r.Value)
+	})
+	if err != nil {
+		return nil, errors.Join(err, values.rows.Close())
+	}
+	return &readings{values, repeats}, nil
+}
+
+func (c *readings) close() {
+	c.values.rows.Close()
+	c.repeats.rows.Close()
+}
+
+// of gives the readings of trial seq; to be asked for each trial in turn.
+func (c *readings) of(seq int64) ([]snubber.Reading, error) {
+	var all []snubber.Reading
+	for c.values.at(seq) {
+		r := c.values.next
+		if err := c.values.advance(); err != nil {
+			return nil, err
+		}
+		for c.repeats.at(seq) && c.repeats.next.Quantity == r.Quantity {
+			r.Repeats = append(r.Repeats, c.repeats.next.Value)
+			if err := c.repeats.advance(); err != nil {
+				return nil, err
+			}
+		}
+		all = append(all, r)
+	}
+	inOrder(all)
+	return all, nil
+}
+
+// cursor is a query's rows with the next row held in hand.
+type cursor[T any] struct {
+	rows *sql.Rows
+	scan func(*sql.Rows, *int64, *T) error
+	seq  int64 // the next row's trial
+	next T
+	done bool
+}
+
+func openCursor[T any](ctx context.Context, tx *sql.Tx, query, picked string, args []any, scan func(*sql.Rows, *int64, *T) error) (*cursor[T], error) {
+	rows, err := tx.QueryContext(ctx, fmt.Sprintf(query, picked), args...)
+	if err != nil {
+		return nil, err
+	}
+	c := &cursor[T]{rows: rows, scan: scan}
+	if err := c.advance(); err != nil {
+		return nil, errors.Join(err, rows.Close())
+	}
+	return c, nil
+}
+
+func (c *cursor[T]) at(seq int64) bool { return !c.done && c.seq == seq }
+
+func (c *cursor[T]) advance() error {
+	if !c.rows.Next() {
+		c.done = true
+		return c.rows.Err()
+	}
+	var fresh T
+	c.next = fresh
+	return c.scan(c.rows, &c.seq, &c.next)
+}

@@ -1,0 +1,142 @@
+package store
+
+import (
+	"context"
+	"database/sql"
+	"errors"
+	"fmt"
+)
+
+// writer is the one connection of a Logbook that writes, with its statements prepared once and the row numbers of the
+// names it met lately.
+type writer struct {
+	conn     *sql.Conn
+	prepared map[string]*sql.Stmt
+	boards   map[string]int64
+	revs     map[revisionKey]int64
+	sessions map[string]int64
+	devices  map[string]int64 // instruments by their *IDN? answer
+	points   map[pointKey]int64
+}
+
+// cacheLimit bounds each map of a writer: an import may name a million operating points.
+const cacheLimit = 10_000
+
+func newWriter(conn *sql.Conn) *writer {
+	w := &writer{conn: conn, prepared: map[string]*sql.Stmt{}}
+	w.forget()
+	return w
+}
+
+// forget drops the row numbers: some may be of rows that were rolled back.
+func (w *writer) forget() {
+	w.boards, w.sessions, w.devices = map[string]int64{}, map[string]int64{}, map[string]int64{}
+	w.revs, w.points = map[revisionKey]int64{}, map[pointKey]int64{}
+}
+
+func (w *writer) close() error {
+	var errs []error
+	for _, stmt := range w.prepared {
+		errs = append(errs, stmt.Close())
+	}
+	return errors.Join(append(errs, w.conn.Close())...)
+}
+
+// write runs do in one transaction. When it returns nil all of it is on the disk; otherwise nothing is.
+func (lb *Logbook) write(ctx context.Context, do func(*writer) error) (err error) {
+	if lb.turn == nil {
+		return &Fault{Path: lb.path, Kind: ErrReadOnly, What: "it was opened for reading alone", Cure: "open it for writing"}
+	}
+	var w *writer
+	select {
+	case w = <-lb.turn:
+	case <-ctx.Done():
+		return ctx.Err()
+	}
+	if w == nil {
+		return fmt.Errorf("logbook %s: it was closed; open it again", lb.path)
+	}
+	defer func() { lb.turn <- w }()
+
+	// IMMEDIATE takes the write lock at once, where SQLite can wait for it; a lock asked for halfway fails instead.
+	if _, err := w.conn.ExecContext(ctx, "BEGIN IMMEDIATE"); err != nil {
+		return explain(lb.path, err)
+	}
+	// A commit cut short by ctx would leave it open whether the trial is kept, so it is always seen through.
+	unhurried := context.WithoutCancel(ctx)
+	defer func() {
+		if p := recover(); p != nil {
+			w.undo(unhurried)
+			panic(p)
+		}
+		if err != nil {
+			w.undo(unhurried)
+			err = explain(lb.path, err)
+		}
+	}()
+	if err := do(w); err != nil {
+		return err
+	}
+	if err := ctx.Err(); err != nil {
+		return err
+	}
+	_, err = w.conn.ExecContext(unhurried, "COMMIT")
+	return err
+}
+
+// undo rolls back. Where SQLite has already done so by itself (disk full, damage), ROLLBACK has nothing to do and says
+// so; either way the transaction is over.
+func (w *writer) undo(ctx context.Context) {
+	_, _ = w.conn.ExecContext(ctx, "ROLLBACK")
+	w.forget()
+}
+
+// stmt prepares query on first use.
+func (w *writer) stmt(ctx context.Context, query string) (*sql.Stmt, error) {
+	if s, ok := w.prepared[query]; ok {
+		return s, nil
+	}
+	s, err := w.conn.PrepareContext(ctx, query)
+	if err != nil {
+		return nil, err
+	}
+	w.prepared[query] = s
+	return s, nil
+}
+
+// insert runs an INSERT and gives the new row's number.
+func (w *writer) insert(ctx context.Context, query string, args ...any) (int64, error) {
+	s, err := w.stmt(ctx, query)
+	if err != nil {
+		return 0, err
+	}
+	result, err := s.ExecContext(ctx, args...)
+	if err != nil {
+		return 0, err
+	}
+	return result.LastInsertId()
+}
+
+// number is the row number of what key names: remembered, found, or made new.
+func number[K comparable](ctx context.Context, w *writer, known map[K]int64, key K, find, make string, args ...any) (int64, error) {
+	if id, ok := known[key]; ok {
+		return id, nil
+	}
+	s, err := w.stmt(ctx, find)
+	if err != nil {
+		return 0, err
+	}
+	var id int64
+	err = s.QueryRowContext(ctx, args...).Scan(&id)
+	if errors.Is(err, sql.ErrNoRows) {
+		id, err = w.insert(ctx, make, args...)
+	}
+	if err != nil {
+		return 0, err
+	}
+	if len(known) >= cacheLimit {
+		clear(known)
+	}
+	known[key] = id
+	return id, nil
+}
