@@ -143,8 +143,8 @@ func (s *SubstitutionLine) fit() error {
 		return err
 	}
 	s.Intercept, s.Slope = l.Intercept, l.Slope
-	s.InterU, s.SlopeU, s.Cov = l.InterceptU, l.SlopeU, l.Cov
-	s.Chi2, s.DOF = l.Chi2, l.DOF
+	s.InterU, s.SlopeU, s.Cov = l.UIntercept, l.USlope, l.Cov
+	s.Chi2, s.DOF = l.Chi2, l.Dof
 	for i := range s.Points {
 		p := &s.Points[i]
 		p.Residual = p.Inverse - (s.Intercept + s.Slope*p.AddedC)
