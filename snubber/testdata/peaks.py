@@ -1,8 +1,8 @@
 """Peak and resistor energy of L, C, r with a series Rs, Cs across C, integrated by SciPy's solve_ivp (DOP853).
 
 In: a list of [L, C, r, Rs, Cs, E, I0] in SI units (Rs = Cs = 0: bare; Rs = 0: a capacitor alone).
-Out: a list of [peak_V, time_s, energy_in_Rs_J, energy_in_r_J, left_J]; left_J is what still rings when the integration
-ends.
+Out: a list of objects: the peak (V), when (s; -1 where there is no overshoot), the energy in Rs and in the loop's r (J),
+and what is left ringing when the integration ends (J).
 """
 import json
 import sys
@@ -36,7 +36,7 @@ def solve(L, C, r, Rs, Cs, E, I0):
             peak, when = y[1], t / w0
     z, v, u = s.y[:3, -1]
     left = z * z + (v - E) ** 2 + a * ((v if Rs == 0 else u) - E) ** 2
-    return [peak, when, s.y[3, -1] * C, s.y[4, -1] * C, left * C / 2]
+    return {"Peak": peak, "At": when, "InRs": s.y[3, -1] * C, "InLoop": s.y[4, -1] * C, "Left": left * C / 2}
 
 
 json.dump([solve(*row) for row in json.load(sys.stdin)], sys.stdout)
