@@ -48,8 +48,8 @@ func newLinearised(jac, res blas64.General) *linearised {
 	return l
 }
 
-// factor takes in the Jacobian and the residuals at a new point; it overwrites both, and keeps the first. Diagonal elements of R below tol
-// times the first count as zero.
+// factor takes in the Jacobian and the residuals at a new point; it overwrites both, and keeps the first. A diagonal
+// element of R below tol times the length of its column counts as zero.
 func (l *linearised) factor(jac, res blas64.General, tol float64) {
 	n := l.n
 	for j := range n {
@@ -68,7 +68,8 @@ func (l *linearised) factor(jac, res blas64.General, tol float64) {
 	copy(l.c, res.Data[:n])
 	l.q = jac
 	l.rank = 0
-	for l.rank < n && math.Abs(l.r[l.rank*n+l.rank]) > tol*math.Abs(l.r[0]) {
+	for l.rank < n && math.Abs(l.r[l.rank*n+l.rank]) >
+		tol*blas64.Nrm2(blas64.Vector{N: l.rank + 1, Inc: n, Data: l.r[l.rank:]}) {
 		l.rank++
 	}
 }

@@ -48,7 +48,6 @@ type solver struct {
 
 	q1, p1, r1 []float64 // the point on trial
 	work       []float64 // residuals to be overwritten
-	slopes     []float64 // dp/dq
 	lin        *linearised
 
 	probe        []float64 // finite differences: parameters, residuals on either side, Ridders's table
@@ -62,12 +61,12 @@ type solver struct {
 
 func newSolver(pr *Problem, o Options) *solver {
 	m, n := pr.N, len(pr.Start)
-	f := make([]float64, 6*n+3*m+m*n)
+	f := make([]float64, 5*n+3*m+m*n)
 	take := func(k int) []float64 { v := f[:k:k]; f = f[k:]; return v }
 	s := &solver{
 		pr: pr, o: o, mu: mu0, nu: 2, from: math.Inf(1),
 		q: take(n), p: take(n), r: take(m), q1: take(n), p1: take(n), r1: take(m),
-		work: take(m), slopes: take(n), probe: take(n), jac: mat.NewDense(m, n, take(m*n)),
+		work: take(m), probe: take(n), jac: mat.NewDense(m, n, take(m*n)),
 	}
 	s.lin = newLinearised(s.jac.RawMatrix(), s.workMatrix())
 	if pr.Jacobian == nil {
@@ -84,10 +83,13 @@ func (s *solver) workMatrix() blas64.General {
 	return blas64.General{Rows: len(s.work), Cols: 1, Stride: 1, Data: s.work}
 }
 
-// evaluate writes the parameters of q into p and the residuals there into r, and gives what is minimised.
+// evaluate writes the parameters of q into p and the residuals there into r, and gives what is minimised; +Inf where
+// a parameter has left the numbers.
 func (s *solver) evaluate(r, p, q []float64) float64 {
 	for j := range q {
-		p[j], _ = s.pr.bound(j).outside(q[j])
+		if p[j], _ = s.pr.bound(j).outside(q[j]); !finite(p[j]) {
+			return math.Inf(1)
+		}
 	}
 	s.pr.Residuals(r, p)
 	s.evaluations++
@@ -122,24 +124,51 @@ func (s *solver) weigh() {
 // linearise takes the Jacobian at the best point and factors it; ok is false where it is not finite.
 func (s *solver) linearise() (ok bool) {
 	s.differentiate(false)
-	for j := range s.q {
-		_, s.slopes[j] = s.pr.bound(j).outside(s.q[j])
-	}
-	for i := range s.work {
-		row := s.jac.RawRowView(i)
-		for j := range row {
-			row[j] *= s.slopes[j]
-			if !finite(row[j]) {
-				return false
-			}
-		}
-	}
 	s.weigh()
+	for j := range s.q {
+		_, slope := s.pr.bound(j).outside(s.q[j])
+		if s.held(j) {
+			slope = 0
+		}
+		blas64.Scal(slope, column(s.jac.RawMatrix(), j))
+	}
+	if !finiteMatrix(s.jac) {
+		return false
+	}
 	length := blas64.Nrm2(blas64.Vector{N: len(s.work), Inc: 1, Data: s.work})
 	s.lin.factor(s.jac.RawMatrix(), s.workMatrix(), s.tolerance())
 	s.offset = 0
 	if length > 0 {
 		s.offset = s.lin.projection() / length
+	}
+	return true
+}
+
+// held says whether parameter j lies against a bound, nearer than a float64 has use for, with chi2 falling further
+// beyond it; s.jac and s.work hold the Jacobian and the residuals, weighted.
+func (s *solver) held(j int) bool {
+	b, p := s.pr.bound(j), s.p[j]
+	down, up := b.room(p)
+	least, from := b.room(s.pr.Start[j])
+	low, high := down <= touching*least && b.hasLower, up <= touching*from && b.hasUpper
+	if !low && !high {
+		return false
+	}
+	var rise float64 // of chi2 with p
+	for i, v := range s.work {
+		rise += s.jac.At(i, j) * v
+	}
+	return low && rise > 0 || high && rise < 0
+}
+
+// touching is the distance of a parameter from a bound, as a part of where it started, that counts as none.
+const touching = 1e-10
+
+func finiteMatrix(a *mat.Dense) bool {
+	for _, v := range a.RawMatrix().Data {
+		if !finite(v) {
+			return false
+		}
 	}
 	return true
 }

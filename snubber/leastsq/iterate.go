@@ -7,7 +7,8 @@ import (
 )
 
 // nearby is the relative offset below which undamped steps are tried whatever chi2 says: it is flat there to a
-// float64's rounding, while the offset still tells better from worse.
+// float64's rounding, while the offset still tells better from worse. Where no step lowers chi2, it is also the
+// relative size of a full step that may be rounding.
 const nearby = 1e-6
 
 // mu0 is the damping to start with, as a fraction of the squared length of a scaled column of the Jacobian.
@@ -26,6 +27,7 @@ func (s *solver) iterate(ctx context.Context) (Status, string) {
 			return NonFinite, "the Jacobian at the best parameters is not finite"
 		}
 		s.lin.gaussNewton()
+		full := s.lin.length() / s.lin.size(s.q)
 		if s.arrived() {
 			return Converged, "the residuals stand at right angles to the model, or the step vanishes"
 		}
@@ -35,7 +37,7 @@ func (s *solver) iterate(ctx context.Context) (Status, string) {
 		if moved, stopped := s.downhill(ctx); stopped {
 			return Stopped, fmt.Sprintf("stopped: %v", context.Cause(ctx))
 		} else if !moved {
-			if s.offset <= nearby || s.lin.rank < s.lin.n {
+			if s.offset <= nearby || full <= nearby || s.lin.rank < s.lin.n {
 				return Converged, "no step lowers chi2 any more"
 			}
 			return Stalled, fmt.Sprintf("no step lowers chi2, yet its gradient is not zero (relative offset %.2g): the Jacobian is wrong or the model not smooth", s.offset)
@@ -101,7 +103,9 @@ func (s *solver) downhill(ctx context.Context) (moved, stopped bool) {
 func (s *solver) bend() (ok bool) {
 	const h = 0.1
 	s.move(h)
-	s.evaluate(s.r1, s.p1, s.q1)
+	if !finite(s.evaluate(s.r1, s.p1, s.q1)) {
+		return false
+	}
 	s.lin.along(s.workMatrix())
 	for i, v := range s.work {
 		v = 2 / h * ((s.r1[i]-s.r[i])/h - v)
@@ -134,20 +138,15 @@ func (s *solver) result(status Status, reason string) *Result {
 	n := len(s.p)
 	res := &Result{P: s.p, Residuals: s.r, Chi2: s.cost, Dof: s.pr.N - n, Iterations: s.iterations,
 		Status: status, Reason: reason, AtBound: make([]bool, n)}
-	for j, p := range s.p {
-		down, up := s.pr.bound(j).room(p)
-		res.AtBound[j] = min(down, up) <= 1e-7*s.pr.typical(j)
-	}
 	s.differentiate(true)
 	s.weigh()
+	for j := range n {
+		res.AtBound[j] = s.held(j)
+	}
 	res.Evaluations = s.evaluations
-	for i := range s.r {
-		for _, v := range s.jac.RawRowView(i) {
-			if !finite(v) {
-				res.Status, res.Reason = NonFinite, "the Jacobian at the best parameters is not finite"
-				return res
-			}
-		}
+	if !finiteMatrix(s.jac) {
+		res.Status, res.Reason = NonFinite, "the Jacobian at the best parameters is not finite"
+		return res
 	}
 	res.describe(s.jac, s.o.Rank)
 	if status == Converged && len(res.Blind) > 0 {

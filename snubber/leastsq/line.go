@@ -70,11 +70,11 @@ type linePoint struct{ x, y, vx, vy, c, w, beta float64 }
 
 // points are those of a line, with the weighted means of the last weigh.
 type points struct {
-	p        []linePoint
-	sum      float64 // of the weights
-	mx, my   float64
-	b        float64
-	variance float64 // the variance that the points' variances were divided by
+	p      []linePoint
+	sum    float64 // of the weights
+	mx, my float64
+	b      float64
+	unit   float64 // what the points' uncertainties were divided by
 }
 
 // weigh sets the weights and the rest for the slope b; it gives the first point whose weight is infinite, or -1.
@@ -132,7 +132,7 @@ func (ps *points) finish(fit *LineFit, b float64, f frame) {
 	for _, p := range ps.p {
 		mean += p.w * (ps.mx + p.beta)
 		d := p.y - a - b*p.x
-		fit.Chi2 += p.w * d * d / ps.variance
+		fit.Chi2 += p.w * (d / ps.unit) * (d / ps.unit)
 		fit.X = append(fit.X, f.x0+f.x*(ps.mx+p.beta))
 		fit.Y = append(fit.Y, f.y0+f.y*(ps.my+b*p.beta))
 	}
@@ -142,12 +142,12 @@ func (ps *points) finish(fit *LineFit, b float64, f frame) {
 		d := ps.mx + p.beta - mean
 		spread += p.w * d * d
 	}
-	// Here and below: variances times that of the scaling, then lengths times the frame's.
-	ub := math.Sqrt(ps.variance / spread)
+	// Uncertainties times their own unit, then times the frame's.
+	ub := ps.unit / math.Sqrt(spread)
 	fit.Slope = b * f.y / f.x
 	fit.Intercept = f.y0 + (a*f.y - fit.Slope*f.x0)
 	fit.USlope = ub * f.y / f.x
 	at := f.x0 + mean*f.x // the mean of the adjusted abscissas
-	fit.UIntercept = math.Hypot(math.Sqrt(ps.variance/ps.sum)*f.y, at*fit.USlope)
+	fit.UIntercept = math.Hypot(ps.unit/math.Sqrt(ps.sum)*f.y, at*fit.USlope)
 	fit.Cov = -at * fit.USlope * fit.USlope
 }

@@ -25,7 +25,7 @@ func linePoints(x, y, ux, uy, corr []float64) (*points, frame, error) {
 	}
 	_, e := math.Frexp(largest)
 	unit := math.Ldexp(1, e)
-	ps.variance = unit * unit
+	ps.unit = unit
 	for i := range x {
 		sx, sy := at(ux, i)/f.x/unit, at(uy, i)/f.y/unit
 		ps.p[i] = linePoint{
