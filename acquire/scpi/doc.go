@@ -1,0 +1,35 @@
+// Package scpi speaks to an instrument in IEEE 488.2 program messages with SCPI-1999 headers over any
+// io.ReadWriteCloser: a socket, a serial port, one end of a pipe in a test.
+//
+// It sends commands and queries, reads the replies the standard defines (numbers in NR1, NR2 and NR3
+// form, strings, definite and indefinite blocks, lines), and empties the instrument's error queue after
+// every one of them. It is not a driver: it knows no instrument's commands beyond *IDN? and
+// SYSTem:ERRor?, opens no links (see package wire) and keeps no state of the instrument's settings.
+//
+// Where it deviates from the standards: a reply ends at a line feed or a carriage return, whichever
+// comes first, since a byte stream carries no END message; an indefinite block ends at the first line
+// feed for the same reason; a mnemonic may be longer than the 12 characters of IEEE 488.2, 7.6.1.4.1.
+//
+// # Errors
+//
+// Three things can go wrong, and each has its type. The instrument refused: [*InstrumentError], with
+// the number and the text it gave. The instrument spoke nonsense: [*ReplyError], which quotes it. The
+// link failed or stayed silent: [*LinkError]. A number that means "no reading" (9.91E37 or +-9.9E37)
+// is [ErrNoReading] and never a number.
+//
+// # Staying in step
+//
+// A reply that comes late must never be taken for the reply to the next query. Three rules see to it:
+//
+//   - After a failed, silent or nonsensical exchange the Conn refuses every further one with
+//     [ErrOutOfStep], until [Conn.Resync] has thrown away what was under way and heard the instrument's
+//     identity again, or until the link is opened anew.
+//   - A reply followed at once by more text is not taken.
+//   - The error queue is read after each reply and before it is handed over. Instruments answer in
+//     order: were the reply one from before, the true one would now come in place of the queue's
+//     `number,"text"`, and both are refused. (So Options.NoErrorQueue gives up more than error texts.)
+//
+// Sources: IEEE Std 488.2-1992, Standard Codes, Formats, Protocols, and Common Commands; SCPI-1999,
+// Volume 1, Syntax and Style, and Volume 2, Command Reference, chapter 21 (SYSTem:ERRor). Both were
+// checked through secondary copies only.
+package scpi
