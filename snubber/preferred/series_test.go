@@ -87,9 +87,12 @@ func TestExceptionsToTheRule(t *testing.T) {
 }
 
 func TestValuesAreTheCallersOwn(t *testing.T) {
-	E12.Values()[0] = 99
-	if got := E12.Values()[0]; got != 10 {
-		t.Errorf("a caller changed the series: %d", got)
+	for _, s := range All() {
+		before := s.Values()[0]
+		s.Values()[0] = 99
+		if got := s.Values()[0]; got != before {
+			t.Errorf("a caller changed %v: %d", s, got)
+		}
 	}
 }
 

@@ -24,17 +24,17 @@ func TestFlagValues(t *testing.T) {
 		in, shown      string
 		refused, cause string
 	}{
-		{new(Farad), "F", "0", "470p", "470 pF", "470", "that is 470 F, and a capacitance here lies between 1 fF and 1 F; check the prefix"},
+		{new(Farad), "F", "0", "470pF", "470 pF", "470", "that is 470 F, and a capacitance here lies between 1 fF and 1 F; check the prefix"},
 		{new(Farad), "F", "0", "0", "0", "-470p", "a capacitance cannot be negative"},
-		{new(Henry), "H", "", "12n", "12 nH", "0", "an inductance of zero makes no sense"},
+		{new(Henry), "H", "", "12 nH", "12 nH", "0", "an inductance of zero makes no sense"},
 		{new(Henry), "H", "", "0.417", "417 mH", "12", "check the prefix"},
-		{new(Ohm), "ohm", "0", "4k7", "4.7 k\u03a9", "-1", "cannot be negative"},
+		{new(Ohm), "ohm", "0", "4k7 ohm", "4.7 k\u03a9", "-1", "cannot be negative"},
 		{new(Volt), "V", "0", "48V", "48 V", "-48V", "a voltage cannot be negative here"},
-		{new(Ampere), "A", "0", "2.5", "2.5 A", "-2.5", "cannot be negative here"},
+		{new(Ampere), "A", "0", "2.5A", "2.5 A", "-2.5", "cannot be negative here"},
 		{new(Hertz), "Hz", "", "1.8MHz", "1.8 MHz", "1.8mHz", "that is 1.8 mHz, and a frequency here lies between 1 Hz and 100 GHz"},
 		{new(Hertz), "Hz", "", "100k", "100 kHz", "0", "of zero makes no sense"},
 		{new(Second), "s", "", "0.5us", "500 ns", "-1n", "cannot be negative here"},
-		{new(Watt), "W", "0", "250m", "250 mW", "1e12", "check the prefix"},
+		{new(Watt), "W", "0", "250 mW", "250 mW", "1e12", "check the prefix"},
 		{new(Fraction), "fraction", "0", "5%", "5%", "110%", "between 0 and 1"},
 		{new(Fraction), "fraction", "0", "0.005", "0.5%", "-3%", "between 0 and 1"},
 	} {

@@ -26,7 +26,7 @@ func TestFormatUncertain(t *testing.T) {
 		{1234, 56, Temperature, "1234(56) \u00b0C"}, {1234, 560, Temperature, "1230(560) \u00b0C"}, {1234, 56, Voltage, "1.234(56) kV"}, {1236, 5600, Ratio, "1200(5600)"},
 		// Uncertainty above the value.
 		{3e-9, 46e-9, Inductance, "3(46) nH"}, {3e-9, 560e-9, Inductance, "0(560) nH"}, {6e-9, 560e-9, Inductance, "10(560) nH"}, {5e-9, 5600e-9, Inductance, "0.0(56) \u00b5H"},
-		{-3e-9, 46e-9, Inductance, "-3(46) nH"}, {-0.2, 46, Voltage, "0(46) V"}, {0, 46, Voltage, "0(46) V"}, {0, 0.046, Voltage, "0(46) mV"}, {0, 1, Voltage, "0.0(10) V"},
+		{0.3e-6, 1e-6, Inductance, "0.3(10) \u00b5H"}, {-3e-9, 46e-9, Inductance, "-3(46) nH"}, {-0.2, 46, Voltage, "0(46) V"}, {0, 46, Voltage, "0(46) V"}, {0, 0.046, Voltage, "0(46) mV"}, {0, 1, Voltage, "0.0(10) V"},
 		{1e-300, 1, Voltage, "0.0(10) V"}, {1, 1e300, Voltage, "0.0(10)e300 V"},
 		{50, 1200, Ratio, "0(1200)"}, {51, 1200, Ratio, "100(1200)"}, {49, 1200, Ratio, "0(1200)"}, {950, 1200, Ratio, "1000(1200)"}, {960, 1200, Ratio, "1000(1200)"},
 		// Out of the prefixes.
@@ -68,7 +68,7 @@ func TestParseUncertainRefuses(t *testing.T) {
 		{"", "nothing was given"}, {"12,34(56)", "decimal mark is a point"}, {"12.34(56", "parentheses"}, {"(56)", "a value is to be followed"}, {"12.34 (56)", "at once"},
 		{"12.34()", "to be digits"}, {"12.34(-5)", "to be digits"}, {"12.34(+5)", "to be digits"}, {"12.34(1e3)", "to be digits"}, {"12.34(NaN)", "to be digits"}, {"12.34(.)", "to be digits"},
 		{"12.34(56)(7)", "neither a prefix"}, {"12.34(56) V", "in henry"}, {"12.34(56)e-3 nH", "keep one"}, {"1e3(5)", "at once"}, {"1(5)e999999999999999999999", "beyond the numbers"},
-		{"1(5)e500", "beyond the numbers"}, {"1(5)e-500", "beyond the numbers"}, {"0(5)e500", "beyond the numbers"}, {"4k7(5)", "at once"}, {"NaN", "finite"},
+		{"1(5)e500", "beyond the numbers"}, {"1(5)e-500", "beyond the numbers"}, {"0(5)e500", "beyond the numbers"}, {"0.0(5)e-9223372036854775808", "beyond the numbers"}, {"4k7(5)", "at once"}, {"NaN", "finite"},
 	} {
 		v, u, err := ParseUncertain(c.in, Inductance)
 		if err == nil || !strings.Contains(err.Error(), c.why) || !strings.HasPrefix(err.Error(), "quantity \""+c.in) {

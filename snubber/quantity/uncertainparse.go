@@ -67,8 +67,7 @@ func scaleAfter(tail string, unit Unit) (power int, err error) {
 	case power != 0:
 		return 0, errors.New("an exponent and a prefix both scale the number; keep one")
 	}
-	// A float64 spans some 630 decades; the bound keeps the sum of exponents far from overflow.
-	if power, err = strconv.Atoi(exponent); err != nil || max(power, -power) > 1000 {
+	if power, err = strconv.Atoi(exponent); err != nil {
 		return 0, errRange
 	}
 	return power, nil
