@@ -32,7 +32,7 @@ func (r *Result) describe(jac *mat.Dense, rank float64) {
 		divide(column(a, j), scale[j])
 	}
 	tau := make([]float64, n)
-	work := make([]float64, max(n, query(func(w []float64) { lapack64.Geqrf(a, tau, w, -1) })))
+	work := make([]float64, n)
 	lapack64.Geqrf(a, tau, work, len(work))
 
 	tri := a
@@ -46,7 +46,8 @@ func (r *Result) describe(jac *mat.Dense, rank float64) {
 	svd := func(w []float64, lwork int) bool {
 		return lapack64.Gesvd(lapack.SVDNone, lapack.SVDAll, tri, none, vt, s, w, lwork)
 	}
-	work = make([]float64, query(func(w []float64) { svd(w, -1) }))
+	svd(work, -1)
+	work = make([]float64, int(work[0]))
 	if !svd(work, len(work)) {
 		clear(s) // the QR sweeps of the SVD did not settle: nothing is known
 	}
@@ -116,11 +117,4 @@ func divide(v blas64.Vector, s float64) {
 	for i := range v.N {
 		v.Data[i*v.Inc] /= s
 	}
-}
-
-// query asks a LAPACK routine for the length of the workspace it likes best.
-func query(ask func(work []float64)) int {
-	var w [1]float64
-	ask(w[:])
-	return int(w[0])
 }

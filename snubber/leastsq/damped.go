@@ -29,8 +29,7 @@ type linearised struct {
 	work  []float64
 }
 
-func newLinearised(jac, res blas64.General) *linearised {
-	n := jac.Cols
+func newLinearised(n int) *linearised {
 	f := make([]float64, n*n+6*n+2*n*n+2*n)
 	take := func(k int) []float64 { v := f[:k:k]; f = f[k:]; return v }
 	l := &linearised{
@@ -39,12 +38,8 @@ func newLinearised(jac, res blas64.General) *linearised {
 		stack: blas64.General{Rows: 2 * n, Cols: n, Stride: n, Data: take(2 * n * n)},
 		rhs:   blas64.General{Rows: 2 * n, Cols: 1, Stride: 1, Data: take(2 * n)},
 	}
-	l.work = make([]float64, max(
-		query(func(w []float64) { lapack64.Geqp3(jac, l.piv, l.tau, w, -1) }),
-		query(func(w []float64) { lapack64.Ormqr(blas.Left, blas.Trans, jac, l.tau, res, w, -1) }),
-		query(func(w []float64) { lapack64.Geqrf(l.stack, l.tau2, w, -1) }),
-		query(func(w []float64) { lapack64.Ormqr(blas.Left, blas.Trans, l.stack, l.tau2, l.rhs, w, -1) }),
-	))
+	// The least the routines ask for: their blocked forms, which want more, gain nothing on a few columns.
+	l.work = make([]float64, 3*n+1)
 	return l
 }
 

@@ -68,7 +68,7 @@ func newSolver(pr *Problem, o Options) *solver {
 		q: take(n), p: take(n), r: take(m), q1: take(n), p1: take(n), r1: take(m),
 		work: take(m), probe: take(n), jac: mat.NewDense(m, n, take(m*n)),
 	}
-	s.lin = newLinearised(s.jac.RawMatrix(), s.workMatrix())
+	s.lin = newLinearised(n)
 	if pr.Jacobian == nil {
 		s.hi, s.lo = make([]float64, m), make([]float64, m)
 		s.table, s.next = make([][]float64, ridders), make([][]float64, ridders)

@@ -107,13 +107,13 @@ func (s *solver) bend() (ok bool) {
 		return false
 	}
 	s.lin.along(s.workMatrix())
-	for i, v := range s.work {
-		v = 2 / h * ((s.r1[i]-s.r[i])/h - v)
+	for i, along := range s.work {
+		change := s.r1[i] - s.r[i]
 		if s.o.Loss != nil {
 			_, slope := s.o.Loss(s.r[i] * s.r[i])
-			v *= math.Sqrt(slope)
+			change *= math.Sqrt(slope)
 		}
-		s.work[i] = v
+		s.work[i] = 2 / h * (change/h - along)
 	}
 	length := s.lin.length()
 	return 2*s.lin.accelerate(s.workMatrix()) <= 0.3*length

@@ -110,17 +110,12 @@ type orthogonal struct {
 }
 
 func newOrthogonal(a *mat.Dense, rank int) *orthogonal {
-	m, n := a.Dims()
+	_, n := a.Dims()
 	qr := mat.DenseCopyOf(a).RawMatrix()
-	q := &orthogonal{qr: qr, rank: rank, tau: make([]float64, n), piv: make([]int, n), h: make([]float64, n)}
+	q := &orthogonal{qr: qr, rank: rank, tau: make([]float64, n), piv: make([]int, n), h: make([]float64, n), work: make([]float64, 3*n+1)}
 	for j := range q.piv {
 		q.piv[j] = -1
 	}
-	v := blas64.General{Rows: m, Cols: 1, Stride: 1, Data: make([]float64, m)}
-	q.work = make([]float64, max(
-		query(func(w []float64) { lapack64.Geqp3(qr, q.piv, q.tau, w, -1) }),
-		query(func(w []float64) { lapack64.Ormqr(blas.Left, blas.Trans, qr, q.tau, v, w, -1) }),
-	))
 	lapack64.Geqp3(qr, q.piv, q.tau, q.work, len(q.work))
 	return q
 }
