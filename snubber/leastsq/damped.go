@@ -148,15 +148,6 @@ func (l *linearised) unpivot() {
 // length is |D d| of the last step.
 func (l *linearised) length() float64 { return blas64.Nrm2(blas64.Vector{N: l.n, Inc: 1, Data: l.z}) }
 
-// size is |D q|.
-func (l *linearised) size(q []float64) float64 {
-	var s float64
-	for j, v := range q {
-		s = math.Hypot(s, l.scale[j]*v)
-	}
-	return s
-}
-
 // predicted is the fall of |r|^2 that the linearised problem promises for the last step, taken with damping mu:
 // |R z|^2 + 2 mu |z|^2.
 func (l *linearised) predicted(mu float64) float64 {

@@ -24,6 +24,9 @@
 //	    Mathematics 630, 105 (1978): the scaling of the parameters
 //	Nielsen, "Damping parameter in Marquardt's method", report IMM-REP-1999-05, Technical University
 //	    of Denmark (1999): the damping from the gain ratio
+//	Transtrum and Sethna, "Improvements to the Levenberg-Marquardt algorithm for nonlinear
+//	    least-squares minimization", arXiv:1201.5885 (2012): the geodesic acceleration, which also
+//	    shortens steps that leave the region where the linearised model means anything
 //	Bates and Watts, "A relative offset orthogonality convergence criterion for nonlinear least
 //	    squares", Technometrics 23, 179 (1981)
 //

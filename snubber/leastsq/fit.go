@@ -13,8 +13,8 @@ import (
 // Start. How it ended is the result's Status; an error means that there is no result: the problem or the options make
 // no sense, or the residuals at Start are not finite.
 //
-// The context is asked before each evaluation in the iteration; when it has ended, the best parameters so far
-// come back with the status Stopped.
+// The context is asked before each step and each Jacobian; when it has ended, the best parameters so far come back with
+// the status Stopped. The problem's functions are called one at a time.
 func Fit(ctx context.Context, problem Problem, options Options) (*Result, error) {
 	if err := problem.check(); err != nil {
 		return nil, fmt.Errorf("fit: %w", err)

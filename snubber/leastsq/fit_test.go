@@ -273,3 +273,69 @@ func TestFitRefuses(t *testing.T) {
 		}
 	}
 }
+
+// Whatever the model and its start, no result holds a NaN, and a covariance is one: no correlation beyond 1.
+func TestNoNaN(t *testing.T) {
+	rapid.Check(t, func(t *rapid.T) {
+		n := rapid.IntRange(1, 4).Draw(t, "parameters")
+		m := n + rapid.IntRange(0, 4).Draw(t, "more readings")
+		coefficient := rapid.SampledFrom([]float64{0, 0, 1, -1, 0.5, 1e-9, 1e9, 3})
+		a := rapid.SliceOfN(coefficient, m*n, m*n).Draw(t, "a")
+		y := rapid.SliceOfN(coefficient, m, m).Draw(t, "y")
+		bend := coefficient.Draw(t, "bend")
+		pr := Problem{N: m, Start: repeat(1, n), Residuals: func(dst, p []float64) {
+			for i := range dst {
+				var s float64
+				for j, v := range p {
+					s += a[i*n+j] * v
+				}
+				dst[i] = s - y[i]
+				if bend != 0 {
+					dst[i] += bend * s * math.Sqrt(s) // no value where s < 0
+				}
+			}
+		}}
+		if rapid.Bool().Draw(t, "bounded") {
+			pr.Bounds = make([]Bound, n)
+			pr.Bounds[0] = Above(0)
+		}
+		if rapid.Bool().Draw(t, "given Jacobian") {
+			pr.Jacobian = func(dst *mat.Dense, p []float64) {
+				for i := range m {
+					row := a[i*n : (i+1)*n]
+					s := floats.Dot(row, p)
+					for j := range p {
+						dst.Set(i, j, row[j])
+						if bend != 0 {
+							dst.Set(i, j, row[j]*(1+1.5*bend*math.Sqrt(s)))
+						}
+					}
+				}
+			}
+		}
+		res, err := Fit(context.Background(), pr, Options{})
+		if err != nil {
+			if !strings.Contains(err.Error(), "start where the model has values") {
+				t.Fatal(err)
+			}
+			return
+		}
+		if bend == 0 && pr.Bounds == nil && res.Condition < 1e6 && res.Status != Converged && res.Status != Singular {
+			t.Fatalf("a linear model ends as %v: %s", res.Status, res.Reason)
+		}
+		all := append(append([]float64{res.Chi2}, res.P...), res.Residuals...)
+		for _, by := range []Scale{Stated, Scatter} {
+			all = append(all, res.StdErr(by)...)
+			if c := res.Covariance(by); c != nil {
+				all = append(all, c.RawSymmetric().Data...)
+				all = append(all, res.Correlation().RawSymmetric().Data...)
+			}
+		}
+		if c := res.Correlation(); c != nil && mat.Max(c) > 1+1e-9 {
+			t.Fatalf("correlation %v", mat.Formatted(c))
+		}
+		if floats.HasNaN(all) {
+			t.Fatalf("%+v", res)
+		}
+	})
+}

@@ -27,7 +27,7 @@ func (s *solver) iterate(ctx context.Context) (Status, string) {
 			return NonFinite, "the Jacobian at the best parameters is not finite"
 		}
 		s.lin.gaussNewton()
-		full := s.lin.length() / s.lin.size(s.q)
+		full := s.lin.length() / s.size()
 		if s.arrived() {
 			return Converged, "the residuals stand at right angles to the model, or the step vanishes"
 		}
@@ -48,11 +48,26 @@ func (s *solver) iterate(ctx context.Context) (Status, string) {
 
 // arrived says whether the undamped step just found is not worth taking.
 func (s *solver) arrived() bool {
-	if s.offset <= s.o.Offset || s.lin.length() <= s.o.Step*s.lin.size(s.q) {
+	if s.offset <= s.o.Offset || s.lin.length() <= s.o.Step*s.size() {
 		return true
 	}
 	// An undamped step that did not bring the offset down has met the rounding.
 	return s.from <= nearby && s.offset > 0.9*s.from
+}
+
+// size is |D q|, what a step is held against. A parameter near zero counts by its typical size, the logarithm of one
+// with a bound by one.
+func (s *solver) size() float64 {
+	var sum float64
+	for j, q := range s.q {
+		least := 1.
+		if s.pr.bound(j) == (Bound{}) {
+			least = s.pr.typical(j)
+		}
+		v := s.lin.scale[j] * max(math.Abs(q), least)
+		sum += v * v
+	}
+	return math.Sqrt(sum)
 }
 
 // undamped takes the full Gauss-Newton step.
@@ -76,7 +91,7 @@ func (s *solver) downhill(ctx context.Context) (moved, stopped bool) {
 			return false, true
 		}
 		s.lin.damped(s.mu)
-		if s.lin.length() <= epsilon*s.lin.size(s.q) || s.mu > 1e40 {
+		if s.lin.length() <= epsilon*s.size() || s.mu > 1e40 {
 			return false, false
 		}
 		predicted := s.lin.predicted(s.mu)
@@ -138,7 +153,7 @@ func (s *solver) result(status Status, reason string) *Result {
 	n := len(s.p)
 	res := &Result{P: s.p, Residuals: s.r, Chi2: s.cost, Dof: s.pr.N - n, Iterations: s.iterations,
 		Status: status, Reason: reason, AtBound: make([]bool, n)}
-	s.differentiate(true)
+	s.differentiate(status != Stopped) // who has stopped the fit does not wait for the best differences
 	s.weigh()
 	for j := range n {
 		res.AtBound[j] = s.held(j)

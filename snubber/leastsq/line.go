@@ -58,6 +58,9 @@ func Line(x, y, ux, uy, corr []float64) (LineFit, error) {
 		if !finite(b) {
 			return LineFit{}, fmt.Errorf("fit a line: the slope comes out as %g: the points do not spread in x beyond their uncertainties", b)
 		}
+		if fit.Iterations > 50 {
+			b = last + (b-last)/2 // half steps end the swing to and fro that very uncertain points can set off
+		}
 		settled = math.Abs(b-last) <= 4*epsilon*max(math.Abs(b), math.Abs(last)) || b == 0 && last == 0 ||
 			fit.Iterations > 20 && math.Abs(b-last) <= 64*epsilon*(1+math.Abs(b))
 	}

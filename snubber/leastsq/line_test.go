@@ -200,6 +200,13 @@ func TestLineRefuses(t *testing.T) {
 		{three, []float64{1, nan, 1}, nil, three, nil, "point 1 is (2, NaN)"},
 		{three, three, nil, three, []float64{0, 0, 1.5}, "point 2 has the correlation 1.5"},
 		{three, []float64{5, 5, 5}, three, nil, nil, "no uncertainty across the line"},
+		{ // uncertainties as large as the spread: the iteration swings without end
+			[]float64{0.4631285074467805, -1.2067727387055893, 0.8237835860844145},
+			[]float64{0.18757504013750023, -0.3139558606311811, 1.8722464296052492},
+			[]float64{0.40367440891808487, 1.1687657558237023, 0.3523000340715326},
+			[]float64{0.6095798876125476, 0.47642630784545165, 1.0345612477653479},
+			nil, "no convergence after 500 iterations",
+		},
 	} {
 		_, err := Line(c.x, c.y, c.ux, c.uy, c.corr)
 		if err == nil || !strings.Contains(err.Error(), c.says) {

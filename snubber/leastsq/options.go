@@ -14,7 +14,8 @@ type Options struct {
 	Offset float64
 
 	// Step is the relative size of a full Gauss-Newton step, |D dq|/|D q|, at which the fit has converged,
-	// dimensionless, from 1e-16 to 0.1. It ends fits whose residuals vanish. 0 means 1e-14.
+	// dimensionless, from 1e-16 to 0.1; a parameter near zero counts by its typical size. It ends fits whose
+	// residuals vanish. 0 means 1e-14.
 	Step float64
 
 	// Rank is the smallest singular value of the Jacobian, its columns scaled to length one, as a fraction of the
