@@ -320,8 +320,8 @@ func TestNoNaN(t *testing.T) {
 			}
 			return
 		}
-		if bend == 0 && pr.Bounds == nil && res.Condition < 1e6 && res.Status != Converged && res.Status != Singular {
-			t.Fatalf("a linear model ends as %v: %s", res.Status, res.Reason)
+		if bend == 0 && pr.Bounds == nil && pr.Jacobian != nil && res.Condition < 1e6 && res.Status != Converged && res.Status != Singular {
+			t.Fatalf("a linear model with its derivatives given ends as %v: %s", res.Status, res.Reason)
 		}
 		all := append(append([]float64{res.Chi2}, res.P...), res.Residuals...)
 		for _, by := range []Scale{Stated, Scatter} {
