@@ -43,16 +43,14 @@ func inspect(ctx context.Context, path string, mayMake bool) error {
 	id, version, err := header(ctx, path)
 	var lite *sqlite.Error
 	switch {
-	case errors.As(err, &lite) && lite.Code()&0xff == sqlite3.SQLITE_CORRUPT && exists(path+"-wal"):
-		// A log that has not been copied back yet may hold what seems to be missing: SQLite decides on opening.
+	case errors.As(err, &lite) && lite.Code()&0xff == sqlite3.SQLITE_CORRUPT && (exists(path+"-wal") || exists(path+"-journal")):
+		// A program was killed while it wrote, and left the log or journal by which SQLite makes the file whole when it
+		// is opened. What it then holds, migrate looks at.
 		return nil
 	case err != nil:
 		return explain(path, err)
-	case id == 0:
-		return &Fault{Path: path, Kind: ErrStranger, What: "it is another program's SQLite database", Cure: "name another file; this one was left as it is"}
 	case id != applicationID:
-		return &Fault{Path: path, Kind: ErrStranger, What: fmt.Sprintf("it is another program's SQLite database (application id %#x)", id),
-			Cure: "name another file; this one was left as it is"}
+		return stranger(path, id)
 	}
 	latest, err := latestVersion()
 	if err != nil {
@@ -81,6 +79,14 @@ func notMade(path string, mayMake bool) error {
 		return nil
 	}
 	return &Fault{Path: path, Kind: ErrMissing, What: "there is no logbook in that place", Cure: "log a trial to make one, or name the right file"}
+}
+
+func stranger(path string, id uint32) error {
+	f := &Fault{Path: path, Kind: ErrStranger, What: "it is another program's SQLite database", Cure: "name another file; this one was left as it is"}
+	if id != 0 {
+		f.What += fmt.Sprintf(" (application id %#x)", id)
+	}
+	return f
 }
 
 func newer(path string, version, latest int) error {

@@ -50,13 +50,18 @@ func migrate(ctx context.Context, conn *sql.Conn, path string) error {
 		return err
 	}
 	for {
-		var version int
-		if err := conn.QueryRowContext(ctx, "PRAGMA user_version").Scan(&version); err != nil {
+		var id int32
+		var version, tables int
+		err := conn.QueryRowContext(ctx, "SELECT application_id, user_version, (SELECT count(*) FROM sqlite_schema) FROM pragma_application_id, pragma_user_version").
+			Scan(&id, &version, &tables)
+		if err != nil {
 			return err
 		}
 		switch {
+		case id != applicationID && (id != 0 || version != 0 || tables != 0):
+			return stranger(path, uint32(id))
 		case version == len(scripts):
-			return readSchema(ctx, conn)
+			return nil
 		case version > len(scripts):
 			return newer(path, version, len(scripts))
 		}
@@ -92,10 +97,4 @@ func migrateOnce(ctx context.Context, conn *sql.Conn, scripts []string) (err err
 	}
 	_, err = conn.ExecContext(unhurried, "COMMIT")
 	return err
-}
-
-// readSchema has SQLite parse every table and view: the cheapest look that tells a torn or overwritten file.
-func readSchema(ctx context.Context, conn *sql.Conn) error {
-	var n int
-	return conn.QueryRowContext(ctx, "SELECT count(*) FROM pragma_table_list").Scan(&n)
 }

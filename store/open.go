@@ -67,7 +67,7 @@ func OpenReadOnly(ctx context.Context, path string) (*Logbook, error) {
 		return nil, err
 	}
 	lb, err := openToRead(ctx, path, "mode=ro")
-	if errors.Is(err, ErrReadOnly) && !exists(path+"-wal") {
+	if errors.Is(err, ErrReadOnly) && !exists(path+"-wal") && !exists(path+"-journal") {
 		// No room for the files that let readers and writers share; with no writes pending, none are needed.
 		lb, err = openToRead(ctx, path, "mode=ro&immutable=1")
 	}

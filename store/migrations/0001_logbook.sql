@@ -134,6 +134,23 @@ CREATE TRIGGER strike_stays BEFORE UPDATE ON strike BEGIN
 CREATE TRIGGER strike_kept BEFORE DELETE ON strike BEGIN
   SELECT RAISE(ABORT, 'a strike is never deleted: log the trial again if it was right'); END;
 
+-- INSERT OR REPLACE would delete without asking the triggers above, unless recursive_triggers is on.
+CREATE TRIGGER trial_once BEFORE INSERT ON trial
+WHEN EXISTS (SELECT 1 FROM trial WHERE id = NEW.id OR seq = NEW.seq) BEGIN
+  SELECT RAISE(ABORT, 'a trial is never replaced: strike it with a reason and log it again'); END;
+CREATE TRIGGER reading_once BEFORE INSERT ON reading
+WHEN EXISTS (SELECT 1 FROM reading WHERE trial = NEW.trial AND quantity = NEW.quantity) BEGIN
+  SELECT RAISE(ABORT, 'a reading is never replaced: strike its trial with a reason and log it again'); END;
+CREATE TRIGGER reading_repeat_once BEFORE INSERT ON reading_repeat
+WHEN EXISTS (SELECT 1 FROM reading_repeat WHERE trial = NEW.trial AND quantity = NEW.quantity AND n = NEW.n) BEGIN
+  SELECT RAISE(ABORT, 'a repeat is never replaced: strike its trial with a reason and log it again'); END;
+CREATE TRIGGER waveform_once BEFORE INSERT ON waveform
+WHEN EXISTS (SELECT 1 FROM waveform WHERE id = NEW.id OR seq = NEW.seq) BEGIN
+  SELECT RAISE(ABORT, 'a waveform is never replaced: strike its trial with a reason and log it again'); END;
+CREATE TRIGGER strike_once BEFORE INSERT ON strike
+WHEN EXISTS (SELECT 1 FROM strike WHERE id = NEW.id OR seq = NEW.seq) BEGIN
+  SELECT RAISE(ABORT, 'a strike is never replaced: log the trial again if it was right'); END;
+
 -- The history as any SQL tool reads it; the package documentation describes every column.
 CREATE VIEW trial_table AS
 SELECT
