@@ -47,6 +47,16 @@ func (b Board) ChargeAt(v float64) float64 {
 	return b.FixedC*v + b.JunctionC*b.JunctionV/n*(math.Pow(1+v/b.JunctionV, n)-1)
 }
 
+// chargeArea is the integral of ChargeAt from 0 to v >= 0 volts, J.
+func (b Board) chargeArea(v float64) float64 {
+	area := b.FixedC * v * v / 2
+	if b.JunctionC > 0 {
+		n := 1 - b.Grading
+		area += b.JunctionC * b.JunctionV / n * (b.JunctionV/(n+1)*(math.Pow(1+v/b.JunctionV, n+1)-1) - v)
+	}
+	return area
+}
+
 // Check reports the first value that no board can have.
 func (b Board) Check() error {
 	switch {

@@ -28,11 +28,11 @@ func Default() Config {
 	return Config{
 		Board: Board{
 			Inductance: 13.4e-9, Resistance: 0.72,
-			FixedC: 175e-12, JunctionC: 160e-12, JunctionV: 9, Grading: 0.5,
-			FallTime: 0.6e-9, BodyDrop: 0.8, BodyOhm: 0.05,
-			PerLoadA: 1.15, Duty: 0.26,
+			FixedC: 180e-12, JunctionC: 150e-12, JunctionV: 9, Grading: 0.5,
+			FallTime: 0.5e-9, BodyDrop: 0.8, BodyOhm: 0.05,
+			PerLoadA: 1.1, Duty: 0.26,
 		},
-		BusV: 48, LoadA: 3.5, SwitchingHz: 400e3, ProbeF: 3.9e-12,
+		BusV: 48, LoadA: 2.5, SwitchingHz: 400e3, ProbeF: 3.9e-12,
 		Parts:      Parts{CTol: 0.02, RTol: 0.01, ESR: 0.03, DiodeDrop: 0.6, DiodeOhm: 0.15, Seed: 1},
 		Scope:      Scope{RateHz: 5e9, Points: 2000, Before: 200, NoiseV: 0.3, SpanV: 160, BottomV: -20},
 		MeterError: 5e-4, CounterPPM: 20, Seed: 1,

@@ -12,7 +12,7 @@ type record struct {
 	pieces []piece
 	end    float64 // s
 	peak   Response
-	charge float64 // C drawn from the bus from t = 0 to the end
+	charge float64 // C that node and network have taken up by the end
 }
 
 // piece is the node voltage over one step: what step.at gives for v alone.
@@ -37,7 +37,6 @@ type Response struct {
 // solve integrates the circuit to end and keeps the node voltage.
 func (c *circuit) solve(ctx context.Context, end, tolerance float64) (*record, error) {
 	r := &record{end: end}
-	stored := c.stored(c.start())
 	last := c.start()
 	err := c.integrate(ctx, end, tolerance, func(s *step) {
 		r.pieces = append(r.pieces, piece{t: s.t, h: s.h, v: s.from[1], rise: s.to[1] - s.from[1],
@@ -56,7 +55,7 @@ func (c *circuit) solve(ctx context.Context, end, tolerance float64) (*record, e
 		return nil, err
 	}
 	r.peak.Settled = last[1]
-	r.charge = c.stored(last) - stored
+	r.charge = c.stored(last)
 	return r, nil
 }
 

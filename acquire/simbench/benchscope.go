@@ -1,0 +1,78 @@
+package simbench
+
+import (
+	"fmt"
+	"math/rand/v2"
+
+	"ringbook/acquire/simbench/device"
+)
+
+// newScope makes the oscilloscope. MEASure takes a new capture and reads a figure from it; FETCh reads one from
+// the capture kept last, which CAPTure:PREamble? and CAPTure:DATA? hand out:
+//
+//	CAPTure:PREamble?  points, time of the first sample (s), step (s), volts of code 0, volts per code
+//	CAPTure:DATA?      a definite length block of one byte per sample
+func (b *Bench) newScope() (*device.Instrument, error) {
+	commands := []device.Command{
+		{Header: "CAPTure[:TAKE]", Do: func([]device.Arg) (string, error) {
+			_, err := b.capture()
+			return "", err
+		}},
+		{Header: "CAPTure:PREamble?", Do: b.fromKept(func(c Capture) string {
+			return fmt.Sprintf("%d,%s,%s,%s,%s", len(c.Codes), device.NR3(c.StartS, 9), device.NR3(c.StepS, 9),
+				device.NR3(c.BottomV, 9), device.NR3(c.VoltsPerBit, 9))
+		})},
+		{Header: "CAPTure:DATA?", Do: b.fromKept(func(c Capture) string { return device.Block(c.Codes) })},
+	}
+	for header, figure := range map[string]func(Figures) float64{
+		"FREQuency":       func(f Figures) float64 { return f.RingHz },
+		"RING:DECay":      func(f Figures) float64 { return f.DecayS },
+		"VOLTage:MAXimum": func(f Figures) float64 { return f.PeakV },
+		"VOLTage:HIGH":    func(f Figures) float64 { return f.SettledV },
+	} {
+		read := func(c Capture) string { return device.NR3(figure(c.Evaluate()), 6) }
+		commands = append(commands,
+			device.Command{Header: "MEASure[:SCALar]:" + header + "?", Do: func([]device.Arg) (string, error) {
+				c, err := b.capture()
+				if err != nil {
+					return "", err
+				}
+				return read(c), nil
+			}},
+			device.Command{Header: "FETCh:" + header + "?", Do: b.fromKept(read)})
+	}
+	forget := func() {
+		b.mu.Lock()
+		defer b.mu.Unlock()
+		b.kept = nil
+	}
+	return device.New("RINGBOOK,SIMULATED SCOPE,0,1", forget, commands)
+}
+
+// capture takes a record of the board as it is now, and keeps it.
+func (b *Bench) capture() (Capture, error) {
+	b.mu.Lock()
+	defer b.mu.Unlock()
+	bus, load := b.point()
+	r, err := b.model.record(b.ctx, b.network, bus, load)
+	if err != nil {
+		return Capture{}, device.Errorf(-240, "%v", err)
+	}
+	b.captures++
+	c := b.model.cfg.Scope.capture(r, rand.New(rand.NewPCG(b.model.cfg.Seed, b.captures)))
+	b.kept = &c
+	return c, nil
+}
+
+// fromKept makes a query that answers from the capture kept.
+func (b *Bench) fromKept(answer func(Capture) string) func([]device.Arg) (string, error) {
+	return func([]device.Arg) (string, error) {
+		b.mu.Lock()
+		c := b.kept
+		b.mu.Unlock()
+		if c == nil {
+			return "", device.Errorf(-230, "no capture is kept; send CAPTure first")
+		}
+		return answer(*c), nil
+	}
+}

@@ -1,4 +1,0 @@
-package simbench
-
-// Names lists the instruments of the bench.
-func Names() []string { return []string{"scope", "supply", "counter", "fixture"} }
