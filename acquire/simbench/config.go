@@ -34,7 +34,7 @@ func Default() Config {
 		},
 		BusV: 48, LoadA: 2.5, SwitchingHz: 400e3, ProbeF: 3.9e-12,
 		Parts:      Parts{CTol: 0.02, RTol: 0.01, ESR: 0.03, DiodeDrop: 0.6, DiodeOhm: 0.15, Seed: 1},
-		Scope:      Scope{RateHz: 5e9, Points: 2000, Before: 200, NoiseV: 0.3, SpanV: 160, BottomV: -20},
+		Scope:      Scope{RateHz: 5e9, Points: 2000, Before: 200, NoiseV: 0.6, SpanV: 160, BottomV: -20},
 		MeterError: 5e-4, CounterPPM: 20, Seed: 1,
 	}
 }

@@ -16,8 +16,9 @@ const fewestCrossings = 4
 
 // Evaluate reads the figures from the samples. The samples are first smoothed by a running parabola (Savitzky
 // and Golay, Anal. Chem. 36, 1627, 1964); the frequency is the weighted straight line through the
-// crossings of the settled level, the decay that through the logarithm of the swing from each extreme to the
-// next, in which neither the level nor the asymmetry of the swings enters.
+// crossings of the settled level, the decay that through the logarithm of the swing from the middle of each
+// half wave to that of the next. Middles between crossings stand at one phase of the ring, and noise does not
+// lift them as it lifts extremes; in their differences neither the level nor the asymmetry of the waves enters.
 func (c Capture) Evaluate() Figures {
 	v := smooth(c.Volts())
 	f := Figures{RingHz: math.NaN(), DecayS: math.NaN(), PeakV: math.Inf(-1)}
@@ -31,30 +32,30 @@ func (c Capture) Evaluate() Figures {
 		return f
 	}
 	// The swings that count stand well out of the noise and of the steps of the converter.
-	swings := ring(v, f.SettledV, max(8*noise, 1.5*c.VoltsPerBit))
+	swings := ring(v, f.SettledV, max(6*noise, 1.5*c.VoltsPerBit))
 	if len(swings) < fewestCrossings {
 		return f
 	}
 	var time, envelope line
 	for i, s := range swings {
-		time.add(float64(i), s.crossing, s.size*s.size)
+		time.add(float64(i), s.begin, s.size*s.size)
 		if i > 0 {
-			last := swings[i-1]
-			whole := s.size + last.size
-			envelope.add((s.extreme+last.extreme)/2, math.Log(whole), whole*whole)
+			if whole := s.size + swings[i-1].size; whole > 0 {
+				envelope.add(s.begin, math.Log(whole), whole*whole)
+			}
 		}
 	}
-	if d := -envelope.slope() / c.StepS; d > 0 {
+	if d := -envelope.slope() / c.StepS; d > 0 && time.slope() > 0 {
 		f.RingHz = 1 / (2 * time.slope() * c.StepS)
 		f.DecayS = 1 / d
 	}
 	return f
 }
 
-// swing is one half wave about the settled level: where it begins, and its extreme. Instants are in samples.
+// swing is one half wave about the settled level.
 type swing struct {
-	crossing, extreme float64
-	size              float64 // V, > 0: how far the extreme is from the level
+	begin, end float64 // in samples: the crossings that bound it
+	size       float64 // V: how far its middle is from the level, on the half wave's own side
 }
 
 // ring lists the half waves after the edge's own overshoot, for as long as they exceed the threshold and
@@ -66,34 +67,32 @@ func ring(v []float64, level, threshold float64) (list []swing) {
 		i++
 	}
 	var (
-		now  swing // the half wave being followed
-		side = 1.0 // +1 above the level, -1 below
-		zero float64
-		out  bool // the level has been crossed at zero, but not yet left by the threshold
+		side  = 1.0  // +1 above the level, -1 below
+		begin = -1.0 // where the half wave being followed began; -1: the edge's
+		zero  float64
+		out   bool // the level has been crossed at zero, but not yet left by the threshold
 	)
 	for ; i < len(v); i++ {
 		x := side * (v[i] - level)
-		if x > now.size {
-			now.size, now.extreme = x, float64(i)
-		}
 		switch {
 		case x >= 0:
 			out = false
 		case !out:
 			before := side * (v[i-1] - level)
-			zero, out = float64(i)-x/(x-before), true
+			zero, out = float64(i)+x/(before-x), true
 		}
 		if x > -threshold {
 			continue
 		}
-		if now.crossing > 0 {
-			list = append(list, now)
+		if begin >= 0 {
+			if n := len(list); n > 0 && zero-begin > 1.5*(begin-list[0].begin)/float64(n) {
+				return list
+			}
+			middle, part := math.Modf((begin + zero) / 2)
+			at := v[int(middle)] + part*(v[int(middle)+1]-v[int(middle)])
+			list = append(list, swing{begin: begin, end: zero, size: side * (at - level)})
 		}
-		if n := len(list); n > 1 && zero-now.crossing > 1.5*(now.crossing-list[0].crossing)/float64(n-1) {
-			return list
-		}
-		now = swing{crossing: zero, extreme: float64(i), size: -x}
-		side, out = -side, false
+		begin, side, out = zero, -side, false
 	}
 	return list
 }

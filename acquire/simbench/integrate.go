@@ -81,7 +81,7 @@ func (c *circuit) take(t float64, y, k1 state, m mode, h, tolerance float64, sca
 // mostSteps bounds an integration; the stiffest circuit that the checks let through needs a fifth of it.
 const mostSteps = 20_000_000
 
-// integrate follows the circuit from the switch's letting go to t = end and hands over every step. tolerance
+// integrate follows the circuit from the switch's letting go to t = end and hands over every step, which each may not keep. tolerance
 // is the relative error allowed in one step. A step never reaches across the end of the current's fall,
 // nor across an instant at which a diode switches: there it ends.
 func (c *circuit) integrate(ctx context.Context, end, tolerance float64, each func(*step)) error {
@@ -92,6 +92,8 @@ func (c *circuit) integrate(ctx context.Context, end, tolerance float64, each fu
 		scale = c.scale()
 		h     = end / 1e4
 		k1    = c.slope(t, y, m)
+		s     step // one for all steps
+		size  float64
 	)
 	for n := 0; t < end; n++ {
 		if n >= mostSteps {
@@ -108,7 +110,7 @@ func (c *circuit) integrate(ctx context.Context, end, tolerance float64, each fu
 		if lands {
 			h = stop - t
 		}
-		s, size := c.take(t, y, k1, m, h, tolerance, scale)
+		s, size = c.take(t, y, k1, m, h, tolerance, scale)
 		if math.IsNaN(size) {
 			return errors.New("integrate the board: the voltages are not finite")
 		}
