@@ -3,6 +3,7 @@ package scpi
 import (
 	"context"
 	"errors"
+	"fmt"
 	"os"
 	"time"
 )
@@ -55,7 +56,7 @@ func (c *Conn) within(ctx context.Context, timeout time.Duration, do func() erro
 	case late && !ours:
 		return context.DeadlineExceeded // the context's own timer may fire a moment later
 	case late || errors.Is(err, os.ErrDeadlineExceeded):
-		return os.ErrDeadlineExceeded
+		return fmt.Errorf("%w after %s", os.ErrDeadlineExceeded, timeout)
 	}
 	return err
 }

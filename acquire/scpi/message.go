@@ -137,3 +137,6 @@ func formatNR3(v float64) string {
 }
 
 func isDigit(c byte) bool { return c >= '0' && c <= '9' }
+
+// String gives the parameter as it will be sent; "" for one that will be refused.
+func (a Arg) String() string { return a.text }

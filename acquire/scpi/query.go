@@ -123,7 +123,7 @@ const probe = time.Second
 // again. nil: it did not say why.
 func (c *Conn) whySilent(ctx context.Context, msg string, silent error) error {
 	var link *LinkError
-	if c.opt.NoErrorQueue || !errors.As(silent, &link) || c.link == nil || link.Got != "" || link.Err != os.ErrDeadlineExceeded {
+	if c.opt.NoErrorQueue || !errors.As(silent, &link) || c.link == nil || link.Got != "" || !errors.Is(link.Err, os.ErrDeadlineExceeded) {
 		return nil
 	}
 	queue := c.readQueue(ctx, msg, min(probe, c.opt.Timeout))

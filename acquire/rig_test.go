@@ -1,0 +1,140 @@
+package acquire_test
+
+import (
+	"bytes"
+	"errors"
+	"os"
+	"path/filepath"
+	"strings"
+	"testing"
+	"time"
+
+	"github.com/google/go-cmp/cmp"
+
+	"ringbook/acquire"
+	"ringbook/snubber"
+)
+
+func TestLoadRig(t *testing.T) {
+	got, err := acquire.LoadRig("testdata/rig.toml")
+	if err != nil {
+		t.Fatal(err)
+	}
+	want := acquire.Rig{Instruments: []acquire.Instrument{
+		{Name: "jig", Address: "tcp://192.0.2.12", NoErrorQueue: true, Fit: "ROUTe:NETWork {network},{c},{r}"},
+		{
+			Name: "scope", Address: "tcp://192.0.2.10:5025", Timeout: 8 * time.Second, Setup: []string{"*CLS", "MEASure:SOURce CHANnel1"},
+			Readings: []acquire.Query{
+				{Quantity: snubber.DecayS, Query: "MEASure:DTIMe?"},
+				{Quantity: snubber.PeakV, Query: "MEASure:VMAX?", Scale: 10, Accuracy: acquire.Accuracy{Percent: 2, Fixed: 0.4}},
+				{Quantity: snubber.RingHz, Query: "MEASure:FREQuency?", Accuracy: acquire.Accuracy{Percent: 0.01}, Repeats: 10},
+			},
+		},
+		{
+			Name: "supply", Address: "serial:///dev/ttyUSB0?baud=115200", Terminator: "\r\n",
+			Readings: []acquire.Query{{Quantity: snubber.BusV, Query: "MEASure:VOLTage:DC?", Accuracy: acquire.Accuracy{Percent: 0.1, Fixed: 0.02}, Repeats: 3}},
+		},
+	}}
+	if d := cmp.Diff(want, got); d != "" {
+		t.Error(d)
+	}
+}
+
+// The example of the package comment is the file in testdata, line for line.
+func TestDocumentedRig(t *testing.T) {
+	doc, err := os.ReadFile("doc.go")
+	if err != nil {
+		t.Fatal(err)
+	}
+	rig, err := os.ReadFile("testdata/rig.toml")
+	if err != nil {
+		t.Fatal(err)
+	}
+	var want bytes.Buffer
+	for line := range strings.Lines(string(rig)) {
+		if line != "\n" {
+			want.WriteString("//\t")
+		} else {
+			want.WriteString("//")
+		}
+		want.WriteString(line)
+	}
+	if !bytes.Contains(doc, want.Bytes()) {
+		t.Errorf("doc.go does not hold testdata/rig.toml as it stands:\n%s", want.String())
+	}
+}
+
+func TestRigErrors(t *testing.T) {
+	const good = `[instrument.scope]
+address = "tcp://192.0.2.10"
+
+[instrument.scope.reading.ring_hz]
+query = "MEASure:FREQuency?"
+`
+	for name, c := range map[string]struct{ text, want string }{
+		"empty":               {"", "rig.toml: no instrument provides a reading"},
+		"not toml":            {"[instrument.scope\n", "rig.toml, line 2"},
+		"key twice":           {"[instrument.a]\naddress = \"x\"\naddress = \"y\"\n", "line 3"},
+		"unknown table":       {good + "\n[scope]\n", "line 7: scope: there is no such key: the file holds [instrument.NAME] tables"},
+		"unknown key":         {strings.Replace(good, "\n\n", "\nadress = \"x\"\n\n", 1), "line 3: instrument.scope.adress: there is no such key: an instrument has address"},
+		"unknown reading key": {good + "repeat = 5\n", "line 6: instrument.scope.reading.ring_hz.repeat: there is no such key: a reading has query"},
+		"unknown accuracy":    {good + "accuracy = { percent = 1, range = 2 }\n", "line 6: instrument.scope.reading.ring_hz.accuracy.range: there is no such key: accuracy has"},
+		"unknown quantity":    {strings.Replace(good, "ring_hz", "ring_mhz", 1), `line 4: instrument.scope.reading.ring_mhz: "ring_mhz" is no reading: there are ring_hz, decay_s`},
+		"wrong type":          {good + "repeats = \"five\"\n", "line 6"},
+		"address of no kind":  {strings.Replace(good, "tcp://192.0.2.10", "192.0.2.10:5025", 1), `line 2: instrument.scope.address: address "192.0.2.10:5025": it must begin with tcp://`},
+		"no address":          {"[instrument.scope.reading.ring_hz]\nquery = \"F?\"\n", "instrument.scope: its address is missing"},
+		"no query":            {strings.Replace(good, "query = \"MEASure:FREQuency?\"\n", "", 1), "line 4: instrument.scope.reading.ring_hz: its query is missing"},
+		"no question":         {strings.Replace(good, "FREQuency?", "FREQuency", 1), `line 5: instrument.scope.reading.ring_hz.query: "MEASure:FREQuency" is no query`},
+		"two in one":          {strings.Replace(good, "FREQuency?", "FREQuency?;*RST", 1), "line 5: instrument.scope.reading.ring_hz.query: message"},
+		"scale 0":             {good + "scale = 0\n", "line 6: instrument.scope.reading.ring_hz.scale: 0"},
+		"scale inf":           {good + "scale = inf\n", "line 6: instrument.scope.reading.ring_hz.scale: +Inf"},
+		"repeats 0":           {good + "repeats = 0\n", "line 6: instrument.scope.reading.ring_hz.repeats: 0"},
+		"repeats -1":          {good + "repeats = -1\n", "repeats: -1: it must be 1 to 1000"},
+		"accuracy negative":   {good + "accuracy = { percent = -1 }\n", "line 6: instrument.scope.reading.ring_hz.accuracy.percent: -1"},
+		"accuracy nan":        {good + "accuracy = { fixed = nan }\n", "accuracy.fixed: NaN"},
+		"timeout no unit":     {strings.Replace(good, "\n\n", "\ntimeout = \"5\"\n\n", 1), `line 3: instrument.scope.timeout: "5": write a time`},
+		"timeout 0":           {strings.Replace(good, "\n\n", "\ntimeout = \"0s\"\n\n", 1), `timeout: "0s"`},
+		"terminator":          {strings.Replace(good, "\n\n", "\nterminator = \"eoi\"\n\n", 1), `line 3: instrument.scope.terminator: "eoi": it must be lf, crlf or cr`},
+		"setup":               {strings.Replace(good, "\n\n", "\nsetup = [\"*RST; *CLS\"]\n\n", 1), "line 3: instrument.scope.setup: message"},
+		"same reading twice": {good + "[instrument.meter]\naddress = \"tcp://192.0.2.11\"\n[instrument.meter.reading.ring_hz]\nquery = \"READ?\"\n",
+			"instrument.scope.reading.ring_hz: meter provides this reading already"},
+		"fit without c":     {good + "[instrument.jig]\naddress = \"tcp://192.0.2.12\"\nfit = \"ROUTe:CLOSe\"\n", "line 8: instrument.jig.fit: fit command"},
+		"fit unknown brace": {good + "[instrument.jig]\naddress = \"tcp://192.0.2.12\"\nfit = \"ROUTe {c},{l}\"\n", "only {network}, {c} and {r}"},
+		"fit empty":         {good + "[instrument.jig]\naddress = \"tcp://192.0.2.12\"\nfit = \"\"\n", "jig.fit: it is empty"},
+		"fit query":         {good + "[instrument.jig]\naddress = \"tcp://192.0.2.12\"\nfit = \"ROUTe? {c}\"\n", "a query fits nothing"},
+		"fit twice":         {good + "[instrument.jig]\naddress = \"tcp://192.0.2.12\"\nfit = \"R {c}\"\n[instrument.kit]\naddress = \"tcp://192.0.2.12\"\nfit = \"R {c}\"\n", "line 11: instrument.kit.fit: jig fits networks already"},
+		"instrument's name": {strings.ReplaceAll(good, "scope", "\"my scope\""), "a name is letters, digits"},
+	} {
+		t.Run(name, func(t *testing.T) {
+			_, err := acquire.ParseRig("rig.toml", []byte(c.text))
+			var wrong *acquire.RigError
+			if !errors.As(err, &wrong) || !strings.Contains(err.Error(), c.want) || !strings.HasPrefix(err.Error(), "rig.toml") {
+				t.Errorf("%v\nwant it to say %s", err, c.want)
+			}
+		})
+	}
+	if _, err := acquire.ParseRig("rig.toml", []byte(good)); err != nil {
+		t.Errorf("the good one: %v", err)
+	}
+	if _, err := acquire.LoadRig(filepath.Join(t.TempDir(), "rig.toml")); err == nil || !strings.Contains(err.Error(), "there is no such file") {
+		t.Errorf("no file: %v", err)
+	}
+}
+
+func FuzzParseRig(f *testing.F) {
+	good, err := os.ReadFile("testdata/rig.toml")
+	if err != nil {
+		f.Fatal(err)
+	}
+	f.Add(string(good))
+	f.Add("[instrument.a]\nx = 1\n")
+	f.Add("instrument = 3\n")
+	f.Add("[[instrument]]\naddress = \"x\"\n")
+	f.Add("[instrument.\"\"]\n")
+	f.Fuzz(func(t *testing.T, text string) {
+		rig, err := acquire.ParseRig("rig.toml", []byte(text))
+		if err == nil && rig.Check() != nil {
+			t.Fatalf("what was read does not stand its own check: %v", rig.Check())
+		}
+	})
+}

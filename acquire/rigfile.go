@@ -1,0 +1,137 @@
+package acquire
+
+import (
+	"errors"
+	"fmt"
+	"maps"
+	"os"
+	"slices"
+	"strings"
+	"time"
+
+	"github.com/BurntSushi/toml"
+
+	"ringbook/snubber"
+)
+
+// LoadRig reads a rig file.
+func LoadRig(path string) (Rig, error) {
+	data, err := os.ReadFile(path)
+	if errors.Is(err, os.ErrNotExist) {
+		return Rig{}, fmt.Errorf("rig file %s: there is no such file: write one that names your instruments", path)
+	}
+	if err != nil {
+		return Rig{}, fmt.Errorf("rig file: %w", err)
+	}
+	return ParseRig(path, data)
+}
+
+// The rig file as TOML has it. Pointers tell what is left out from what is zero.
+type rigFile struct {
+	Instrument map[string]instrumentFile `toml:"instrument"`
+}
+
+type instrumentFile struct {
+	Address    string                 `toml:"address"`
+	Timeout    *string                `toml:"timeout"`
+	Terminator *string                `toml:"terminator"`
+	ErrorQueue *bool                  `toml:"error_queue"`
+	Setup      []string               `toml:"setup"`
+	Fit        *string                `toml:"fit"`
+	Reading    map[string]readingFile `toml:"reading"`
+}
+
+type readingFile struct {
+	Query    string   `toml:"query"`
+	Scale    *float64 `toml:"scale"`
+	Repeats  *int     `toml:"repeats"`
+	Accuracy struct {
+		Percent float64 `toml:"percent"`
+		Fixed   float64 `toml:"fixed"`
+	} `toml:"accuracy"`
+}
+
+// ParseRig reads a rig file's text; name is for errors, which are *RigError and give the line. Unknown
+// keys are errors. Instruments come out in the order of their names.
+func ParseRig(name string, data []byte) (Rig, error) {
+	var file rigFile
+	meta, err := toml.Decode(string(data), &file)
+	if err != nil {
+		return Rig{}, syntaxError(name, err)
+	}
+	located := func(err error) error {
+		var wrong *RigError
+		if !errors.As(err, &wrong) {
+			return err
+		}
+		return &RigError{File: name, Line: lineOf(string(data), strings.Split(wrong.Key, ".")), Key: wrong.Key, Err: wrong.Err}
+	}
+	if unknown := meta.Undecoded(); len(unknown) > 0 {
+		key := unknown[0]
+		return Rig{}, &RigError{File: name, Line: lineOf(string(data), key), Key: key.String(), Err: fmt.Errorf("there is no such key: %s", keysAt(len(key)))}
+	}
+	var rig Rig
+	for _, n := range slices.Sorted(maps.Keys(file.Instrument)) {
+		in, err := file.Instrument[n].instrument(n)
+		if err != nil {
+			return Rig{}, located(err)
+		}
+		rig.Instruments = append(rig.Instruments, in)
+	}
+	if err := rig.Check(); err != nil {
+		return Rig{}, located(err)
+	}
+	return rig, nil
+}
+
+func (f instrumentFile) instrument(name string) (Instrument, error) {
+	in := Instrument{Name: name, Address: f.Address, Setup: f.Setup, NoErrorQueue: f.ErrorQueue != nil && !*f.ErrorQueue}
+	if f.Timeout != nil {
+		d, err := time.ParseDuration(*f.Timeout)
+		if err != nil || d <= 0 {
+			return in, in.wrong("timeout", "%q: write a time longer than nothing with its unit, such as 500ms or 8s", *f.Timeout)
+		}
+		in.Timeout = d
+	}
+	if f.Terminator != nil {
+		end, ok := map[string]string{"lf": "\n", "crlf": "\r\n", "cr": "\r"}[*f.Terminator]
+		if !ok {
+			return in, in.wrong("terminator", "%q: it must be lf, crlf or cr", *f.Terminator)
+		}
+		in.Terminator = end
+	}
+	if f.Fit != nil {
+		if in.Fit = *f.Fit; in.Fit == "" {
+			return in, in.wrong("fit", "it is empty: give the command, or take the key out")
+		}
+	}
+	for _, quantity := range slices.Sorted(maps.Keys(f.Reading)) {
+		r := f.Reading[quantity]
+		q := Query{Quantity: snubber.Quantity(quantity), Query: r.Query, Accuracy: Accuracy(r.Accuracy)}
+		if r.Scale != nil {
+			if q.Scale = *r.Scale; q.Scale == 0 {
+				return in, in.wrong("reading."+quantity+".scale", "0: every reading would be nothing")
+			}
+		}
+		if r.Repeats != nil {
+			if q.Repeats = *r.Repeats; q.Repeats == 0 {
+				return in, in.wrong("reading."+quantity+".repeats", "0: it must be 1 to 1000")
+			}
+		}
+		in.Readings = append(in.Readings, q)
+	}
+	return in, nil
+}
+
+// keysAt lists the keys there are at a depth of the file, for the cure.
+func keysAt(depth int) string {
+	switch depth {
+	case 1:
+		return "the file holds [instrument.NAME] tables"
+	case 3:
+		return "an instrument has address, timeout, terminator, error_queue, setup, fit and [instrument.NAME.reading.QUANTITY] tables"
+	case 5:
+		return "a reading has query, scale, accuracy and repeats"
+	}
+	return "accuracy has percent and fixed"
+}

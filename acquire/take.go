@@ -1,0 +1,143 @@
+package acquire
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"math"
+
+	"ringbook/acquire/scpi"
+	"ringbook/snubber"
+)
+
+// Result is what one round of readings gave.
+type Result struct {
+	Readings []snubber.Reading // in the order of snubber.Quantities; one that gave nothing is absent
+	Warnings []string          // what is absent or doubtful, why, and the cure
+}
+
+// Progress is one repeat, just read.
+type Progress struct {
+	Quantity   snubber.Quantity
+	Instrument string  // the rig's name for it
+	Repeat     int     // from 1
+	Repeats    int     // how many there will be
+	Value      float64 // in the quantity's unit; NaN when there was no reading
+}
+
+// Take reads every quantity the rig provides, each as often as its repeats say. progress is called after
+// each repeat; nil is allowed.
+//
+// A quantity with no reading (9.91E37) in more than half of its repeats is absent, with a warning; with
+// none in fewer, it is the mean of the rest, with a warning. An instrument that refuses, is silent or
+// talks nonsense ends the round with a *Fault. The next round clears its link first.
+func (s *Station) Take(ctx context.Context, progress func(Progress)) (Result, error) {
+	var result Result
+	for _, quantity := range snubber.Quantities() {
+		in, q := s.provider(quantity)
+		if in == nil {
+			continue
+		}
+		values, err := in.repeat(ctx, q, progress)
+		if err != nil {
+			return Result{}, in.fault("read "+string(quantity), err)
+		}
+		reading, warning := in.reading(q, values)
+		if reading != nil {
+			result.Readings = append(result.Readings, *reading)
+		}
+		if warning != "" {
+			result.Warnings = append(result.Warnings, warning)
+		}
+	}
+	return result, nil
+}
+
+// repeat asks as often as q says and gives the values there were, in the quantity's unit.
+func (in *instrument) repeat(ctx context.Context, q Query, progress func(Progress)) ([]float64, error) {
+	if err := in.ready(ctx); err != nil {
+		return nil, err
+	}
+	var values []float64
+	for i := range q.repeats() {
+		v, err := in.once(ctx, q)
+		if err != nil && !errors.Is(err, scpi.ErrNoReading) {
+			return nil, err
+		}
+		if err == nil {
+			values = append(values, v)
+		}
+		if progress != nil {
+			progress(Progress{q.Quantity, in.Name, i + 1, q.repeats(), v})
+		}
+	}
+	return values, nil
+}
+
+// once asks once. Without a reading it gives NaN and ErrNoReading.
+func (in *instrument) once(ctx context.Context, q Query) (v float64, err error) {
+	header, args, err := scpi.ParseUnit(q.Query)
+	if err != nil {
+		return math.NaN(), err
+	}
+	var raw string
+	err = in.conn.QueryFunc(ctx, func(reply string) (err error) {
+		raw = reply
+		v, err = scpi.ParseNumber(reply)
+		return err
+	}, header, args...)
+	if err != nil {
+		return math.NaN(), err
+	}
+	v *= q.scale()
+	if why := impossible(q.Quantity, v); why != "" {
+		return math.NaN(), fmt.Errorf("reply %q to %q is %s = %g: %s", raw, q.Query, q.Quantity, v, why)
+	}
+	return v, nil
+}
+
+// impossible says why a quantity cannot have this value; "" when it can.
+func impossible(q snubber.Quantity, v float64) string {
+	switch {
+	case math.IsNaN(v) || math.IsInf(v, 0):
+		return "it is beyond all numbers: check the scale in the rig file"
+	case (q == snubber.RingHz || q == snubber.SwitchingHz) && v <= 0:
+		return "a frequency is above zero: check the trigger, and that the board runs"
+	case q == snubber.DecayS && v <= 0:
+		return "a decay time is above zero: check the trigger and the cursors"
+	case q == snubber.TempC && v < -273.15:
+		return "it is below absolute zero: check the sensor and the scale in the rig file"
+	}
+	return ""
+}
+
+// reading makes a reading of what the repeats gave, or says why not.
+func (in *instrument) reading(q Query, values []float64) (*snubber.Reading, string) {
+	none, n := q.repeats()-len(values), q.repeats()
+	if len(values) == 0 || 2*len(values) < n {
+		return nil, fmt.Sprintf("%s is left out: %s gave no reading in %d of %d repeats; check its trigger, its range and the signal", q.Quantity, in.Name, none, n)
+	}
+	mean, u := q.evaluate(values)
+	warning := ""
+	switch {
+	case none > 0:
+		warning = fmt.Sprintf("%s: %s gave no reading in %d of %d repeats; the value is the mean of the other %d", q.Quantity, in.Name, none, n, len(values))
+	case u == 0:
+		warning = fmt.Sprintf("%s: its uncertainty is not known, since the repeats do not differ and no accuracy is stated; state the accuracy of %s in the rig file", q.Quantity, in.Name)
+	}
+	return &snubber.Reading{Quantity: q.Quantity, Value: mean, U: u, Repeats: values, Instrument: in.identity}, warning
+}
+
+func (q Query) repeats() int {
+	if q.Repeats == 0 {
+		return DefaultRepeats
+	}
+	return q.Repeats
+}
+
+func (q Query) scale() float64 {
+	if q.Scale == 0 {
+		return 1
+	}
+	return q.Scale
+}
