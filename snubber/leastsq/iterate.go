@@ -14,6 +14,9 @@ const nearby = 1e-6
 // mu0 is the damping to start with, as a fraction of the squared length of a scaled column of the Jacobian.
 const mu0 = 1e-3
 
+// leastMu keeps the damping from vanishing, from where no rejected step could bring it back.
+const leastMu = 1e-30
+
 // straight is the relative offset below which a step is so short that the model's curvature along it does not matter.
 const straight = 1e-3
 
@@ -99,7 +102,7 @@ func (s *solver) downhill(ctx context.Context) (moved, stopped bool) {
 			s.move(1)
 			cost := s.evaluate(s.r1, s.p1, s.q1)
 			if gain := (s.cost - cost) / predicted; gain > 0 { // not so where cost is a NaN or an infinity
-				s.mu *= max(1./3, 1-math.Pow(2*gain-1, 3))
+				s.mu = max(leastMu, s.mu*max(1./3, 1-math.Pow(2*gain-1, 3)))
 				s.nu = 2
 				s.accept(cost)
 				return true, false
