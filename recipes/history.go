@@ -21,7 +21,7 @@ func History(ctx context.Context, p *page.Page, src Source) error {
 		p.Say("No trial is in scope. `ringbook trial take` and `ringbook trial enter` log one, `ringbook trial import` many.")
 		return nil
 	}
-	t := page.NewTable("History",
+	t := page.NewTable("Trials in the order they were read",
 		page.Label("trial", "id"),
 		page.Instant("at", "at"),
 		page.Label("board", "board"),

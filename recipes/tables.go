@@ -37,7 +37,7 @@ func trialTable(title string, trials []snubber.Trial) *page.Table {
 	)
 	for _, x := range trials {
 		row := t.Row(store.ShortID(x.ID), string(x.Network.Kind), orNone(x.Network.C), orNone(x.Network.R),
-			reading(x, snubber.RingHz), reading(x, snubber.DecayS), reading(x, snubber.PeakV), orNone(x.Point.BusV))
+			reading(x, snubber.RingHz), reading(x, snubber.DecayS), reading(x, snubber.PeakV), orNone(x.Operating().BusV))
 		if x.Struck != "" {
 			row.Note("struck: %s", x.Struck)
 		}

@@ -4,6 +4,7 @@ import (
 	"context"
 
 	"ringbook/recipes/page"
+	"ringbook/snubber"
 )
 
 // Trials is the page of the trials themselves.
@@ -14,4 +15,9 @@ func Trials(ctx context.Context, p *page.Page, src Source) error {
 	}
 	p.Table(trialTable("Trials", trials))
 	return nil
+}
+
+// OneTrial puts one trial on a page.
+func OneTrial(p *page.Page, t snubber.Trial) {
+	p.Table(trialTable("Logged", []snubber.Trial{t}))
 }

@@ -147,14 +147,14 @@ func (f *FitResult) excitation(trials []Trial, k float64) {
 	loop := f.Nominal()
 	for _, t := range trials {
 		peak, ok := t.Reading(PeakV)
-		if !ok || t.Network.Kind == RCD || !(t.Point.BusV > 0) {
+		if !ok || t.Network.Kind == RCD || !(t.Operating().BusV > 0) {
 			continue
 		}
 		u := peak.U
 		if u == 0 {
 			u = unstatedPeak * peak.Value
 		}
-		i, slope, ok := currentForPeak(loop.WithProbe(t.ProbeC), t.Network, t.Point.BusV, peak.Value)
+		i, slope, ok := currentForPeak(loop.WithProbe(t.ProbeC), t.Network, t.Operating().BusV, peak.Value)
 		if !ok {
 			continue
 		}

@@ -8,15 +8,6 @@ import (
 	"ringbook/snubber/leastsq"
 )
 
-// What is taken where a trial states no uncertainty, as a fraction of the value (standard uncertainties) or as a
-// bound (the capacitor's tolerance). A warning says so.
-const (
-	unstatedRing  = 0.005
-	unstatedDecay = 0.05
-	unstatedPeak  = 0.02
-	unstatedCTol  = 0.05
-)
-
 // LinePoint is one trial on the substitution line.
 type LinePoint struct {
 	Trial    string
@@ -98,7 +89,7 @@ func FitLine(trials []Trial) (*SubstitutionLine, error) {
 		line.warn("no decay was read: the ring's frequency was taken as undamped, which makes the loop look slower; read decay_s")
 	}
 	if tolerance > 0 {
-		line.warn("%d capacitors state no tolerance: %g %% was taken; state c_tol or measure them", tolerance, 100*unstatedCTol)
+		line.warn("%d capacitors state no tolerance: %g %% was taken; state c_tol or measure them", tolerance, 100*unstatedTol)
 	}
 	if err := line.fit(); err != nil {
 		return nil, fmt.Errorf("fitting the substitution line: %w", err)
@@ -171,22 +162,6 @@ func (s *SubstitutionLine) rising() error {
 	}
 	hz := func(p LinePoint) float64 { return 1 / (2 * math.Pi * math.Sqrt(p.Inverse)) }
 	return fmt.Errorf("the frequency rises with added capacitance (%.4g Hz at %.3g F, %.4g Hz at %.3g F): no resonance does; check the capacitors' marking and whether the ring was read, not the switching frequency", hz(a), a.AddedC, hz(b), b.AddedC)
-}
-
-// fittedC is the network's capacitance, F, with its standard uncertainty; stated is false where neither a
-// measurement nor a tolerance was given. A tolerance is the bound of a rectangular distribution (GUM 4.3.7).
-func fittedC(n Network) (c, u float64, stated bool) {
-	switch {
-	case n.C == 0:
-		return 0, 0, true
-	case n.MeasuredC > 0 && n.MeasuredU > 0:
-		return n.MeasuredC, n.MeasuredU, true
-	case n.MeasuredC > 0:
-		return n.MeasuredC, n.MeasuredC * n.CTol / math.Sqrt(3), n.CTol > 0
-	case n.CTol > 0:
-		return n.C, n.C * n.CTol / math.Sqrt(3), true
-	}
-	return n.C, n.C * unstatedCTol / math.Sqrt(3), false
 }
 
 func decayU(r Reading) float64 {

@@ -44,6 +44,7 @@ type Ratings struct {
 // Recommendation is the answer to Recommend.
 type Recommendation struct {
 	Met          bool     `json:"met"`
+	LimitV       float64  `json:"limit_v"`       // V: the peak limit it was asked to keep
 	Choice       *Choice  `json:"choice"`        // the least loss that keeps the limits, or the nearest miss
 	Alternatives []Choice `json:"alternatives"`  // more loss for a lower peak, in order of loss
 	RuleOfThumb  *Choice  `json:"rule_of_thumb"` // R = Z0 and C three times the loop's, nearest in series
@@ -80,7 +81,7 @@ func Recommend(ctx context.Context, l Loop, e Excitation, lim Limits) (*Recommen
 	if err != nil {
 		return nil, fmt.Errorf("recommending a network: %w", err)
 	}
-	rec := &Recommendation{Bare: bare, Alternatives: []Choice{}, Warnings: []string{}}
+	rec := &Recommendation{LimitV: lim.MaxPeak, Bare: bare, Alternatives: []Choice{}, Warnings: []string{}}
 	cs, err := lim.CSeries.Between(searchCLow*l.Capacitance, searchCHigh*l.Capacitance)
 	if err != nil {
 		return nil, fmt.Errorf("recommending a network: capacitors near the loop's: %w", err)

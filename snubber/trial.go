@@ -63,3 +63,17 @@ func (t Trial) Reading(q Quantity) (r Reading, ok bool) {
 	}
 	return Reading{}, false
 }
+
+// Operating is the operating point of the trial: what was stated, and where nothing was, what was read.
+func (t Trial) Operating() OperatingPoint {
+	p := t.Point
+	for _, x := range []struct {
+		v *float64
+		q Quantity
+	}{{&p.BusV, BusV}, {&p.CurrentA, CurrentA}, {&p.SwitchingHz, SwitchingHz}} {
+		if r, ok := t.Reading(x.q); ok && *x.v == 0 {
+			*x.v = r.Value
+		}
+	}
+	return p
+}

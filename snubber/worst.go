@@ -20,9 +20,9 @@ func Worst(f *FitResult, trials []Trial) (p Point, notes []string, err error) {
 		if t.Struck != "" {
 			continue
 		}
-		p.Bus = max(p.Bus, t.Point.BusV)
-		p.SwitchingHz = max(p.SwitchingHz, t.Point.SwitchingHz)
-		load = max(load, t.Point.CurrentA)
+		p.Bus = max(p.Bus, t.Operating().BusV)
+		p.SwitchingHz = max(p.SwitchingHz, t.Operating().SwitchingHz)
+		load = max(load, t.Operating().CurrentA)
 	}
 	switch {
 	case p.Bus == 0:

@@ -22,7 +22,7 @@ var rooms = []struct {
 }{
 	{"cmd/ringbook", []string{"recipes", "recipes/page", "store", "acquire", "acquire/scpi", "acquire/wire", "acquire/simbench", "acquire/acquiretest", "snubber", "snubber/waveform", "snubber/leastsq", "snubber/preferred", "snubber/quantity"}},
 	{"recipes", []string{"recipes/page", "store", "snubber", "snubber/waveform", "snubber/leastsq", "snubber/preferred", "snubber/quantity"}},
-	{"recipes/page", []string{"snubber/quantity"}},
+	{"recipes/page", []string{"snubber", "snubber/quantity"}},
 	{"store", []string{"snubber", "snubber/waveform", "snubber/quantity"}},
 	{"acquire", []string{"acquire/scpi", "acquire/wire", "snubber", "snubber/waveform", "snubber/quantity"}},
 	{"acquire/scpi", nil},

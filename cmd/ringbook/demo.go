@@ -1,0 +1,188 @@
+package main
+
+import (
+	"context"
+	"fmt"
+	"os"
+	"path/filepath"
+
+	"ringbook/acquire"
+	"ringbook/acquire/simbench"
+	"ringbook/recipes"
+	"ringbook/recipes/page"
+	"ringbook/snubber"
+	"ringbook/snubber/quantity"
+	"ringbook/store"
+
+	"github.com/spf13/cobra"
+)
+
+// The invented scenario: the motor drive of a tide gate's winch, second revision.
+const (
+	demoBoard    = "tide-gate winch"
+	demoRevision = "B"
+	demoRating   = 100.0 // V
+	demoProbe    = 3.9e-12
+)
+
+// demoSeries is the bag of capacitors; 0 is the bare node.
+var demoSeries = [...]float64{0, 100e-12, 220e-12, 470e-12, 1e-9, 2.2e-9}
+
+const (
+	demoCTol = 0.05
+	demoRTol = 0.01
+)
+
+func demoCommand(a *app) *cobra.Command {
+	return &cobra.Command{
+		Use:   "demo",
+		Short: "The whole job on a simulated bench over TCP: about ten seconds, no hardware",
+		Long: `demo serves a simulated bench on the loopback interface, runs a capacitor-substitution series on it, fits the loop,
+recommends a network, fits that network, and holds the peak it then measures against the prediction. The logbook goes
+to a new folder unless --logbook names a file.`,
+		Example: `  ringbook demo
+  ringbook demo --logbook demo.db --json`,
+		Args: words(0, 0),
+		RunE: func(cmd *cobra.Command, args []string) (err error) {
+			if !cmd.Flags().Changed("logbook") {
+				dir, err := os.MkdirTemp("", "ringbook-demo-")
+				if err != nil {
+					return fmt.Errorf("demo: a folder for its logbook: %w", err)
+				}
+				a.logbook = filepath.Join(dir, "demo.db")
+			}
+			ctx := cmd.Context()
+			lb, err := a.open(ctx)
+			if err != nil {
+				return err
+			}
+			defer closing(lb, &err)
+			cfg := simbench.Default()
+			cfg.ProbeF, cfg.Parts.CTol, cfg.Parts.RTol = demoProbe, demoCTol, demoRTol
+			bench, err := simbench.Start(ctx, cfg)
+			if err != nil {
+				return err
+			}
+			defer bench.Close()
+			d := &demo{app: a, lb: lb, bench: bench}
+			return d.run(ctx)
+		},
+	}
+}
+
+// demo is one run of the demonstration.
+type demo struct {
+	*app
+	lb      *store.Logbook
+	bench   *simbench.Bench
+	station *acquire.Station
+}
+
+func (d *demo) run(ctx context.Context) error {
+	if err := d.lb.AddBoard(ctx, store.Board{Name: demoBoard, DeviceV: demoRating, Revisions: []store.Revision{{Name: demoRevision}}}); err != nil {
+		return err
+	}
+	rig, err := acquire.ParseRig("the simulated bench", []byte(d.bench.RigTOML()))
+	if err != nil {
+		return err
+	}
+	if d.station, err = acquire.Open(ctx, rig); err != nil {
+		return err
+	}
+	defer d.station.Close()
+	for _, c := range demoSeries {
+		n := snubber.Network{Kind: snubber.Bare}
+		if c > 0 {
+			n = snubber.Network{Kind: snubber.C, C: c, CTol: demoCTol}
+		}
+		if err := d.trial(ctx, n); err != nil {
+			return err
+		}
+	}
+	src := recipes.Source{Logbook: d.lb, Scope: store.Scope{Board: demoBoard, Revision: demoRevision},
+		Limits: recipes.Request{Limits: snubber.Limits{CTol: demoCTol, RTol: demoRTol}}}
+	fit, rec, err := recipes.Recommendation(ctx, src)
+	if err != nil {
+		return err
+	}
+	c := rec.Choice
+	if err := d.trial(ctx, snubber.Network{Kind: c.Network, C: c.C, CTol: demoCTol, R: c.R, RTol: demoRTol}); err != nil {
+		return err
+	}
+	trials, err := src.Trials(ctx)
+	if err != nil {
+		return err
+	}
+	proof, err := snubber.Confirm(c, rec.LimitV, trials)
+	if err != nil {
+		return err
+	}
+	if err := d.report(ctx, src, fit, rec, proof); err != nil {
+		return err
+	}
+	if !rec.Met || !proof.Agrees || !proof.Keeps {
+		return errNo
+	}
+	return nil
+}
+
+// trial fits a network on the bench, reads it and logs it.
+func (d *demo) trial(ctx context.Context, n snubber.Network) error {
+	t, _, err := d.take(ctx, d.station, snubber.Trial{Board: demoBoard, Revision: demoRevision, Session: "demonstration", Network: n, ProbeC: demoProbe})
+	if err != nil {
+		return err
+	}
+	id, err := d.lb.Add(ctx, t)
+	if err != nil {
+		return err
+	}
+	line := fmt.Sprintf("fitted %-14s", describe(n))
+	for _, x := range []struct {
+		q    snubber.Quantity
+		name string
+		unit quantity.Unit
+	}{{snubber.RingHz, "ring", quantity.Frequency}, {snubber.PeakV, "peak", quantity.Voltage}} {
+		if r, ok := t.Reading(x.q); ok {
+			line += fmt.Sprintf("  %s %s", x.name, quantity.FormatUncertain(r.Value, r.U, x.unit))
+		}
+	}
+	d.progress("%s  logged as %s", line, store.ShortID(id))
+	return nil
+}
+
+func (d *demo) report(ctx context.Context, src recipes.Source, fit *snubber.FitResult, rec *snubber.Recommendation, proof *snubber.Confirmation) error {
+	hidden := d.bench.Truth()
+	if d.json {
+		return d.printJSON(map[string]any{"fit": fit, "recommendation": rec, "confirmation": proof, "logbook": d.lb.Path(),
+			"hidden": map[string]float64{"inductance_h": hidden.Inductance, "capacitance_f": hidden.CapacitanceBus, "resistance_ohm": hidden.Resistance, "excitation_a": hidden.Apparent}})
+	}
+	loop := page.New("The loop of " + demoBoard + " " + demoRevision)
+	if err := recipes.Substitution(ctx, loop, src); err != nil {
+		return err
+	}
+	choice := page.New("What to fit")
+	recipes.ChoicePage(choice, fit, rec)
+	verdict := page.New("Prediction and measurement")
+	recipes.Proof(verdict, proof)
+	history := page.New("History")
+	if err := recipes.History(ctx, history, src); err != nil {
+		return err
+	}
+	truth := page.New("What was hidden on the board")
+	truth.Figures(
+		page.Figure{Name: "loop inductance", CSV: "inductance_h", Unit: quantity.Inductance, Value: hidden.Inductance},
+		page.Figure{Name: "node capacitance at the bus", CSV: "capacitance_f", Unit: quantity.Capacitance, Value: hidden.CapacitanceBus},
+		page.Figure{Name: "the same over the whole swing", CSV: "capacitance_average_f", Unit: quantity.Capacitance, Value: hidden.CapacitanceAvg, Remark: "it falls with voltage"},
+		page.Figure{Name: "loop resistance", CSV: "resistance_ohm", Unit: quantity.Resistance, Value: hidden.Resistance},
+		page.Figure{Name: "excitation", CSV: "excitation_a", Unit: quantity.Current, Value: hidden.Apparent, Remark: "as a switch that lets go at once would have it"},
+	)
+	for _, p := range []*page.Page{loop, choice, verdict, history, truth} {
+		if err := d.print(p); err != nil {
+			return err
+		}
+		if err := d.say(""); err != nil {
+			return err
+		}
+	}
+	return d.say("The logbook is %s\nLook on with: ringbook history --logbook %q", d.lb.Path(), d.lb.Path())
+}

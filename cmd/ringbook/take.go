@@ -1,0 +1,45 @@
+package main
+
+import (
+	"context"
+	"fmt"
+	"time"
+
+	"ringbook/acquire"
+	"ringbook/snubber"
+	"ringbook/snubber/quantity"
+)
+
+// take fits the trial's network where the station can, reads every instrument, and gives the trial with its
+// readings.
+func (a *app) take(ctx context.Context, station *acquire.Station, t snubber.Trial) (snubber.Trial, []string, error) {
+	if station.CanFit() {
+		if err := station.Fit(ctx, t.Network); err != nil {
+			return t, nil, err
+		}
+	}
+	t.At = time.Now()
+	result, err := station.Take(ctx, nil)
+	if err != nil {
+		return t, nil, err
+	}
+	if len(result.Readings) == 0 {
+		return t, result.Warnings, fmt.Errorf("trial of %s %s: no instrument gave a reading, so there is nothing to log (%v)", t.Board, t.Revision, result.Warnings)
+	}
+	t.Readings = result.Readings
+	return t, result.Warnings, nil
+}
+
+// describe is a network in words, as a person would say what is fitted.
+func describe(n snubber.Network) string {
+	c, r := quantity.Code(n.C, quantity.Capacitance), quantity.Code(n.R, quantity.Resistance)
+	switch n.Kind {
+	case snubber.Bare:
+		return "bare"
+	case snubber.C:
+		return c
+	case snubber.RCD:
+		return r + " + " + c + ", diode across " + r
+	}
+	return r + " + " + c
+}

@@ -1,0 +1,71 @@
+package main
+
+import (
+	"ringbook/acquire"
+	"ringbook/recipes"
+	"ringbook/recipes/page"
+
+	"github.com/spf13/cobra"
+)
+
+func trialTake(a *app) *cobra.Command {
+	var setup setupFlags
+	var rigFile string
+	cmd := &cobra.Command{
+		Use:   "take",
+		Short: "Read the instruments now and log one trial",
+		Long: `take asks every instrument of the rig for its readings, repeats them, and logs one trial with their means and
+standard uncertainties. Where an instrument of the rig fits networks by command, it fits this one first.
+
+Fit the network with the supply off and the bus discharged.`,
+		Example: `  ringbook trial take --board winch-drive --revision B --network bare --probe-c 3p9
+  ringbook trial take --board winch-drive --revision B --network c --c 470p --c-tol 5% --rig rig.toml`,
+		Args: words(0, 0),
+		RunE: func(cmd *cobra.Command, args []string) (err error) {
+			t, err := setup.trial()
+			if err != nil {
+				return err
+			}
+			ctx := cmd.Context()
+			rig, err := acquire.LoadRig(rigFile)
+			if err != nil {
+				return err
+			}
+			lb, err := a.open(ctx)
+			if err != nil {
+				return err
+			}
+			defer closing(lb, &err)
+			station, err := acquire.Open(ctx, rig)
+			if err != nil {
+				return err
+			}
+			defer func() {
+				if e := station.Close(); e != nil && err == nil {
+					err = e
+				}
+			}()
+			t, warnings, err := a.take(ctx, station, t)
+			if err != nil {
+				return err
+			}
+			id, err := lb.Add(ctx, t)
+			if err != nil {
+				return err
+			}
+			for _, w := range warnings {
+				a.progress("warning: %s", w)
+			}
+			t.ID = id
+			if a.json {
+				return a.printJSON(trialJSON(t))
+			}
+			p := page.New("Trial of " + t.Board + " " + t.Revision)
+			recipes.OneTrial(p, t)
+			return a.print(p)
+		},
+	}
+	setup.add(cmd)
+	cmd.Flags().StringVar(&rigFile, "rig", "rig.toml", "the instruments and what to ask of them")
+	return cmd
+}

@@ -1,0 +1,135 @@
+package snubber
+
+import (
+	"context"
+	"math"
+
+	"ringbook/snubber/leastsq"
+)
+
+// model is what the fit moves: the shared parameters ln L, ln C, ln r where a decay was read, and the excitation of each
+// operating point at which a peak was; and beside them the error of each part in units of its standard uncertainty.
+type model struct {
+	obs    *observations
+	params int
+	loss   int   // index of ln r; -1: no decay was read, and r is taken as zero
+	amps   []int // index of each operating point's I0; -1: no peak was read there
+}
+
+func newModel(obs *observations) *model {
+	m := &model{obs: obs, params: 2, loss: -1, amps: make([]int, len(obs.points))}
+	if obs.counts[decayAt] > 0 {
+		m.loss = m.params
+		m.params++
+	}
+	for i, p := range obs.points {
+		m.amps[i] = -1
+		if p.peaks > 0 {
+			m.amps[i] = m.params
+			m.params++
+		}
+	}
+	return m
+}
+
+// loop is the loop at parameters p.
+func (m *model) loop(p []float64) Loop {
+	l := Loop{Inductance: math.Exp(p[0]), Capacitance: math.Exp(p[1])}
+	if m.loss >= 0 {
+		l.Resistance = math.Exp(p[m.loss])
+	}
+	return l
+}
+
+// values are what trial x's readings are predicted from, at parameters p and part errors d.
+func (m *model) values(x *observed, p, d []float64) circuitValues {
+	l := m.loop(p)
+	v := circuitValues{atL: l.Inductance, atC: l.Capacitance + x.trial.ProbeC, atR: l.Resistance, atRs: x.trial.Network.ESR, atE: x.bus}
+	if k := m.amps[x.point]; k >= 0 {
+		v[atI0] = math.Abs(p[k])
+	}
+	if x.c >= 0 {
+		part := &m.obs.caps[x.c]
+		v[atCs] = part.value + part.u*d[x.c]
+	}
+	if x.r >= 0 {
+		part := &m.obs.ohms[x.r]
+		v[atRs] += part.value + part.u*d[len(m.obs.caps)+x.r]
+	}
+	return v
+}
+
+// eval is the residuals of trial x, (predicted - read)/u of each reading it has, with their derivatives.
+func (m *model) eval(x *observed, p, d []float64, derivatives bool, b *leastsq.Block) {
+	b.R, b.P, b.First, b.Second = b.R[:0], b.P[:0], x.c, x.r
+	b.D[0], b.D[1] = b.D[0][:0], b.D[1][:0]
+	v := m.values(x, p, d)
+	if v[atCs] < 0 || v[atRs] < 0 || math.IsInf(v[atL]*v[atC], 0) || v[atL]*v[atC] == 0 {
+		b.R = append(b.R, math.NaN()) // outside of what a circuit can be: the step is refused
+		return
+	}
+	signs, when := v.signs()
+	var slopes [3]circuitValues
+	if derivatives {
+		slopes = v.slopes(when)
+	}
+	for k, s := range signs {
+		if math.IsNaN(x.value[k]) {
+			continue
+		}
+		b.R = append(b.R, (s-x.value[k])/x.u[k])
+		if !derivatives {
+			continue
+		}
+		at := len(b.P)
+		for range m.params {
+			b.P = append(b.P, 0)
+		}
+		row := b.P[at:]
+		row[0] = slopes[k][atL] * v[atL] / x.u[k]
+		row[1] = slopes[k][atC] * (v[atC] - x.trial.ProbeC) / x.u[k]
+		if m.loss >= 0 {
+			row[m.loss] = slopes[k][atR] * v[atR] / x.u[k]
+		}
+		if i := m.amps[x.point]; i >= 0 {
+			row[i] = math.Copysign(slopes[k][atI0], p[i]) / x.u[k]
+		}
+		var byC, byR float64
+		if x.c >= 0 {
+			byC = slopes[k][atCs] * m.obs.caps[x.c].u / x.u[k]
+		}
+		if x.r >= 0 {
+			byR = slopes[k][atRs] * m.obs.ohms[x.r].u / x.u[k]
+		}
+		b.D[0], b.D[1] = append(b.D[0], byC), append(b.D[1], byR)
+	}
+}
+
+// fit fits the trials that kept lists, from start.
+func (m *model) fit(ctx context.Context, kept []int, start []float64, loss leastsq.Loss) (*leastsq.PartitionedResult, error) {
+	return leastsq.FitPartitioned(ctx, leastsq.Partitioned{
+		Shared: m.params, First: len(m.obs.caps), Second: len(m.obs.ohms), Blocks: len(kept), Start: start,
+		Eval: func(i int, p, d []float64, derivatives bool, b *leastsq.Block) {
+			m.eval(&m.obs.list[kept[i]], p, d, derivatives, b)
+		},
+	}, leastsq.Options{Loss: loss})
+}
+
+// readings counts the readings of the trials that kept lists.
+func (m *model) readings(kept []int) int {
+	n := 0
+	for _, i := range kept {
+		n += m.obs.list[i].readings()
+	}
+	return n
+}
+
+func (x *observed) readings() int {
+	n := 0
+	for _, v := range x.value {
+		if !math.IsNaN(v) {
+			n++
+		}
+	}
+	return n
+}
