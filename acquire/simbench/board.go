@@ -15,7 +15,7 @@ type Board struct {
 	Grading    float64 // grading exponent, in (0, 1) where JunctionC > 0
 	FallTime   float64 // s, >= 0: the switch current falls linearly to zero in this time; 0: at once
 	BodyDrop   float64 // V, >= 0: forward drop of the switch's body diode
-	BodyOhm    float64 // ohm, > 0: its on-resistance; 0: there is no body diode
+	BodyOhm    float64 // ohm, >= 0.01: its on-resistance; 0: there is no body diode
 	PerLoadA   float64 // > 0: loop current when the switch lets go, as a ratio of the load current
 	Duty       float64 // in [0, 1]: supply current over load current, the ringing's own draw aside
 }
@@ -70,8 +70,8 @@ func (b Board) Check() error {
 		return fmt.Errorf("board junction of %g V and grading %g: the potential must be positive and the grading in 0 to 1", b.JunctionV, b.Grading)
 	case !notNegative(b.FallTime):
 		return fmt.Errorf("board fall time %g s: it must be zero or positive, and finite", b.FallTime)
-	case !notNegative(b.BodyDrop), !notNegative(b.BodyOhm):
-		return fmt.Errorf("body diode of %g V and %g ohm: neither may be negative", b.BodyDrop, b.BodyOhm)
+	case !notNegative(b.BodyDrop), b.BodyOhm != 0 && !(b.BodyOhm >= leastDiodeOhm), math.IsInf(b.BodyOhm, 0):
+		return fmt.Errorf("body diode of %g V and %g ohm: the drop may not be negative; the resistance is 0, for none, or at least %g ohm", b.BodyDrop, b.BodyOhm, leastDiodeOhm)
 	case !positive(b.PerLoadA):
 		return fmt.Errorf("loop current %g times the load current: it must be positive and finite", b.PerLoadA)
 	case !(b.Duty >= 0 && b.Duty <= 1):

@@ -78,8 +78,8 @@ func (c *circuit) take(t float64, y, k1 state, m mode, h, tolerance float64, sca
 	return s, math.Sqrt(size / float64(len(y)))
 }
 
-// mostSteps bounds an integration; the stiffest circuit that the checks let through needs a fifth of it.
-const mostSteps = 20_000_000
+// mostSteps bounds an integration: the stiffest network on the default board needs a tenth of it.
+const mostSteps = 4_000_000
 
 // integrate follows the circuit from the switch's letting go to t = end and hands over every step, which each may not keep. tolerance
 // is the relative error allowed in one step. A step never reaches across the end of the current's fall,
@@ -97,7 +97,7 @@ func (c *circuit) integrate(ctx context.Context, end, tolerance float64, each fu
 	)
 	for n := 0; t < end; n++ {
 		if n >= mostSteps {
-			return fmt.Errorf("integrate the board: %d steps reached only %g s of %g s", n, t, end)
+			return fmt.Errorf("integrate the board: %d steps reached only %g s of %g s; take a shorter record or a larger resistance", n, t, end)
 		}
 		if n%1024 == 0 && ctx.Err() != nil {
 			return ctx.Err()

@@ -69,9 +69,10 @@ func (m *Model) record(ctx context.Context, n Network, bus, load float64) (*reco
 	}
 	actual := m.cfg.Parts.actual(n)
 	c := newCircuit(m.cfg.Board, m.cfg.Parts, actual, bus, key.current, m.cfg.ProbeF)
-	// Long enough for the scope, and for the peak of a network too slow for it.
+	// Long enough for the scope, for one round of a ring too slow for it, and for a creep up to the bus voltage.
 	total := m.cfg.Board.CapacitanceAt(0) + m.cfg.ProbeF + actual.C
-	end := max(m.cfg.Scope.after()+2/m.cfg.Scope.RateHz, 1.2*2*math.Pi*math.Sqrt(m.cfg.Board.Inductance*total))
+	end := max(m.cfg.Scope.after()+2/m.cfg.Scope.RateHz,
+		1.2*2*math.Pi*math.Sqrt(m.cfg.Board.Inductance*total), 10*m.cfg.Board.Resistance*total)
 	r, err := c.solve(ctx, end, solveTolerance)
 	if err != nil {
 		return nil, err

@@ -25,6 +25,13 @@ type Network struct {
 	R    float64 // ohm, > 0; 0 for bare and c
 }
 
+// Bounds that keep an integration short: a capacitor far larger than any that damps a ring, and a diode stiffer
+// than any there is.
+const (
+	mostFarads    = 1e-6
+	leastDiodeOhm = 0.01
+)
+
 // Check reports the first value that a network of its kind cannot have.
 func (n Network) Check() error {
 	var hasC, hasR bool
@@ -40,6 +47,8 @@ func (n Network) Check() error {
 	switch {
 	case hasC && !positive(n.C):
 		return fmt.Errorf("network %s with %g F: it needs a positive capacitance", n.Kind, n.C)
+	case hasC && n.C > mostFarads:
+		return fmt.Errorf("network %s with %g F: the bench takes capacitors up to %g F", n.Kind, n.C, mostFarads)
 	case hasR && !positive(n.R):
 		return fmt.Errorf("network %s with %g ohm: it needs a positive resistance", n.Kind, n.R)
 	case !hasC && n.C != 0:
@@ -54,9 +63,9 @@ func (n Network) Check() error {
 type Parts struct {
 	CTol      float64 // bound of a capacitor's error, a fraction, in [0, 1)
 	RTol      float64 // the same for a resistor
-	ESR       float64 // ohm: the capacitors' series resistance; 0, or at least 1e-3 (less is too stiff)
+	ESR       float64 // ohm, >= 0: the capacitors' series resistance
 	DiodeDrop float64 // V, >= 0: forward drop of the diode in an RCD network
-	DiodeOhm  float64 // ohm, > 0: its on-resistance
+	DiodeOhm  float64 // ohm, >= 0.01: its on-resistance
 	Seed      uint64  // which box of parts: the same nominal value from it is the same part
 }
 
@@ -64,10 +73,10 @@ func (p Parts) check() error {
 	switch {
 	case !(p.CTol >= 0 && p.CTol < 1), !(p.RTol >= 0 && p.RTol < 1):
 		return fmt.Errorf("tolerances %g of capacitors and %g of resistors: each is a fraction from 0 to 1", p.CTol, p.RTol)
-	case p.ESR != 0 && !(p.ESR >= 1e-3 && !math.IsInf(p.ESR, 0)):
-		return fmt.Errorf("capacitor series resistance %g ohm: it must be 0 or at least 0.001", p.ESR)
-	case !notNegative(p.DiodeDrop), !positive(p.DiodeOhm):
-		return fmt.Errorf("network diode of %g V and %g ohm: the resistance must be positive", p.DiodeDrop, p.DiodeOhm)
+	case !notNegative(p.ESR):
+		return fmt.Errorf("capacitor series resistance %g ohm: it must be zero or positive, and finite", p.ESR)
+	case !notNegative(p.DiodeDrop), !(p.DiodeOhm >= leastDiodeOhm), math.IsInf(p.DiodeOhm, 0):
+		return fmt.Errorf("network diode of %g V and %g ohm: the drop may not be negative nor the resistance below %g ohm", p.DiodeDrop, p.DiodeOhm, leastDiodeOhm)
 	}
 	return nil
 }

@@ -9,7 +9,7 @@ import (
 // Scope is the oscilloscope: eight bits, noise, no bandwidth limit of its own.
 type Scope struct {
 	RateHz  float64 // samples per second, > 0
-	Points  int     // samples in a capture, 64 to 1e6
+	Points  int     // samples in a capture, 64 to 100 000
 	Before  int     // of which before the trigger, in [16, Points/2]
 	NoiseV  float64 // V rms, >= 0: white noise ahead of the converter
 	SpanV   float64 // V, > 0: from the lowest code to the highest
@@ -20,8 +20,8 @@ func (s Scope) check() error {
 	switch {
 	case !positive(s.RateHz):
 		return fmt.Errorf("scope at %g samples/s: the rate must be positive and finite", s.RateHz)
-	case s.Points < 64 || s.Points > 1e6:
-		return fmt.Errorf("scope with %d points: it must be 64 to a million", s.Points)
+	case s.Points < 64 || s.Points > 100_000:
+		return fmt.Errorf("scope with %d points: it must be 64 to 100000", s.Points)
 	case s.Before < 16 || s.Before > s.Points/2:
 		return fmt.Errorf("scope with %d points before the trigger: it must be 16 to half of all", s.Before)
 	case !notNegative(s.NoiseV):
