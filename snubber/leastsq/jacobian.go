@@ -70,17 +70,12 @@ func (s *solver) difference(dst []float64, j int, h, down, up float64) (power fl
 // fast-varying model is cut down, and one too small for a float64 is not used.
 func (s *solver) extrapolate(dst []float64, j int, h, down, up float64) {
 	best := math.Inf(1)
-	row := 0
-	for range ridders {
+	for row := range ridders {
 		// s.table[k] holds the k-th column of the table's last row, s.next the row being made.
 		power := s.difference(s.next[0], j, h, down, up)
 		h /= 2
 		if row == 0 {
 			copy(dst, s.next[0])
-		}
-		size := floats.Norm(dst, 2)
-		if row == 0 && !finite(size) {
-			continue // the step leaves the region where the model has values
 		}
 		grow := math.Exp2(power)
 		f := grow
@@ -95,16 +90,18 @@ func (s *solver) extrapolate(dst []float64, j int, h, down, up float64) {
 				copy(dst, s.next[k])
 			}
 		}
+		// A first step that leaves the region where the model has values makes NaNs, which no comparison favours and
+		// which leave the low columns with the next row.
+		size := floats.Norm(dst, 2)
 		worse := row > 0 && floats.Distance(s.next[row], s.table[row-1], 2) > 2*best
 		if best <= 1e-11*size || worse && best <= 1e-6*size {
 			return
 		}
 		s.table, s.next = s.next, s.table
-		row++
 	}
 }
 
-// ridders is the largest number of steps tried for a table.
+// ridders is the largest number of rows of the table.
 const ridders = 12
 
 // at writes the residuals with parameter j moved to x into dst, and leaves it there in s.probe.

@@ -114,3 +114,15 @@ func TestDifferencesAtBounds(t *testing.T) {
 		}
 	}
 }
+
+// A difference step that leaves the region where the model has values is cut down until it stays inside.
+func TestDifferencesNextToNowhere(t *testing.T) {
+	pr := Problem{N: 1, Start: []float64{1}, Residuals: func(dst, p []float64) { dst[0] = math.Sqrt(1.001 - p[0]) }}
+	s := newSolver(&pr, Options{})
+	s.p[0] = 1
+	pr.Residuals(s.r, s.p)
+	s.differentiate(true)
+	if got, want := s.jac.At(0, 0), -0.5/math.Sqrt(0.001); digits(got, want) < 8 {
+		t.Errorf("%v, want %v", got, want)
+	}
+}

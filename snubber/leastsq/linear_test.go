@@ -68,13 +68,17 @@ func TestLinearStRD(t *testing.T) {
 			if res.Status != Converged || res.Dof != set.dof {
 				t.Errorf("status %v (%s), dof %d, want %d", res.Status, res.Reason, res.Dof, set.dof)
 			}
-			if !(value >= 6) {
+			least := 13.
+			if set.name == "Filip" {
+				least = 7 // the powers of x, rounded to a float64 each, hold no more
+			}
+			if !(value >= least) {
 				t.Errorf("values %v, certified %v", res.P, want.value)
 			}
-			if !(sd >= 4) {
+			if !(sd >= min(least, 12)) {
 				t.Errorf("standard deviations %v, certified %v", res.StdErr(Scatter), want.sd)
 			}
-			if !(sum >= 6) {
+			if !(sum >= 9) {
 				t.Errorf("sum of squares %v, certified %v", res.Chi2, sums[set.name])
 			}
 		})

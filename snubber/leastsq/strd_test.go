@@ -265,13 +265,13 @@ func TestNonlinearStRD(t *testing.T) {
 					if res.Status != Converged {
 						t.Errorf("status %v: %s", res.Status, res.Reason)
 					}
-					if !(value >= 6) {
+					if !(value >= 7) {
 						t.Errorf("values %v, certified %v", res.P, want.value)
 					}
-					if !(sd >= 4) {
+					if !(sd >= 7) {
 						t.Errorf("standard deviations %v, certified %v", res.StdErr(Scatter), want.sd)
 					}
-					if !(sum >= 6) {
+					if !(sum >= 9) {
 						t.Errorf("sum of squares %v, certified %v", res.Chi2, sums[name])
 					}
 				})
