@@ -65,7 +65,7 @@ func (s *solver) difference(dst []float64, j int, h, down, up float64) (power fl
 }
 
 // extrapolate writes into dst the limit of the difference quotients over h, h/2, h/4, ... by the table of
-// Ridders, "Accurate computation of F'(x) and F'(x) F”(x)", Adv. Eng. Software 4, 75 (1982), cited
+// Ridders, "Accurate computation of F′(x) and F′(x) F″(x)", Adv. Eng. Software 4, 75 (1982), cited
 // from memory: the entry that agrees best with its neighbours is kept, so that a step too large for a
 // fast-varying model is cut down, and one too small for a float64 is not used.
 func (s *solver) extrapolate(dst []float64, j int, h, down, up float64) {

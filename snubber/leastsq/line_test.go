@@ -131,6 +131,11 @@ func TestLineLimits(t *testing.T) {
 		t.Errorf("exact coordinates give %+v, nearly exact ones %+v", exact, near)
 	}
 
+	level, err := Line([]float64{1, 2, 4}, []float64{5, 5, 5}, repeat(0.1, 3), repeat(0.2, 3), nil)
+	if err != nil || level.Slope != 0 || level.Intercept != 5 || level.Chi2 != 0 || !(level.USlope > 0) {
+		t.Errorf("a level line: %v, %+v", err, level)
+	}
+
 	two, err := Line([]float64{0, 2e-10}, []float64{2e-18, 6e-18}, []float64{1e-12, 1e-12}, []float64{1e-20, 1e-20}, nil)
 	if err != nil {
 		t.Fatal(err)
