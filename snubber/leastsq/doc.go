@@ -6,9 +6,9 @@
 // It is not a general optimiser: there is one minimum, the one downhill from the start, and no search for
 // others. Bounds are kept by transforming the parameters, not by active sets.
 //
-// Everything goes through an orthogonal factorisation of the Jacobian (QR with column pivoting in the
-// iteration, the singular values of its R for rank and covariance). The normal equations, which square the
-// condition number, are never formed.
+// Fit and Linear go through an orthogonal factorisation of the Jacobian (QR with column pivoting in the
+// iteration, the singular values of its R for rank and covariance). They never form the normal equations, which
+// square the condition number.
 //
 // A fit that ends without an answer to trust says so in its Status; an error means there is no answer at
 // all. Uncertainties are standard uncertainties (k = 1). Units are the caller's: nothing here depends on
