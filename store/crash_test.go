@@ -20,6 +20,8 @@ import (
 const (
 	childFile = "RINGBOOK_TEST_CHILD_FILE"
 	childWork = "RINGBOOK_TEST_CHILD_WORK"
+
+	childReady = "ready" // its first line, once it has opened the logbook
 )
 
 func TestMain(m *testing.M) {
@@ -44,10 +46,11 @@ func child(path, work string) error {
 		return err
 	}
 	defer lb.Close()
-	switch work {
-	case "look":
+	if work == "look" {
 		return nil
-	case "import":
+	}
+	fmt.Println(childReady)
+	if work == "import" {
 		for {
 			n, err := lb.AddAll(ctx, many(importSize), nil)
 			if err != nil {
@@ -70,7 +73,7 @@ func child(path, work string) error {
 	return nil
 }
 
-const importSize = 50
+const importSize = 20
 
 func childReads(ctx context.Context, path string) error {
 	lb, err := OpenReadOnly(ctx, path)
@@ -104,6 +107,12 @@ func startChild(t *testing.T, path, work string) (*exec.Cmd, *bufio.Scanner) {
 	return cmd, bufio.NewScanner(out)
 }
 
+// killSoon waits until the child has the logbook open and has it killed at a random moment after.
+func killSoon(cmd *exec.Cmd, lines *bufio.Scanner) {
+	lines.Scan()
+	time.AfterFunc(time.Duration(rand.IntN(100_000))*time.Microsecond, func() { cmd.Process.Kill() })
+}
+
 // rounds is how often a process is killed: RINGBOOK_KILLS, or few enough for an everyday test.
 func rounds(t *testing.T, everyday int) int {
 	if s := os.Getenv("RINGBOOK_KILLS"); s != "" {
@@ -124,7 +133,7 @@ func TestKilledWhileLogging(t *testing.T) {
 	n := rounds(t, 20)
 	for range n {
 		cmd, lines := startChild(t, path, "1000000")
-		time.AfterFunc(time.Duration(5+rand.IntN(90))*time.Millisecond, func() { cmd.Process.Kill() })
+		killSoon(cmd, lines)
 		for lines.Scan() {
 			acknowledged[lines.Text()] = true
 		}
@@ -168,7 +177,7 @@ func TestKilledWhileImporting(t *testing.T) {
 	imported := 0
 	for range rounds(t, 10) {
 		cmd, lines := startChild(t, path, "import")
-		time.AfterFunc(time.Duration(5+rand.IntN(90))*time.Millisecond, func() { cmd.Process.Kill() })
+		killSoon(cmd, lines)
 		for lines.Scan() {
 			imported += importSize
 		}
@@ -225,6 +234,7 @@ func TestTwoProgramsAtOnce(t *testing.T) {
 	for range 2 {
 		writers.Go(func() {
 			cmd, lines := startChild(t, path, strconv.Itoa(each))
+			lines.Scan() // ready
 			for lines.Scan() {
 				keep(lines.Text())
 			}
