@@ -2,7 +2,6 @@ package recipes
 
 import (
 	"context"
-	"fmt"
 
 	"ringbook/snubber"
 	"ringbook/store"
@@ -20,7 +19,7 @@ func (s Source) Trials(ctx context.Context) ([]snubber.Trial, error) {
 	var all []snubber.Trial
 	for t, err := range s.Logbook.Trials(ctx, s.Scope) {
 		if err != nil {
-			return nil, fmt.Errorf("reading the trials: %w", err)
+			return nil, err
 		}
 		all = append(all, t)
 	}

@@ -51,50 +51,22 @@ Exit codes: 0 done; 1 the job failed; 2 the command line is wrong; 3 done, but t
 	root.SetIn(a.stdin)
 	root.SetOut(a.stdout)
 	root.SetErr(a.stderr)
-	root.SetFlagErrorFunc(func(cmd *cobra.Command, err error) error {
-		return usagef("%w; see `%s --help`", err, cmd.CommandPath())
-	})
+	root.SetFlagErrorFunc(flagError)
+	root.SetHelpCommand(helpCommand())
+	root.CompletionOptions.DisableDefaultCmd = true // completionCommand says it in this program's words
 	path := os.Getenv("RINGBOOK_LOGBOOK")
 	if path == "" {
 		path = "ringbook.db"
 	}
 	f := root.PersistentFlags()
-	f.StringVar(&a.logbook, "logbook", path, "the logbook file (or RINGBOOK_LOGBOOK)")
+	f.StringVar(&a.logbook, "logbook", path, "the logbook `FILE` (or RINGBOOK_LOGBOOK)")
 	f.BoolVar(&a.json, "json", false, "print one JSON object and nothing else")
 	f.BoolVar(&a.quiet, "quiet", false, "no progress")
-	f.StringVar(&a.color, "color", "auto", "auto, always or never; NO_COLOR is honoured")
-	root.AddCommand(demoCommand(a), boardCommand(a), trialCommand(a), fitCommand(a), recommendCommand(a), historyCommand(a), benchCommand(a))
+	f.StringVar(&a.color, "color", "auto", "`WHEN` to colour: auto, always or never; NO_COLOR is honoured")
+	completes(root, "color", "auto", "always", "never")
+	root.AddCommand(demoCommand(a), boardCommand(a), trialCommand(a), fitCommand(a), recommendCommand(a), historyCommand(a), benchCommand(a),
+		completionCommand(a))
 	return root
-}
-
-// group is a command that only holds others.
-func group(use, short, example string, commands ...*cobra.Command) *cobra.Command {
-	c := &cobra.Command{Use: use, Short: short, Example: example, Args: knownCommand, RunE: showHelp}
-	c.AddCommand(commands...)
-	return c
-}
-
-func showHelp(cmd *cobra.Command, args []string) error { return cmd.Help() }
-
-// knownCommand refuses a word that names no command.
-func knownCommand(cmd *cobra.Command, args []string) error {
-	if len(args) == 0 {
-		return nil
-	}
-	return usagef("there is no command %q here; see `%s --help`", args[0], cmd.CommandPath())
-}
-
-// words takes between least and most arguments.
-func words(least, most int) cobra.PositionalArgs {
-	return func(cmd *cobra.Command, args []string) error {
-		switch {
-		case len(args) < least:
-			return usagef("%s is not complete; the form is `%s`", cmd.CommandPath(), cmd.UseLine())
-		case len(args) > most:
-			return usagef("%q is one word too many; the form is `%s`", args[most], cmd.UseLine())
-		}
-		return nil
-	}
 }
 
 // open opens the logbook for writing; close reports into err.
@@ -141,6 +113,17 @@ func (a *app) progress(format string, args ...any) {
 	}
 }
 
+// counted shows how many trials a long import has read: in place on a terminal, else a line now and then.
+func (a *app) counted(n int) {
+	switch {
+	case a.quiet:
+	case isTerminal(a.stderr):
+		fmt.Fprintf(a.stderr, "\r%d trials read\r", n)
+	case n%100_000 == 0:
+		a.progress("%d trials read", n)
+	}
+}
+
 // width is the terminal's, from COLUMNS where the shell gives it; 0 where it is not known.
 func (a *app) width() int {
 	n, err := strconv.Atoi(os.Getenv("COLUMNS"))
@@ -161,7 +144,11 @@ func (a *app) colour() bool {
 	if os.Getenv("NO_COLOR") != "" || os.Getenv("TERM") == "dumb" {
 		return false
 	}
-	f, ok := a.stdout.(*os.File)
+	return isTerminal(a.stdout)
+}
+
+func isTerminal(w io.Writer) bool {
+	f, ok := w.(*os.File)
 	if !ok {
 		return false
 	}

@@ -54,8 +54,8 @@ one on file is refused unless --correct says that the one on file was wrong. Tri
 	}
 	f := cmd.Flags()
 	f.Var(&rating, "rating", "the switch's rated voltage")
-	f.StringVar(&note, "note", "", "whatever should be remembered")
-	f.StringArrayVar(&revisions, "revision", nil, "a revision's name; may be given several times")
+	f.StringVar(&note, "note", "", "`WORDS` to remember")
+	f.StringArrayVar(&revisions, "revision", nil, "`NAME` of a revision; may be given several times")
 	f.BoolVar(&correct, "correct", false, "replace the rating and the note on file by those given")
 	return cmd
 }

@@ -43,6 +43,6 @@ func historyCommand(a *app) *cobra.Command {
 		},
 	}
 	scope.add(cmd)
-	cmd.Flags().IntVar(&limit, "limit", limit, "how many trials at most; 0: all")
+	cmd.Flags().IntVar(&limit, "limit", limit, "`NUMBER` of trials at most; 0: all")
 	return cmd
 }

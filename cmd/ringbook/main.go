@@ -16,11 +16,13 @@ import (
 	"io"
 	"os"
 	"os/signal"
+	"strings"
 	"syscall"
 )
 
 func main() {
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
+	context.AfterFunc(ctx, stop) // a second Ctrl-C ends the program at once
 	err := run(ctx, os.Args[1:], os.Stdin, os.Stdout, os.Stderr)
 	stop()
 	os.Exit(exitCode(err, os.Stderr))
@@ -54,8 +56,12 @@ func exitCode(err error, stderr io.Writer) int {
 	case errors.As(err, &usage):
 		fmt.Fprintf(stderr, "ringbook: %v\n", err)
 		return 2
+	case errors.Is(err, context.Canceled):
+		fmt.Fprintln(stderr, "ringbook: interrupted; what was logged before stands")
+		return 1
 	default:
-		fmt.Fprintf(stderr, "ringbook: %v\n", err)
+		// A list of what is wrong stands below its first line, set in.
+		fmt.Fprintf(stderr, "ringbook: %s\n", strings.ReplaceAll(err.Error(), "\n", "\n  "))
 		return 1
 	}
 }

@@ -75,6 +75,7 @@ limits the nearest miss is shown and the exit code is 3.`,
 	f.Var(&rTol, "r-tol", "tolerance of the resistor to buy, such as 1%")
 	f.Var(&cSeries, "c-series", "IEC 60063 series of the capacitor")
 	f.Var(&rSeries, "r-series", "IEC 60063 series of the resistor")
-	f.StringVar(&network, "network", network, "rc, or any")
+	f.StringVar(&network, "network", network, "`KIND` to recommend: rc, or any")
+	completes(cmd, "network", "rc", "any")
 	return cmd
 }

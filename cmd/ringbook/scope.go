@@ -19,10 +19,10 @@ type scopeFlags struct {
 
 func (s *scopeFlags) add(cmd *cobra.Command) {
 	f := cmd.Flags()
-	f.StringVar(&s.scope.Board, "board", "", "trials of this board alone")
-	f.StringVar(&s.scope.Revision, "revision", "", "trials of this revision alone")
-	f.StringVar(&s.since, "since", "", "trials read on this day or later: 2026-03-01, or RFC 3339")
-	f.StringVar(&s.until, "until", "", "trials read on this day or earlier: 2026-03-31, or RFC 3339")
+	f.StringVar(&s.scope.Board, "board", "", "trials of the board of this `NAME` alone")
+	f.StringVar(&s.scope.Revision, "revision", "", "trials of the revision of this `NAME` alone")
+	f.StringVar(&s.since, "since", "", "trials read on this `DAY` or later: 2026-03-01, or RFC 3339")
+	f.StringVar(&s.until, "until", "", "trials read on this `DAY` or earlier: 2026-03-31, or RFC 3339")
 }
 
 // read gives the scope as the flags have it.
@@ -57,40 +57,53 @@ func day(flag, text string, days int) (time.Time, error) {
 
 // oneRevision narrows a scope to the one board revision it holds, and refuses one that holds several.
 func oneRevision(ctx context.Context, lb *store.Logbook, s store.Scope) (store.Scope, error) {
+	revs, err := revisions(ctx, lb, s)
+	if err != nil {
+		return s, err
+	}
+	if len(revs) > 1 {
+		return s, usagef("%d board revisions are in scope (%s), each with a loop of its own; name one with --board and --revision", len(revs), some(revs))
+	}
+	s.Board, s.Revision = revs[0].Board, revs[0].Name
+	return s, nil
+}
+
+// revisions are the board revisions with a trial in scope, one at least.
+func revisions(ctx context.Context, lb *store.Logbook, s store.Scope) ([]store.Revision, error) {
 	revs, err := lb.Revisions(ctx, s)
+	if err != nil || len(revs) > 0 {
+		return revs, err
+	}
+	all, err := lb.Revisions(ctx, store.Scope{})
 	if err != nil {
-		return s, err
+		return nil, err
 	}
-	switch {
-	case len(revs) == 1:
-		s.Board, s.Revision = revs[0].Board, revs[0].Name
-		return s, nil
-	case len(revs) > 1:
-		var names []string
-		for i, r := range revs {
-			if i == 6 {
-				names = append(names, fmt.Sprintf("and %d more", len(revs)-i))
-				break
-			}
-			names = append(names, r.Board+" "+r.Name)
-		}
-		return s, usagef("%d board revisions are in scope (%s), each with a loop of its own; name one with --board and --revision", len(revs), strings.Join(names, ", "))
+	if len(all) == 0 {
+		return nil, fmt.Errorf("logbook %s holds no trial; log one with `ringbook trial take`, `trial enter` or `trial import`", lb.Path())
 	}
-	if s.Board == "" && s.Revision == "" {
-		return s, fmt.Errorf("logbook %s holds no trial in scope; log one with `ringbook trial take`, `trial enter` or `trial import`", lb.Path())
+	var asked string
+	if s.Board != "" {
+		asked += fmt.Sprintf(" of board %q", s.Board)
 	}
-	boards, err := lb.Boards(ctx)
-	if err != nil {
-		return s, err
+	if s.Revision != "" {
+		asked += fmt.Sprintf(" of revision %q", s.Revision)
 	}
+	if !s.Since.IsZero() || !s.Until.IsZero() {
+		asked += " in that time"
+	}
+	return nil, fmt.Errorf("logbook %s holds no trial%s that stands; it has trials of %s", lb.Path(), asked, some(all))
+}
+
+// some names a few board revisions, and says how many more there are.
+func some(revs []store.Revision) string {
+	const most = 6
 	var names []string
-	for _, b := range boards {
-		for _, r := range b.Revisions {
-			names = append(names, b.Name+" "+r.Name)
+	for i, r := range revs {
+		if i == most {
+			names = append(names, fmt.Sprintf("and %d more", len(revs)-most))
+			break
 		}
+		names = append(names, r.Board+" "+r.Name)
 	}
-	if len(names) > 8 {
-		names = append(names[:8], "...")
-	}
-	return s, fmt.Errorf("no trial of board %q revision %q is in scope; the logbook has %s", s.Board, s.Revision, strings.Join(names, ", "))
+	return strings.Join(names, ", ")
 }

@@ -21,9 +21,10 @@ type setupFlags struct {
 
 func (s *setupFlags) add(cmd *cobra.Command) {
 	f := cmd.Flags()
-	f.StringVar(&s.board, "board", "", "the board's name")
-	f.StringVar(&s.revision, "revision", "", "the board revision's name")
-	f.StringVar(&s.network, "network", "", "what is fitted across the switch: bare, c, rc, rcd")
+	f.StringVar(&s.board, "board", "", "the board's `NAME`")
+	f.StringVar(&s.revision, "revision", "", "the board revision's `NAME`")
+	f.StringVar(&s.network, "network", "", "`KIND` of network fitted across the switch: bare, c, rc, rcd")
+	completes(cmd, "network", string(snubber.Bare), string(snubber.C), string(snubber.RC), string(snubber.RCD))
 	f.Var(&s.c, "c", "its capacitor, such as 470p")
 	f.Var(&s.cTol, "c-tol", "the capacitor's tolerance, such as 5%")
 	f.Var(&s.r, "r", "its resistor, such as 4R7")
@@ -35,9 +36,9 @@ func (s *setupFlags) add(cmd *cobra.Command) {
 	f.Var(&s.bus, "bus-v", "bus voltage")
 	f.Var(&s.current, "current-a", "load current")
 	f.Var(&s.hz, "switching-hz", "switching frequency")
-	f.StringVar(&s.session, "session", "", "the sitting at the bench this belongs to")
-	f.StringVar(&s.part, "part", "", "what was fitted, in words")
-	f.StringVar(&s.note, "note", "", "whatever should be remembered")
+	f.StringVar(&s.session, "session", "", "`NAME` of the sitting at the bench this belongs to")
+	f.StringVar(&s.part, "part", "", "`WORDS` for what was fitted")
+	f.StringVar(&s.note, "note", "", "`WORDS` to remember")
 }
 
 // trial is the trial the flags describe, without readings.
@@ -58,8 +59,32 @@ func (s *setupFlags) trial() (snubber.Trial, error) {
 		ProbeC: float64(s.probe),
 		Point:  snubber.OperatingPoint{BusV: float64(s.bus), CurrentA: float64(s.current), SwitchingHz: float64(s.hz)},
 	}
+	if err := s.partsOf(kind); err != nil {
+		return snubber.Trial{}, err
+	}
 	if err := t.Network.Check(); err != nil {
 		return snubber.Trial{}, &usageError{err}
 	}
 	return t, nil
+}
+
+// partsOf sees that the flags give the parts the network has, and no others.
+func (s *setupFlags) partsOf(kind snubber.Kind) error {
+	for _, p := range []struct {
+		has         bool
+		flag, given string
+		zero        bool
+		name, value string
+	}{
+		{kind.HasC(), "c", s.c.String(), s.c == 0, "capacitor", "470p"},
+		{kind.HasR(), "r", s.r.String(), s.r == 0, "resistor", "4R7"},
+	} {
+		switch {
+		case p.has && p.zero:
+			return usagef("--network %s has a %s and --%s does not say which; give --%s %s, say", kind, p.name, p.flag, p.flag, p.value)
+		case !p.has && !p.zero:
+			return usagef("--%s %s is given and --network %s has no %s; leave it out or name the network that has one", p.flag, p.given, kind, p.name)
+		}
+	}
+	return nil
 }

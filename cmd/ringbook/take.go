@@ -3,6 +3,7 @@ package main
 import (
 	"context"
 	"fmt"
+	"strings"
 	"time"
 
 	"ringbook/acquire"
@@ -24,7 +25,7 @@ func (a *app) take(ctx context.Context, station *acquire.Station, t snubber.Tria
 		return t, nil, err
 	}
 	if len(result.Readings) == 0 {
-		return t, result.Warnings, fmt.Errorf("trial of %s %s: no instrument gave a reading, so there is nothing to log (%v)", t.Board, t.Revision, result.Warnings)
+		return t, result.Warnings, fmt.Errorf("trial of %s %s: no instrument gave a reading, so there is nothing to log (%s)", t.Board, t.Revision, strings.Join(result.Warnings, "; "))
 	}
 	t.Readings = result.Readings
 	return t, result.Warnings, nil

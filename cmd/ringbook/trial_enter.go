@@ -70,6 +70,6 @@ uncertainty (k = 1).`,
 	f.Var(&decayU, "decay-s-u", "its standard uncertainty")
 	f.Var(&peak, "peak-v", "highest voltage across the switch")
 	f.Var(&peakU, "peak-v-u", "its standard uncertainty")
-	f.StringVar(&at, "at", "", "when it was read, RFC 3339; now where left out")
+	f.StringVar(&at, "at", "", "`TIME` it was read, RFC 3339; now where left out")
 	return cmd
 }

@@ -53,19 +53,21 @@ Fit the network with the supply off and the bus discharged.`,
 			if err != nil {
 				return err
 			}
-			for _, w := range warnings {
-				a.progress("warning: %s", w)
-			}
 			t.ID = id
 			if a.json {
-				return a.printJSON(trialJSON(t))
+				answer := trialJSON(t)
+				answer["warnings"] = append([]string{}, warnings...)
+				return a.printJSON(answer)
 			}
 			p := page.New("Trial of " + t.Board + " " + t.Revision)
 			recipes.OneTrial(p, t)
+			for _, w := range warnings {
+				p.Warn("%s.", w)
+			}
 			return a.print(p)
 		},
 	}
 	setup.add(cmd)
-	cmd.Flags().StringVar(&rigFile, "rig", "rig.toml", "the instruments and what to ask of them")
+	cmd.Flags().StringVar(&rigFile, "rig", "rig.toml", "`FILE` with the instruments and what to ask of them")
 	return cmd
 }
