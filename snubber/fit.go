@@ -6,6 +6,8 @@ import (
 	"fmt"
 	"math"
 
+	"ringbook/snubber/leastsq"
+
 	"gonum.org/v1/gonum/stat/distuv"
 )
 
@@ -14,7 +16,7 @@ type FitResult struct {
 	Board      string     `json:"board"`
 	Revision   string     `json:"revision"`
 	Loop       LoopFit    `json:"loop"`
-	Excitation *Estimate  `json:"excitation_a"` // A: the current that explains the peaks read
+	Excitation *Estimate  `json:"excitation_a"` // A: the current that explains the peaks read; of several operating points, the largest
 	Trials     int        `json:"trials"`       // how many were in scope and stood
 	SetAside   []SetAside `json:"set_aside"`    // left out, with the reason
 	Chi2       float64    `json:"chi2"`
@@ -22,7 +24,19 @@ type FitResult struct {
 	Status     string     `json:"status"` // "converged", or how else the fit ended
 	Warnings   []string   `json:"warnings"`
 
-	Line *SubstitutionLine `json:"-"` // the line of 1/(2 pi f0)^2 against added capacitance
+	// Excitations are those of each operating point at which a peak was read.
+	Excitations []PointExcitation `json:"excitations"`
+
+	Line *SubstitutionLine `json:"-"` // the line of 1/(2 pi f0)^2 against added capacitance, without what was set aside; nil where none can be drawn
+
+	shared *sharedFit
+}
+
+// PointExcitation is the excitation of one operating point.
+type PointExcitation struct {
+	BusV       float64   `json:"bus_v"`        // V
+	CurrentA   float64   `json:"current_a"`    // A: the load's; 0: not known
+	Excitation *Estimate `json:"excitation_a"` // A
 }
 
 // LoopFit is the loop as fitted. Inductance, capacitance and resistance are the parameters; impedance and ring
@@ -57,37 +71,65 @@ func valueOf(e *Estimate) float64 {
 	return e.Value
 }
 
-// Fit fits the loop of one board revision to its trials.
+// Fit fits the loop of one board revision to every reading of its trials.
 //
-// Inductance and capacitance come from the substitution line (FitLine). The loss resistance follows from the
-// decay of the trials with nothing or a capacitor alone, r = 2 L/tau, and the excitation from the peaks, as the
-// current that makes the exact peak of each trial's own network the one read, at the bus voltage of the trial.
+// The parameters are L, C, the loss r where a decay was read, and the excitation I0 of each operating point at which a
+// peak was. Each reading is predicted by the exact response of its own network with the probe across the node: the damped
+// frequency and the decay of the ringing pair, and the peak. A reading that was not taken is absent, and a trial that did
+// not ring still counts through its peak. Each physical part (one drawer entry, or one nominal value and tolerance in one
+// session) has one error, with its tolerance as prior, shared by all the trials it served in.
 //
-// Where chi-square says that the stated uncertainties are too small for the scatter (probability under 5 %), they
-// are widened by the Birge ratio sqrt(chi2/dof), the interval takes Student's t of the degrees of freedom, and a
-// warning says so (GUM G.3; Birge, Phys. Rev. 40, 207, 1932, from memory).
+// A trial that does not belong with the others is set aside, with the reason (see SetAside). Intervals are 95 %: the
+// combined uncertainty of all readings and parts with their correlations (GUM 5.2), times the coverage factor of the
+// distribution the parts' rectangular tolerances and the readings make (GUM Supplement 1). Where chi-square says that the
+// stated uncertainties are too small for the scatter (probability under 5 %), they are widened by the Birge ratio
+// sqrt(chi2/dof), the coverage is Student's of the degrees of freedom (GUM G.3), and a warning says so (Birge, Phys. Rev. 40,
+// 207, 1932, from memory).
 func Fit(ctx context.Context, trials []Trial) (*FitResult, error) {
+	f, err := fitTrials(ctx, trials)
+	if err != nil {
+		return nil, fmt.Errorf("fitting the loop: %w", err)
+	}
+	return f, nil
+}
+
+func fitTrials(ctx context.Context, trials []Trial) (*FitResult, error) {
 	standing, err := oneRevision(trials)
 	if err != nil {
-		return nil, fmt.Errorf("fitting the loop: %w", err)
+		return nil, err
 	}
 	if err := ctx.Err(); err != nil {
-		return nil, fmt.Errorf("fitting the loop: %w", err)
+		return nil, err
 	}
-	line, err := FitLine(standing)
+	obs, err := observe(standing)
 	if err != nil {
-		return nil, fmt.Errorf("fitting the loop: %w", err)
+		return nil, err
 	}
-	f := &FitResult{
-		Board: standing[0].Board, Revision: standing[0].Revision,
-		Trials: len(standing), SetAside: []SetAside{}, Chi2: line.Chi2, DOF: line.DOF, Status: "converged",
-		Warnings: append([]string{}, line.Warnings...), Line: line,
+	if len(obs.list) == 0 {
+		return nil, nothingToFit()
 	}
-	k, widen := f.coverage()
-	f.loop(line, widen, k)
-	f.loss(standing, widen, k)
-	f.excitation(standing, k)
-	return f, nil
+	line := linePoints(standing)
+	m := newModel(obs)
+	start, err := m.start(line, standing)
+	if err != nil {
+		return nil, err
+	}
+	out, err := m.settle(ctx, start)
+	if err != nil {
+		return nil, err
+	}
+	if out.fit.Status == leastsq.Stopped {
+		return nil, ctx.Err()
+	}
+	f := &FitResult{Board: standing[0].Board, Revision: standing[0].Revision, Trials: len(standing), SetAside: []SetAside{},
+		Chi2: out.fit.Chi2, DOF: m.readings(out.kept) - m.params, Status: out.fit.Status.String(), Warnings: append([]string{}, obs.warnings...)}
+	for _, a := range out.aside {
+		f.SetAside = append(f.SetAside, SetAside{Trial: obs.list[a.index].trial.ID, Because: out.because(a)})
+	}
+	if err := line.enough(); err == nil && line.without(f.SetAside).fit() == nil {
+		f.Line = line
+	}
+	return f, f.describe(out)
 }
 
 // oneRevision is the trials that stand, all of one board revision.
@@ -109,62 +151,54 @@ func oneRevision(trials []Trial) ([]Trial, error) {
 	return standing, nil
 }
 
-// coverage is the coverage factor of 95 % intervals and the factor by which uncertainties are widened.
-func (f *FitResult) coverage() (k, widen float64) {
-	if f.DOF == 0 || (distuv.ChiSquared{K: float64(f.DOF)}).Survival(f.Chi2) >= 0.05 {
-		return normal95, 1
+// describe gives the estimates of a fit.
+func (f *FitResult) describe(out *outcome) error {
+	m, fit := out.model, out.fit
+	if fit.Cov == nil {
+		return errors.New("the trials cannot tell inductance and capacitance apart; fit a capacitor of about three times the node's capacitance and read the ring")
 	}
-	widen = math.Sqrt(f.Chi2 / float64(f.DOF))
-	f.Warnings = append(f.Warnings, fmt.Sprintf("the trials scatter %.3g times more than their stated uncertainties allow (chi-square %.3g for %d degrees of freedom): the intervals were widened by that; look for a mislabelled capacitor or a misread frequency, or state larger uncertainties", widen, f.Chi2, f.DOF))
-	return distuv.StudentsT{Sigma: 1, Nu: float64(f.DOF)}.Quantile(0.975), widen
-}
-
-// loop takes L, C and what follows from them off the line: L = b, C = a/b, Z0 = b/sqrt(a), f0 = 1/(2 pi sqrt(a)),
-// with intercept a and slope b; uncertainties to first order with their covariance (GUM 5.2).
-func (f *FitResult) loop(line *SubstitutionLine, widen, k float64) {
-	a, b := line.Intercept, line.Slope
-	u := func(da, db float64) float64 { // of a function with these derivatives by a and b
-		return widen * math.Sqrt(math.Max(0, da*da*line.InterU*line.InterU+2*da*db*line.Cov+db*db*line.SlopeU*line.SlopeU))
+	if m.loss < 0 {
+		f.Warnings = append(f.Warnings, "no decay was read: the ring's frequency was taken as undamped, which makes the loop look slower, and the loss is not known; read decay_s")
 	}
-	f.Loop.Inductance = estimate(b, u(0, 1), k)
-	f.Loop.Capacitance = estimate(a/b, u(1/b, -a/(b*b)), k)
-	f.Loop.Impedance = estimate(b/math.Sqrt(a), u(-b/(2*a*math.Sqrt(a)), 1/math.Sqrt(a)), k)
-	f.Loop.RingHz = estimate(1/(2*math.Pi*math.Sqrt(a)), u(1/(4*math.Pi*a*math.Sqrt(a)), 0), k)
-}
-
-func (f *FitResult) loss(trials []Trial, widen, k float64) {
-	rate, ru := meanDecayRate(trials)
-	if rate == 0 {
-		return
+	e := &estimator{fit: fit, obs: m.obs, widen: 1}
+	if f.DOF > 0 && (distuv.ChiSquared{K: float64(f.DOF)}).Survival(f.Chi2) < 0.05 {
+		e.widen = math.Sqrt(f.Chi2 / float64(f.DOF))
+		e.student = distuv.StudentsT{Sigma: 1, Nu: float64(f.DOF)}.Quantile(0.975)
+		f.Warnings = append(f.Warnings, fmt.Sprintf("the trials scatter %.3g times more than their stated uncertainties allow (chi-square %.3g for %d degrees of freedom): the intervals were widened by that; look for a mislabelled capacitor or a misread frequency, or state larger uncertainties", e.widen, f.Chi2, f.DOF))
 	}
-	l := f.Loop.Inductance
-	f.Loop.Resistance = estimate(2*l.Value*rate, 2*math.Hypot(l.U*rate, l.Value*ru*widen), k)
-}
-
-// excitation is the weighted mean of the currents that explain each peak read.
-func (f *FitResult) excitation(trials []Trial, k float64) {
-	var sum, weight float64
-	loop := f.Nominal()
-	for _, t := range trials {
-		peak, ok := t.Reading(PeakV)
-		if !ok || t.Network.Kind == RCD || !(t.Operating().BusV > 0) {
+	g := func(terms map[int]float64) []float64 { // a gradient by the shared parameters
+		v := make([]float64, m.params)
+		for k, x := range terms {
+			v[k] = x
+		}
+		return v
+	}
+	l := m.loop(fit.P)
+	// ln L = ln T + ln Z0, ln C = ln T - ln Z0.
+	f.Loop.Inductance = e.relative(l.Inductance, g(map[int]float64{0: 1, 1: 1}))
+	f.Loop.Capacitance = e.relative(l.Capacitance, g(map[int]float64{0: 1, 1: -1}))
+	f.Loop.Impedance = e.relative(l.Impedance(), g(map[int]float64{1: 1}))
+	f.Loop.RingHz = e.relative(l.NaturalHz(), g(map[int]float64{0: -1}))
+	if m.loss >= 0 {
+		if r := e.relative(l.Resistance, g(map[int]float64{m.loss: 1})); r.U <= r.Value {
+			f.Loop.Resistance = r
+		} else {
+			f.Warnings = append(f.Warnings, "the decays read do not tell the loss: its uncertainty is larger than it is; read decay_s with more repeats")
+		}
+	}
+	for point, k := range m.amps {
+		if k < 0 {
 			continue
 		}
-		u := peak.U
-		if u == 0 {
-			u = unstatedPeak * peak.Value
+		x := e.absolute(math.Abs(fit.P[k]), g(map[int]float64{k: 1}))
+		x.Low = math.Max(0, x.Low)
+		f.Excitations = append(f.Excitations, PointExcitation{BusV: m.obs.points[point].bus, CurrentA: m.obs.points[point].load, Excitation: x})
+		if f.Excitation == nil || x.Value > f.Excitation.Value {
+			f.Excitation = x
 		}
-		i, slope, ok := currentForPeak(loop.WithProbe(t.ProbeC), t.Network, t.Operating().BusV, peak.Value)
-		if !ok {
-			continue
-		}
-		ui := u / slope
-		sum += i / (ui * ui)
-		weight += 1 / (ui * ui)
 	}
-	if weight > 0 {
-		f.Excitation = estimate(sum/weight, 1/math.Sqrt(weight), k)
-	}
+	f.shared = &sharedFit{p: fit.P, cov: fit.Cov, widen: e.widen, loss: m.loss}
+	return nil
 }
 
 // currentForPeak is the loop current, A, at which the network's exact peak is the one read, and the slope dV/dI

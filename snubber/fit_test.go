@@ -211,7 +211,7 @@ func TestFitRefuses(t *testing.T) {
 		{"rising", []snubber.Trial{bare, with(470e-12, 120e6)}, "rises with added capacitance"},
 		{"negative capacitance", []snubber.Trial{with(100e-12, 300e6), with(470e-12, 100e6)}, "would be negative"},
 		{"two revisions", []snubber.Trial{bare, other}, "two revisions"},
-		{"no frequency", []snubber.Trial{{ID: "x", Board: "b", Revision: "A", Network: snubber.Network{Kind: snubber.Bare}}}, "no trial in scope read a ring frequency"},
+		{"no frequency", []snubber.Trial{{ID: "x", Board: "b", Revision: "A", Network: snubber.Network{Kind: snubber.Bare}}}, "no trial in scope has a reading"},
 	} {
 		f, err := snubber.Fit(context.Background(), c.trials)
 		if err == nil {

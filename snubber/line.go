@@ -11,6 +11,7 @@ import (
 // LinePoint is one trial on the substitution line.
 type LinePoint struct {
 	Trial    string
+	Kind     Kind    // bare or c
 	AddedC   float64 // F: what was fitted across the node, with the probe
 	AddedU   float64 // F, standard uncertainty
 	Inverse  float64 // 1/(2 pi f0)^2, s^2, of the undamped frequency
@@ -31,7 +32,6 @@ type SubstitutionLine struct {
 	Cov       float64 // H s^2, of slope and intercept
 	Chi2      float64
 	DOF       int
-	Warnings  []string
 }
 
 // At is the line at an added capacitance (F), s^2, with its standard uncertainty.
@@ -47,49 +47,13 @@ func (s *SubstitutionLine) At(c float64) (y, u float64) {
 // is corrected to undamped by f0^2 = f^2 + 1/(2 pi tau)^2 with the trial's decay time tau, or with the mean of the
 // others' where it read none: a series loss makes tau = 2 L/r whatever the capacitance. The probe's capacitance
 // counts as added.
+//
+// It is the picture of the fit and its start. Fit says more: it uses every reading of every trial, and counts a part
+// that served twice once.
 func FitLine(trials []Trial) (*SubstitutionLine, error) {
-	line := &SubstitutionLine{}
-	rate, rateU := meanDecayRate(trials)
-	var unstated, undamped, tolerance int
-	for _, t := range trials {
-		ring, ok := t.Reading(RingHz)
-		if !ok || t.Struck != "" || (t.Network.Kind != Bare && t.Network.Kind != C) {
-			continue
-		}
-		if ring.U == 0 {
-			ring.U = unstatedRing * ring.Value
-			unstated++
-		}
-		d, du := rate, rateU
-		if decay, ok := t.Reading(DecayS); ok {
-			d = 1 / decay.Value
-			du = d * decayU(decay) / decay.Value
-		} else if rate == 0 {
-			undamped++
-		}
-		w := 2 * math.Pi * ring.Value
-		w0 := w*w + d*d
-		p := LinePoint{Trial: t.ID, Inverse: 1 / w0}
-		p.InverseU = math.Hypot(2*w*2*math.Pi*ring.U, 2*d*du) / (w0 * w0)
-		var stated bool
-		p.AddedC, p.AddedU, stated = fittedC(t.Network)
-		if !stated {
-			tolerance++
-		}
-		p.AddedC += t.ProbeC
-		line.Points = append(line.Points, p)
-	}
+	line := linePoints(trials)
 	if err := line.enough(); err != nil {
 		return nil, fmt.Errorf("fitting the substitution line: %w", err)
-	}
-	if unstated > 0 {
-		line.warn("%d ring frequencies state no uncertainty: %g %% was taken; state ring_hz_u", unstated, 100*unstatedRing)
-	}
-	if undamped > 0 {
-		line.warn("no decay was read: the ring's frequency was taken as undamped, which makes the loop look slower; read decay_s")
-	}
-	if tolerance > 0 {
-		line.warn("%d capacitors state no tolerance: %g %% was taken; state c_tol or measure them", tolerance, 100*unstatedTol)
 	}
 	if err := line.fit(); err != nil {
 		return nil, fmt.Errorf("fitting the substitution line: %w", err)
@@ -97,8 +61,32 @@ func FitLine(trials []Trial) (*SubstitutionLine, error) {
 	return line, nil
 }
 
-func (s *SubstitutionLine) warn(format string, args ...any) {
-	s.Warnings = append(s.Warnings, fmt.Sprintf(format, args...))
+// linePoints are the points of the line, not yet fitted.
+func linePoints(trials []Trial) *SubstitutionLine {
+	line := &SubstitutionLine{}
+	rate, rateU := meanDecayRate(trials)
+	for _, t := range trials {
+		ring, ok := t.Reading(RingHz)
+		if !ok || t.Struck != "" || (t.Network.Kind != Bare && t.Network.Kind != C) {
+			continue
+		}
+		if ring.U == 0 {
+			ring.U = unstatedRing * ring.Value
+		}
+		d, du := rate, rateU
+		if decay, ok := t.Reading(DecayS); ok {
+			d = 1 / decay.Value
+			du = d * decayU(decay) / decay.Value
+		}
+		w := 2 * math.Pi * ring.Value
+		w0 := w*w + d*d
+		p := LinePoint{Trial: t.ID, Kind: t.Network.Kind, Inverse: 1 / w0}
+		p.InverseU = math.Hypot(2*w*2*math.Pi*ring.U, 2*d*du) / (w0 * w0)
+		p.AddedC, p.AddedU, _ = fittedC(t.Network)
+		p.AddedC += t.ProbeC
+		line.Points = append(line.Points, p)
+	}
+	return line
 }
 
 // enough says what is missing for a line.
@@ -109,12 +97,13 @@ func (s *SubstitutionLine) enough() error {
 	case 1:
 		return errors.New("only one trial in scope read a ring frequency with nothing or a capacitor alone fitted: one point makes no line; fit a known capacitor, about three times the node's capacitance, and read again")
 	}
-	low, high := s.Points[0].AddedC, s.Points[0].AddedC
+	low, high, bare := s.Points[0].AddedC, s.Points[0].AddedC, true
 	for _, p := range s.Points {
+		bare = bare && p.Kind == Bare
 		low, high = math.Min(low, p.AddedC), math.Max(high, p.AddedC)
 	}
 	switch {
-	case high == 0:
+	case bare:
 		return fmt.Errorf("all %d trials are bare: without a known capacitor inductance and capacitance cannot be told apart; fit one that brings the frequency down to about half", len(s.Points))
 	case high-low <= 1e-6*high:
 		return fmt.Errorf("all %d trials had the same capacitance, %.4g F, across the node: a line needs two; read the bare node too, or fit another capacitor", len(s.Points), high)
@@ -189,4 +178,20 @@ func meanDecayRate(trials []Trial) (rate, u float64) {
 		return 0, 0
 	}
 	return sum / weight, 1 / math.Sqrt(weight)
+}
+
+// without is the line's points but those set aside.
+func (s *SubstitutionLine) without(list []SetAside) *SubstitutionLine {
+	gone := map[string]bool{}
+	for _, a := range list {
+		gone[a.Trial] = true
+	}
+	kept := s.Points[:0]
+	for _, p := range s.Points {
+		if !gone[p.Trial] {
+			kept = append(kept, p)
+		}
+	}
+	s.Points = kept
+	return s
 }

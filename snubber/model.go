@@ -7,8 +7,10 @@ import (
 	"ringbook/snubber/leastsq"
 )
 
-// model is what the fit moves: the shared parameters ln L, ln C, ln r where a decay was read, and the excitation of each
-// operating point at which a peak was; and beside them the error of each part in units of its standard uncertainty.
+// model is what the fit moves: the shared parameters ln T with T = sqrt(L C), ln Z0, ln r where a decay was read, and the
+// excitation of each operating point at which a peak was; and beside them the error of each part in units of its standard
+// uncertainty. T is what the frequencies tell and Z0 what the capacitors do, so that the two hardly depend on each other,
+// where L and C would.
 type model struct {
 	obs    *observations
 	params int
@@ -34,7 +36,8 @@ func newModel(obs *observations) *model {
 
 // loop is the loop at parameters p.
 func (m *model) loop(p []float64) Loop {
-	l := Loop{Inductance: math.Exp(p[0]), Capacitance: math.Exp(p[1])}
+	t, z := math.Exp(p[0]), math.Exp(p[1])
+	l := Loop{Inductance: t * z, Capacitance: t / z}
 	if m.loss >= 0 {
 		l.Resistance = math.Exp(p[m.loss])
 	}
@@ -86,22 +89,22 @@ func (m *model) eval(x *observed, p, d []float64, derivatives bool, b *leastsq.B
 			b.P = append(b.P, 0)
 		}
 		row := b.P[at:]
-		row[0] = slopes[k][atL] * v[atL] / x.u[k]
-		row[1] = slopes[k][atC] * (v[atC] - x.trial.ProbeC) / x.u[k]
+		byL, byC := slopes[k][atL]*v[atL], slopes[k][atC]*(v[atC]-x.trial.ProbeC) // by ln L and ln C
+		row[0], row[1] = (byL+byC)/x.u[k], (byL-byC)/x.u[k]
 		if m.loss >= 0 {
 			row[m.loss] = slopes[k][atR] * v[atR] / x.u[k]
 		}
 		if i := m.amps[x.point]; i >= 0 {
 			row[i] = math.Copysign(slopes[k][atI0], p[i]) / x.u[k]
 		}
-		var byC, byR float64
+		var first, second float64
 		if x.c >= 0 {
-			byC = slopes[k][atCs] * m.obs.caps[x.c].u / x.u[k]
+			first = slopes[k][atCs] * m.obs.caps[x.c].u / x.u[k]
 		}
 		if x.r >= 0 {
-			byR = slopes[k][atRs] * m.obs.ohms[x.r].u / x.u[k]
+			second = slopes[k][atRs] * m.obs.ohms[x.r].u / x.u[k]
 		}
-		b.D[0], b.D[1] = append(b.D[0], byC), append(b.D[1], byR)
+		b.D[0], b.D[1] = append(b.D[0], first), append(b.D[1], second)
 	}
 }
 

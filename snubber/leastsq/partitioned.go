@@ -18,8 +18,10 @@ import (
 // synthesis", 2000, section 6, cited from memory), so that the cost grows with the number of blocks and not with its
 // square. Those of the second kind stay beside the shared parameters in the reduced system.
 //
-// The reduced system is one of normal equations, with its columns scaled to length one. The priors bound the
-// condition of what is eliminated; for shared parameters that are nearly dependent, use Fit.
+// The reduced system is one of normal equations, with its columns scaled to length one, unlike everything else here: a
+// step need not be exact, and the covariance is right to about (prior/reading)^2 times 1e-16, where prior/reading is how
+// many times the prior of a nuisance is wider than the readings that see it. Choose shared parameters that are not
+// nearly dependent, or use Fit.
 type Partitioned struct {
 	Shared int       // number of shared parameters, > 0
 	First  int       // number of nuisances of the first kind, >= 0

@@ -198,7 +198,8 @@ func (s *partSystem) predicted(mu float64) float64 {
 }
 
 // covariance is the inverse of the undamped reduced system; false where it has no full rank: an eigenvalue of the
-// system scaled to a unit diagonal of at most rank.
+// system scaled to a unit diagonal of at most rank, or so little left of a diagonal by the elimination that it may be
+// rounding.
 func (s *partSystem) covariance(rank float64) (*mat.SymDense, bool) {
 	s.cov = nil
 	s.reduce(0)
@@ -206,7 +207,7 @@ func (s *partSystem) covariance(rank float64) (*mat.SymDense, bool) {
 	root := make([]float64, n)
 	for i := range n {
 		v := s.reduced.At(i, i)
-		if !(v > 0) || math.IsInf(v, 0) {
+		if !(v > 64*epsilon*s.a.At(i, i)) || math.IsInf(v, 0) {
 			return nil, false
 		}
 		root[i] = math.Sqrt(v)

@@ -1,0 +1,250 @@
+package snubber
+
+import (
+	"context"
+	"fmt"
+	"math"
+
+	"ringbook/snubber/leastsq"
+
+	"gonum.org/v1/gonum/mat"
+	"gonum.org/v1/gonum/stat/distuv"
+)
+
+// falseAlarm is the probability with which a board whose trials are all sound loses one of them.
+const falseAlarm = 0.01
+
+// exactTrials is up to how many trials each is tested by a fit without it; beyond, by the linearised fit.
+const exactTrials = 25
+
+// outcome is a fit of the trials that are kept.
+type outcome struct {
+	model *model
+	fit   *leastsq.PartitionedResult
+	kept  []int // indices of observations
+	aside []aside
+}
+
+// aside is a trial left out, by its index of observations, with how far it stands from the others: the fall of chi2
+// when it goes, and the probability of as much by chance among all the trials.
+type aside struct {
+	index  int
+	fall   float64
+	chance float64
+}
+
+// settle fits, and sets aside what does not belong.
+//
+// It starts with a robust loss (Cauchy's, a trial at a time), so that a wrong trial does not lead the fit. Then each
+// trial is left out in turn: what chi-square falls by is, for a sound trial, itself distributed as chi-square with as many
+// degrees of freedom as the trial has readings (the likelihood-ratio test of a shift of its mean; Cook and Weisberg,
+// Residuals and Influence in Regression, 1982, section 2.2.2, from memory). The trial that stands farthest goes
+// where that is less likely than falseAlarm over the number of trials (Bonferroni); where the others scatter more than they
+// state, the test is the F of fall and scatter instead. At most a third go. One set aside comes back when the others
+// later agree with it.
+func (m *model) settle(ctx context.Context, start []float64) (*outcome, error) {
+	all := make([]int, len(m.obs.list))
+	for i := range all {
+		all[i] = i
+	}
+	if robust, err := m.fit(ctx, all, start, leastsq.Cauchy(2.385)); err == nil && robust.Status != leastsq.Stopped {
+		start = robust.P
+	}
+	fit, err := m.fit(ctx, all, start, nil)
+	if err != nil {
+		return nil, err
+	}
+	o := &outcome{model: m, fit: fit, kept: all}
+	for len(o.aside) < len(all)/3 {
+		worst, err := o.worst(ctx)
+		if err != nil {
+			return nil, err
+		}
+		if worst == nil {
+			break
+		}
+		if err := o.drop(ctx, worst); err != nil {
+			return nil, err
+		}
+	}
+	return o, o.readmit(ctx)
+}
+
+// drop sets one trial aside and fits the others.
+func (o *outcome) drop(ctx context.Context, w *aside) error {
+	o.kept = without(o.kept, w.index)
+	o.aside = append(o.aside, *w)
+	fit, err := o.model.fit(ctx, o.kept, o.fit.P, nil)
+	if err != nil {
+		return err
+	}
+	o.fit = fit
+	return nil
+}
+
+// worst is the trial that stands farthest from the others, where that is no chance; nil where there is none.
+func (o *outcome) worst(ctx context.Context) (*aside, error) {
+	// Where even the whole chi-square is no surprise for one trial's readings, no trial can be one.
+	if (distuv.ChiSquared{K: 1}).Survival(o.fit.Chi2) > falseAlarm/float64(len(o.kept)) {
+		return nil, nil
+	}
+	test := o.without
+	if len(o.kept) > exactTrials {
+		test = o.linearised()
+	}
+	var worst *aside
+	for _, i := range o.kept {
+		a, err := test(ctx, i)
+		if err != nil {
+			return nil, err
+		}
+		if a != nil && (worst == nil || a.chance < worst.chance || a.chance == worst.chance && a.fall > worst.fall) {
+			worst = a
+		}
+	}
+	if worst == nil || worst.chance > falseAlarm {
+		return nil, nil
+	}
+	return worst, nil
+}
+
+// without tests trial i by a fit without it; nil where the others cannot be fitted.
+func (o *outcome) without(ctx context.Context, i int) (*aside, error) {
+	kept := without(o.kept, i)
+	if len(kept) == 0 || o.model.readings(kept) <= o.model.params {
+		return nil, nil
+	}
+	fit, err := o.model.fit(ctx, kept, o.fit.P, nil)
+	if err != nil {
+		return nil, err
+	}
+	if fit.Cov == nil {
+		return nil, nil
+	}
+	return o.judge(i, o.fit.Chi2-fit.Chi2, fit.Chi2, o.model.readings(kept)-o.model.params), nil
+}
+
+// judge gives the probability, among all trials kept, of a fall of chi2 as large by chance, when trial i goes and the
+// others are left with chi2 for dof degrees of freedom.
+func (o *outcome) judge(i int, fall, chi2 float64, dof int) *aside {
+	k := float64(o.model.obs.list[i].readings())
+	chance := distuv.ChiSquared{K: k}.Survival(math.Max(fall, 0))
+	if dof > 0 && (distuv.ChiSquared{K: float64(dof)}).Survival(chi2) < 0.05 {
+		chance = distuv.F{D1: k, D2: float64(dof)}.Survival(math.Max(fall, 0) / k / (chi2 / float64(dof)))
+	}
+	return &aside{index: i, fall: fall, chance: math.Min(1, chance*float64(len(o.kept)))}
+}
+
+// linearised tests each trial by the fit linearised at its minimum: with e the trial's residuals and H their part of the
+// hat matrix, chi-square falls by e'(I - H)^-1 e when it goes (Cook and Weisberg, as above).
+func (o *outcome) linearised() func(context.Context, int) (*aside, error) {
+	dof := o.model.readings(o.kept) - o.model.params
+	var b leastsq.Block
+	return func(_ context.Context, i int) (*aside, error) {
+		if o.fit.Cov == nil {
+			return nil, nil
+		}
+		x := &o.model.obs.list[i]
+		o.model.eval(x, o.fit.P, o.fit.D, true, &b)
+		cov := o.fit.Joint(b.First, b.Second)
+		n, k := cov.SymmetricDim(), len(b.R)
+		j := mat.NewDense(k, n, nil)
+		for r := range k {
+			for c := range o.model.params {
+				j.Set(r, c, b.P[r*o.model.params+c])
+			}
+			at := o.model.params
+			if b.First >= 0 {
+				j.Set(r, at, b.D[0][r])
+				at++
+			}
+			if b.Second >= 0 {
+				j.Set(r, at, b.D[1][r])
+			}
+		}
+		var h, jc mat.Dense
+		jc.Mul(j, cov)
+		h.Mul(&jc, j.T())
+		for r := range k {
+			for c := range k {
+				v := -h.At(r, c)
+				if r == c {
+					v++
+				}
+				h.Set(r, c, v)
+			}
+		}
+		e := mat.NewVecDense(k, append([]float64{}, b.R...))
+		var y mat.VecDense
+		if err := y.SolveVec(&h, e); err != nil {
+			return nil, nil // the others say nothing of this trial
+		}
+		fall := mat.Dot(e, &y)
+		return o.judge(i, fall, math.Max(o.fit.Chi2-fall, 0), dof-k), nil
+	}
+}
+
+// readmit takes back each trial set aside that the others agree with after all.
+func (o *outcome) readmit(ctx context.Context) error {
+	for k := len(o.aside) - 1; k >= 0; k-- {
+		a := o.aside[k]
+		kept := append(append([]int{}, o.kept...), a.index)
+		fit, err := o.model.fit(ctx, kept, o.fit.P, nil)
+		if err != nil {
+			return err
+		}
+		back := &outcome{model: o.model, fit: fit, kept: kept}
+		again := back.judge(a.index, fit.Chi2-o.fit.Chi2, o.fit.Chi2, o.model.readings(o.kept)-o.model.params)
+		if again.chance > falseAlarm {
+			o.fit, o.kept = fit, kept
+			o.aside = append(o.aside[:k], o.aside[k+1:]...)
+		} else {
+			o.aside[k] = *again
+		}
+	}
+	return nil
+}
+
+// because says why a trial was set aside, by the reading that is farthest from what the others predict.
+func (o *outcome) because(a aside) string {
+	x := &o.model.obs.list[a.index]
+	// Predicted with the part as the others know it: one that served nowhere else is at what is printed on it.
+	v := o.model.values(x, o.fit.P, o.fit.D)
+	signs, _ := v.signs()
+	worst, far := 0, -1.0
+	for k, s := range signs {
+		if !math.IsNaN(x.value[k]) {
+			if z := math.Abs(s-x.value[k]) / x.u[k]; z > far {
+				worst, far = k, z
+			}
+		}
+	}
+	text := fmt.Sprintf("it reads %s = %.4g where the other trials predict %.4g", observedQuantity[worst], x.value[worst], signs[worst])
+	if x.c >= 0 && worst == ringAt {
+		if c := o.model.capacitorFor(x, o.fit.P); c > 0 {
+			text += fmt.Sprintf("; that would take %.3g F where %.3g F is written", c, x.trial.Network.C)
+		}
+	}
+	return text + fmt.Sprintf(" (chi-square falls by %.1f without it, chance %.1g)", a.fall, a.chance)
+}
+
+// capacitorFor is the capacitor that would explain the ring a trial with a capacitor alone read; 0 where none would.
+func (m *model) capacitorFor(x *observed, p []float64) float64 {
+	if x.trial.Network.Kind != C {
+		return 0
+	}
+	l := m.loop(p)
+	w := 2 * math.Pi * x.value[ringAt]
+	d := l.Resistance / (2 * l.Inductance)
+	return math.Max(0, 1/((w*w+d*d)*l.Inductance)-l.Capacitance-x.trial.ProbeC)
+}
+
+func without(list []int, x int) []int {
+	out := make([]int, 0, len(list))
+	for _, i := range list {
+		if i != x {
+			out = append(out, i)
+		}
+	}
+	return out
+}
