@@ -158,6 +158,11 @@ func prepareFile(ctx context.Context, lb *Logbook) (_ *writer, err error) {
 	if err := useLog(ctx, conn, lb.path); err != nil {
 		return nil, err
 	}
+	// The triggers make SQLite keep each row's old page until the statement is through: in memory, on this connection,
+	// which sorts nothing large.
+	if _, err := conn.ExecContext(ctx, "PRAGMA temp_store = MEMORY"); err != nil {
+		return nil, err
+	}
 	return newWriter(conn), nil
 }
 
