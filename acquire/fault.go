@@ -21,6 +21,10 @@ type Fault struct {
 // Error is one sentence.
 func (f *Fault) Error() string {
 	s := fmt.Sprintf("%s: instrument %s at %s: %v", f.Doing, f.Instrument, f.Address, f.Err)
+	var open *wire.OpenError
+	if errors.As(f.Err, &open) { // which names the address too
+		return fmt.Sprintf("%s: instrument %s at %s: %s: %s", f.Doing, f.Instrument, f.Address, open.Problem, open.Cure)
+	}
 	if f.Cure != "" {
 		s += ": " + f.Cure
 	}

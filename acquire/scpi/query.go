@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"math"
 	"os"
 	"strings"
 	"time"
@@ -17,13 +18,17 @@ func (c *Conn) QueryFunc(ctx context.Context, parse func(reply string) error, he
 	return c.query(ctx, c.line, parse, header, args)
 }
 
-// QueryNumber asks for one number. ErrNoReading (tested with errors.Is) says that there is none.
+// QueryNumber asks for one number. ErrNoReading (tested with errors.Is) says that there is none. With
+// any error the number is NaN.
 func (c *Conn) QueryNumber(ctx context.Context, header string, args ...Arg) (v float64, err error) {
 	err = c.QueryFunc(ctx, func(reply string) (err error) {
 		v, err = ParseNumber(reply)
 		return err
 	}, header, args...)
-	return v, err
+	if err != nil {
+		return math.NaN(), err
+	}
+	return v, nil
 }
 
 // QueryString asks for one quoted string and gives it without its quotes.

@@ -3,14 +3,10 @@
 package wire
 
 import (
-	"errors"
 	"io"
 	"os"
 	"syscall"
 )
-
-// errNotDevice says that a path leads to something other than a character device.
-var errNotDevice = errors.New("not a character device")
 
 // held is a file descriptor whose advisory lock goes when it is closed, or when the program dies.
 type held int

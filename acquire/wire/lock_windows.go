@@ -1,11 +1,8 @@
 package wire
 
 import (
-	"errors"
 	"io"
 )
-
-var errNotDevice = errors.New("not a character device")
 
 type held struct{}
 

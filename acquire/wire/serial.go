@@ -5,7 +5,6 @@ import (
 	"errors"
 	"fmt"
 	"io"
-	"io/fs"
 	"os"
 	"sync"
 	"sync/atomic"
@@ -16,9 +15,6 @@ import (
 
 // slice is how often a wait on a serial port looks whether its deadline has moved or the link was closed.
 const slice = 20 * time.Millisecond
-
-// errBusy says that another program has the port.
-var errBusy = errors.New("port is busy")
 
 // serialLink gives a serial port deadlines.
 type serialLink struct {
@@ -183,31 +179,4 @@ func (l *serialLink) gone(err error) error {
 		return os.ErrClosed
 	}
 	return fmt.Errorf("serial port %s is gone (%w): check that its adapter is still plugged in", l.device, err)
-}
-
-func portError(address string, a Address, err error) error {
-	e := &OpenError{Address: address, Err: err, Problem: err.Error(), Cure: "check that " + a.Device + " is a serial port and takes these settings"}
-	var p *serial.PortError
-	code := serial.PortErrorCode(-1)
-	if errors.As(err, &p) {
-		code = p.Code()
-	}
-	switch {
-	case errors.Is(err, errBusy) || code == serial.PortBusy:
-		e.Problem = "the port is in use by another program"
-		e.Cure = "end that program first (on Linux `fuser " + a.Device + "` names it)"
-	case errors.Is(err, fs.ErrNotExist) || code == serial.PortNotFound:
-		e.Problem = "there is no such device"
-		e.Cure = "check that the adapter is plugged in, and its name (on Linux `ls /dev/serial/by-id`)"
-	case errors.Is(err, fs.ErrPermission) || code == serial.PermissionDenied:
-		e.Problem = "permission denied"
-		e.Cure = "join the group that owns the port (on Linux `sudo usermod -aG dialout $USER`, then log in again)"
-	case errors.Is(err, errNotDevice) || code == serial.InvalidSerialPort:
-		e.Problem = "it is not a serial port"
-		e.Cure = "name the device the instrument is plugged into, such as /dev/ttyUSB0"
-	case code == serial.InvalidSpeed, code == serial.InvalidDataBits, code == serial.InvalidParity, code == serial.InvalidStopBits:
-		e.Problem = "the port does not take these settings: " + p.EncodedErrorString()
-		e.Cure = "use settings that both the instrument and the adapter know"
-	}
-	return e
 }
