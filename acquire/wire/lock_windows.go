@@ -1,8 +1,6 @@
 package wire
 
-import (
-	"io"
-)
+import "io"
 
 type held struct{}
 
