@@ -30,6 +30,6 @@
 //     `number,"text"`, and both are refused. (So Options.NoErrorQueue gives up more than error texts.)
 //
 // Sources: IEEE Std 488.2-1992, Standard Codes, Formats, Protocols, and Common Commands; SCPI-1999,
-// Volume 1, Syntax and Style, and Volume 2, Command Reference, chapter 21 (SYSTem:ERRor). Both were
-// checked through secondary copies only.
+// Volume 1, Syntax and Style, and Volume 2, Command Reference, chapter 21 (SYSTem:ERRor). What they say
+// was checked through secondary copies only; the clause numbers given in this package are from memory.
 package scpi

@@ -11,7 +11,7 @@
 //	ASRL3::INSTR                    or by number: COM3 on Windows, /dev/ttyS2 elsewhere
 //
 // The resource strings follow the grammar of the IVI Foundation's VPP-4.3, The VISA Library, section
-// 4.3.1 [secondary copies]; letter case does not matter and a board number after TCPIP is read past.
+// 4.3.1 (through secondary copies; the section's number from memory); letter case does not matter and a board number after TCPIP is read past.
 // What a number after ASRL stands for is the platform's business; counting from 1 is common practice.
 //
 // It is not a VISA library: VXI-11, HiSLIP, USBTMC and GPIB are not spoken, and flow control on a serial
