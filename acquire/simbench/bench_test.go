@@ -128,7 +128,7 @@ func TestASeriesOverTCP(t *testing.T) {
 		t.Errorf("well damped, the ring reads %q", got)
 	}
 	// The snubber draws f Cs E of supply current: 400 kHz of 1 nF at 48 V.
-	if d := supply.number("MEAS:CURR?") - bareSupply; math.Abs(d-400e3*1e-9*48) > 3e-3 {
+	if d := supply.number("MEAS:CURR?") - bareSupply; math.Abs(d-400e3*1e-9*48) > 1e-3 {
 		t.Errorf("the snubber draws %g A", d)
 	}
 	fixture.do("FIXT:LOAD 0;FIT bare,0,0")

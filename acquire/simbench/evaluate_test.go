@@ -67,6 +67,22 @@ func TestEvaluate(t *testing.T) {
 	}
 }
 
+// TestGlitch: a disturbance after the ring has died away is no part of it.
+func TestGlitch(t *testing.T) {
+	for seed := range uint64(50) {
+		f := drawn(seed, 0.3, func(t float64) float64 {
+			v := 48 - 48*math.Exp(-t/20e-9)*math.Cos(2*math.Pi*80e6*t)
+			if t > 170e-9 && t < 200e-9 {
+				v += 8 * math.Sin(2*math.Pi*30e6*t)
+			}
+			return v
+		}).Evaluate()
+		if math.Abs(f.RingHz/80e6-1) > 0.01 || math.Abs(f.DecayS/20e-9-1) > 0.1 {
+			t.Errorf("seed %d: %+v", seed, f)
+		}
+	}
+}
+
 // TestNoRing: noise alone, a flat line, a step and an edge that overshoots once give no ring, however the
 // noise falls; the peak and the level stand all the same.
 func TestNoRing(t *testing.T) {

@@ -10,6 +10,7 @@ import (
 	"slices"
 	"strconv"
 	"strings"
+	"sync"
 	"testing"
 )
 
@@ -136,6 +137,32 @@ func TestCaptures(t *testing.T) {
 	}
 	if slices.Equal(first, take(m, 4)) {
 		t.Error("two seeds, one record")
+	}
+}
+
+// TestModelAtOnce lets several goroutines use one model, more networks than it keeps; the race detector watches.
+func TestModelAtOnce(t *testing.T) {
+	m := newModel(t, Default())
+	var all sync.WaitGroup
+	for i := range 4 {
+		all.Go(func() {
+			for k := range cacheSize {
+				n := Network{Kind: RC, C: 1e-9, R: 5 + float64((i+k)%(cacheSize+4))}
+				c, err := m.Capture(t.Context(), n, uint64(k))
+				if err != nil {
+					t.Error(err)
+					return
+				}
+				r, err := m.Respond(t.Context(), n)
+				if f := c.Evaluate(); err != nil || math.Abs(f.PeakV-r.Peak) > 2 {
+					t.Errorf("%+v: peak read %g V, exact %g V, %v", n, f.PeakV, r.Peak, err)
+				}
+			}
+		})
+	}
+	all.Wait()
+	if len(m.cache) > cacheSize {
+		t.Errorf("%d records kept", len(m.cache))
 	}
 }
 
