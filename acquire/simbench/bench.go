@@ -23,6 +23,7 @@ type Bench struct {
 	ctx    context.Context // of everything that serves; cancelled by Close
 	cancel context.CancelFunc
 	serves sync.WaitGroup
+	ending sync.Mutex // so that nothing begins to serve once Close waits
 
 	mu       sync.Mutex // of what is below, the state of the bench
 	network  Network
@@ -74,7 +75,9 @@ func Start(ctx context.Context, cfg Config) (*Bench, error) {
 
 // Close stops serving and waits until every connection is let go. It may be called more than once.
 func (b *Bench) Close() {
+	b.ending.Lock()
 	b.cancel()
+	b.ending.Unlock()
 	b.serves.Wait()
 }
 

@@ -34,6 +34,8 @@ func (b *Bench) ServePTY(name string) (path string, err error) {
 	if !ok {
 		return "", fmt.Errorf("serve %q on a pseudo-terminal: the instruments are %v", name, Names())
 	}
+	b.ending.Lock()
+	defer b.ending.Unlock()
 	if err := b.ctx.Err(); err != nil {
 		return "", fmt.Errorf("serve the %s on a pseudo-terminal: the bench is closed: %w", name, err)
 	}
