@@ -31,12 +31,10 @@ func (lb *Logbook) Add(ctx context.Context, t snubber.Trial) (id string, err err
 	return id, nil
 }
 
-// progressEvery is how many trials lie between two calls of AddAll's progress.
-const progressEvery = 1000
-
 // AddAll logs every trial of trials in one transaction, or none: the first error of the sequence, or of a trial that
 // fails its check, takes all of them back. It holds one trial at a time in memory. progress, unless nil, is told the count
-// so far now and then. Other programs can read meanwhile, and have to wait to write.
+// so far every thousand trials. Other programs can read meanwhile, and have to wait to write; the sequence itself must not
+// write to this logbook, or it waits for itself.
 func (lb *Logbook) AddAll(ctx context.Context, trials iter.Seq2[snubber.Trial, error], progress func(n int)) (n int, err error) {
 	// Each insert is short and ctx is looked at between them; watching it inside each would double their cost.
 	unwatched := context.WithoutCancel(ctx)
@@ -54,7 +52,7 @@ func (lb *Logbook) AddAll(ctx context.Context, trials iter.Seq2[snubber.Trial, e
 			if _, err := w.add(unwatched, t); err != nil {
 				return err
 			}
-			if n++; progress != nil && n%progressEvery == 0 {
+			if n++; progress != nil && n%1000 == 0 {
 				progress(n)
 			}
 		}

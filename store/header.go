@@ -9,9 +9,9 @@ import (
 // header finds each named column, and reports every name that is unknown, missing or there twice.
 func (c *reader) header(names []string) error {
 	if len(names) == 1 {
-		for mark, what := range map[string]string{";": "semicolons", "\t": "tabs", "|": "bars"} {
-			if strings.Contains(names[0], mark) {
-				return fmt.Errorf("%sline 1: its cells seem to be separated by %s; save it with commas between the cells (and points in the numbers)", c.file, what)
+		for _, by := range []struct{ mark, name string }{{";", "semicolons"}, {"\t", "tabs"}, {"|", "bars"}} {
+			if strings.Contains(names[0], by.mark) {
+				return fmt.Errorf("%sline 1: its cells seem to be separated by %s; save it with commas between the cells and points in the numbers", c.file, by.name)
 			}
 		}
 	}
@@ -26,7 +26,7 @@ func (c *reader) header(names []string) error {
 		i := slices.IndexFunc(c.columns, func(col column) bool { return col.name == name })
 		switch {
 		case i < 0:
-			faults = append(faults, fmt.Sprintf("column %d %s is not one of the columns; did you mean %s?", at+1, quote(name), c.nearest(name)))
+			faults = append(faults, fmt.Sprintf("column %d %s is not one of the columns%s", at+1, quote(name), c.suggestion(name)))
 		case c.place[i] >= 0:
 			faults = append(faults, fmt.Sprintf("column %d %s is there twice (column %d too); keep one", at+1, quote(name), c.place[i]+1))
 		default:
@@ -52,19 +52,21 @@ func (c *reader) header(names []string) error {
 	return fmt.Errorf("%sline 1: %s\nthe columns are %s", c.file, strings.Join(faults, "\n  "), strings.Join(known, ", "))
 }
 
-// nearest is the column whose name takes the fewest changed letters to get from name.
-func (c *reader) nearest(name string) string {
-	best, least := "", 0
-	name = strings.ToLower(name)
+// suggestion names the column that takes the fewest changed letters to get from name, where these are at most half of it.
+func (c *reader) suggestion(name string) string {
+	best, least := "", (len(name)+1)/2
 	if len(name) > maxName {
-		name = name[:maxName]
+		return ""
 	}
 	for _, col := range c.columns {
-		if d := editDistance(name, col.name); best == "" || d < least {
+		if d := editDistance(strings.ToLower(name), col.name); d < least || d == least && best == "" {
 			best, least = col.name, d
 		}
 	}
-	return best
+	if best == "" {
+		return ""
+	}
+	return "; did you mean " + best + "?"
 }
 
 // editDistance counts the insertions, deletions and substitutions from a to b (V. I. Levenshtein, "Binary codes capable of

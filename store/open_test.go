@@ -9,7 +9,6 @@ import (
 	"os"
 	"path/filepath"
 	"strings"
-	"sync"
 	"testing"
 	"time"
 )
@@ -182,74 +181,4 @@ func TestSettingsOfEveryConnection(t *testing.T) {
 	for _, conn := range held {
 		conn.Close()
 	}
-}
-
-func TestOpenTogether(t *testing.T) {
-	for range 5 {
-		path := filepath.Join(t.TempDir(), "ringbook.db")
-		var all sync.WaitGroup
-		for range 6 {
-			all.Go(func() {
-				lb, err := Open(t.Context(), path)
-				if err != nil {
-					t.Error(err)
-					return
-				}
-				defer lb.Close()
-				if _, err := lb.Add(t.Context(), example()); err != nil {
-					t.Error(err)
-				}
-			})
-		}
-		all.Wait()
-		lb, err := Open(t.Context(), path)
-		if err != nil {
-			t.Fatal(err)
-		}
-		if n := len(collect(t, lb, Scope{})); n != 6 {
-			t.Errorf("%d trials, want 6", n)
-		}
-		lb.Close()
-	}
-}
-
-func TestLockedTooLong(t *testing.T) {
-	path := filepath.Join(t.TempDir(), "ringbook.db")
-	lb, err := open(t.Context(), path, 50*time.Millisecond)
-	if err != nil {
-		t.Fatal(err)
-	}
-	defer lb.Close()
-	other, err := sql.Open("sqlite", path)
-	if err != nil {
-		t.Fatal(err)
-	}
-	defer other.Close()
-	conn, err := other.Conn(t.Context())
-	if err != nil {
-		t.Fatal(err)
-	}
-	defer conn.Close()
-	if _, err := conn.ExecContext(t.Context(), "BEGIN IMMEDIATE"); err != nil {
-		t.Fatal(err)
-	}
-	if _, err := lb.Add(t.Context(), example()); !errors.Is(err, ErrBusy) || !strings.Contains(err.Error(), "another program") {
-		t.Errorf("Add while another writes: %v", err)
-	}
-	// With the whole ten seconds to wait, the end of the context ends the wait.
-	patient, err := Open(t.Context(), path)
-	if err != nil {
-		t.Fatal(err)
-	}
-	defer patient.Close()
-	ctx, cancel := context.WithTimeout(t.Context(), 50*time.Millisecond)
-	defer cancel()
-	start := time.Now()
-	if _, err := patient.Add(ctx, example()); !errors.Is(err, context.DeadlineExceeded) || time.Since(start) > 5*time.Second {
-		t.Errorf("Add with a deadline of 50 ms: %v after %v", err, time.Since(start))
-	}
-	if _, err := conn.ExecContext(t.Context(), "ROLLBACK"); err != nil {
-		t.Fatal(err)
-	}
-	mustAdd(t, patient, example())
 }

@@ -62,6 +62,7 @@ type reader struct {
 	columns []column
 	place   []int // columns[i] stands in field place[i] of a row; -1: it is not in this file
 	width   int   // fields in a row
+	line    int   // where the last row that could be read begins
 }
 
 func newReader(r io.Reader) (*reader, error) {
@@ -86,9 +87,14 @@ func newReader(r io.Reader) (*reader, error) {
 	if err == io.EOF {
 		return nil, fmt.Errorf("%sis empty; its first row must name the columns: board, revision, network and what was read", c.file)
 	}
+	var syntax *csv.ParseError
+	if errors.As(err, &syntax) {
+		return nil, c.syntax(syntax)
+	}
 	if err != nil {
 		return nil, fmt.Errorf("%sheader row: %w", c.file, err)
 	}
+	c.line = 1
 	return c, c.header(header)
 }
 
@@ -104,13 +110,14 @@ func (c *reader) row() (t snubber.Trial, faults []error, err error) {
 		case err == io.EOF:
 			return t, nil, err
 		case err != nil:
-			line, _ := c.in.FieldPos(0)
-			return t, nil, fmt.Errorf("%safter line %d: %w", c.file, line, err)
-		case empty(fields):
+			return t, nil, fmt.Errorf("%safter line %d: %w", c.file, c.line, err)
+		}
+		c.line, _ = c.in.FieldPos(0)
+		if empty(fields) {
 			continue // what spreadsheets leave below the last row
-		case len(fields) != c.width:
-			line, _ := c.in.FieldPos(0)
-			return t, []error{fmt.Errorf("%sline %d: %d cells where the header row has %d; an empty cell still needs its comma", c.file, line, len(fields), c.width)}, nil
+		}
+		if len(fields) != c.width {
+			return t, []error{fmt.Errorf("%sline %d: %d cells where the header row has %d; an empty cell still needs its comma", c.file, c.line, len(fields), c.width)}, nil
 		}
 		t, faults = c.trial(fields)
 		return t, faults, nil
@@ -145,8 +152,7 @@ func (c *reader) trial(fields []string) (t snubber.Trial, faults []error) {
 				return t, []error{c.fault(fields, c.place[i], err)}
 			}
 		}
-		line, _ := c.in.FieldPos(0)
-		return t, []error{fmt.Errorf("%sline %d (%s): %w", c.file, line, name, err)}
+		return t, []error{fmt.Errorf("%sline %d (%s): %w", c.file, c.line, name, err)}
 	}
 	return t, nil
 }
