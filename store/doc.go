@@ -1,12 +1,17 @@
 // Package store is the logbook: boards and their revisions, and every trial made on them, in one SQLite file.
 //
 // A logbook is written once. A trial, its readings, its waveforms and its strikes are rows that are added and never
-// changed or deleted; triggers in the file itself refuse it, whoever asks. A trial found to be wrong is struck: a row
-// with the reason, beside the trial, which stays readable. What Add has acknowledged is on the disk: the file is kept in
-// write-ahead-log mode with synchronous FULL, and a process killed at any moment leaves it sound.
+// changed, replaced or deleted; triggers in the file itself refuse that to any program that does not first drop them. A
+// trial found to be wrong is struck: a row with the reason, beside the trial, which stays readable. What Add has
+// acknowledged is on the disk: the file is kept in write-ahead-log mode with synchronous FULL, and a process killed at any
+// moment leaves it sound.
 //
 // It is not a database layer for other programs: it knows this one schema, and it refuses a file that is not its own
 // without touching it.
+//
+// Open makes or opens a logbook; Add logs one trial, AddAll many or none; Trials streams those in a Scope, Trial finds one
+// by its id or the end of it, Strike marks one as wrong. ReadCSV and WriteCSV carry trials in and out as CSV. What a person
+// has to know of a file that cannot be used is a Fault: the path, what is wrong, and the cure.
 //
 // # The file
 //
@@ -42,7 +47,8 @@
 //	note          whatever was noted
 //	struck        why the trial was marked as wrong; NULL while it stands
 //
-// NULL is "not read" or "not stated". For example, the stiffest ring of each board:
+// NULL is "not read" or "not stated". A trial logged without a time has that of its logging: its at is then the logged_at of
+// table trial. For example, the fastest bare ring of each revision:
 //
 //	SELECT board, revision, max(ring_hz) FROM trial_table WHERE struck IS NULL AND network = 'bare' GROUP BY 1, 2;
 package store

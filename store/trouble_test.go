@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"context"
 	"errors"
+	"math/rand/v2"
 	"os"
 	"path/filepath"
 	"strings"
@@ -70,6 +71,65 @@ func TestDamagedRows(t *testing.T) {
 	if !errors.Is(last, ErrDamaged) || !strings.Contains(last.Error(), "backup") {
 		t.Errorf("after %d trials: %v", n, last)
 	}
+}
+
+// TestFlippedBytes changes a few bytes anywhere: whatever comes back, it comes back as an error or as trials.
+func TestFlippedBytes(t *testing.T) {
+	dir := t.TempDir()
+	path := filepath.Join(dir, "ringbook.db")
+	lb, err := Open(t.Context(), path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if _, err := lb.AddAll(t.Context(), many(100), nil); err != nil {
+		t.Fatal(err)
+	}
+	if err := lb.Close(); err != nil {
+		t.Fatal(err)
+	}
+	sound, err := os.ReadFile(path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	failed := 0
+	n := rounds(t, 40)
+	for i := range n {
+		random := rand.New(rand.NewPCG(uint64(i), 1))
+		data := bytes.Clone(sound)
+		for range 1 + random.IntN(20) {
+			data[random.IntN(len(data))] ^= byte(1 + random.IntN(255))
+		}
+		flipped := filepath.Join(dir, "flipped.db")
+		if err := os.WriteFile(flipped, data, 0o644); err != nil {
+			t.Fatal(err)
+		}
+		if !usable(t.Context(), flipped) {
+			failed++
+		}
+		os.Remove(flipped + "-wal")
+		os.Remove(flipped + "-shm")
+	}
+	t.Logf("%d of %d damaged files refused something", failed, n)
+}
+
+// usable opens, reads, writes and strikes.
+func usable(ctx context.Context, path string) bool {
+	lb, err := Open(ctx, path)
+	if err != nil {
+		return false
+	}
+	defer lb.Close()
+	for _, err := range lb.Trials(ctx, Scope{IncludeStruck: true}) {
+		if err != nil {
+			return false
+		}
+	}
+	id, err := lb.Add(ctx, example())
+	if err != nil {
+		return false
+	}
+	_, err = lb.Boards(ctx)
+	return err == nil && lb.Strike(ctx, id, "damaged file") == nil
 }
 
 func TestAddAllStopsWhenAsked(t *testing.T) {
