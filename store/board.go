@@ -30,7 +30,7 @@ type Revision struct {
 // quotes both, and CorrectBoard is the cure.
 func (lb *Logbook) AddBoard(ctx context.Context, b Board) error { return lb.putBoard(ctx, b, false) }
 
-// CorrectBoard puts the rating and the note b states in the place of those on file. Trials are not touched.
+// CorrectBoard puts the rating and the notes b states in the place of those on file. Trials are not touched.
 func (lb *Logbook) CorrectBoard(ctx context.Context, b Board) error { return lb.putBoard(ctx, b, true) }
 
 // EnsureRevision puts a board and a revision of it on file, unless they are there.
@@ -68,6 +68,14 @@ func (lb *Logbook) putBoard(ctx context.Context, b Board, correct bool) error {
 			rev, err := w.revision(ctx, b.Name, r.Name)
 			if err != nil {
 				return err
+			}
+			var was sql.NullString
+			if err := w.conn.QueryRowContext(ctx, `SELECT note FROM revision WHERE id = ?`, rev).Scan(&was); err != nil {
+				return err
+			}
+			if !correct && r.Note != "" && was.Valid && was.String != r.Note {
+				return fmt.Errorf("board %s, revision %s is on file with the note %s, not %s; correct the board if that was wrong",
+					quote(b.Name), quote(r.Name), quote(was.String), quote(r.Note))
 			}
 			if _, err := w.insert(ctx, `UPDATE revision SET note = coalesce(?, note) WHERE id = ?`, orNull(r.Note), rev); err != nil {
 				return err

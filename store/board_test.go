@@ -30,6 +30,9 @@ func TestBoards(t *testing.T) {
 	if err := lb.AddBoard(t.Context(), Board{Name: "Plover", Note: "lost"}); err == nil || !strings.Contains(err.Error(), `"spare", not "lost"`) {
 		t.Errorf("another note: %v", err)
 	}
+	if err := lb.AddBoard(t.Context(), Board{Name: "Plover", Revisions: []Revision{{Name: "1", Note: "last"}}}); err == nil || !strings.Contains(err.Error(), `"first", not "last"`) {
+		t.Errorf("another note of a revision: %v", err)
+	}
 	if err := lb.CorrectBoard(t.Context(), Board{Name: "Plover", DeviceV: 120}); err != nil {
 		t.Fatal(err)
 	}
