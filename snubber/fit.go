@@ -27,10 +27,22 @@ type FitResult struct {
 	// Excitations are those of each operating point at which a peak was read.
 	Excitations []PointExcitation `json:"excitations"`
 
+	// Effects are those beyond the linear loop with ideal parts that the trials demand.
+	Effects []Effect `json:"effects"`
+
 	Line *SubstitutionLine `json:"-"` // the line of 1/(2 pi f0)^2 against added capacitance, without what was set aside; nil where none can be drawn
 
 	shared *sharedFit
 }
+
+// Effect is one effect beyond the linear loop that the trials demand, by the corrected Akaike criterion.
+type Effect struct {
+	Name string    `json:"effect"`
+	Unit string    `json:"unit"` // of its size: "s", "H", or "" for a share of the node's capacitance
+	Size *Estimate `json:"size"`
+}
+
+var effectUnit = [noEffects]string{fallTime: "s", lead: "H"}
 
 // PointExcitation is the excitation of one operating point.
 type PointExcitation struct {
@@ -114,14 +126,15 @@ func fitTrials(ctx context.Context, trials []Trial) (*FitResult, error) {
 	if err != nil {
 		return nil, err
 	}
-	out, err := m.settle(ctx, start)
+	out, effects, err := choose(ctx, obs, start)
 	if err != nil {
 		return nil, err
 	}
+	m = out.model
 	if out.fit.Status == leastsq.Stopped {
 		return nil, ctx.Err()
 	}
-	f := &FitResult{Board: standing[0].Board, Revision: standing[0].Revision, Trials: len(standing), SetAside: []SetAside{},
+	f := &FitResult{Board: standing[0].Board, Revision: standing[0].Revision, Trials: len(standing), SetAside: []SetAside{}, Effects: []Effect{}, Excitations: []PointExcitation{},
 		Chi2: out.fit.Chi2, DOF: m.readings(out.kept) - m.params, Status: out.fit.Status.String(), Warnings: append([]string{}, obs.warnings...)}
 	for _, a := range out.aside {
 		f.SetAside = append(f.SetAside, SetAside{Trial: obs.list[a.index].trial.ID, Because: out.because(a)})
@@ -129,7 +142,7 @@ func fitTrials(ctx context.Context, trials []Trial) (*FitResult, error) {
 	if err := line.enough(); err == nil && line.without(f.SetAside).fit() == nil {
 		f.Line = line
 	}
-	return f, f.describe(out)
+	return f, f.describe(out, effects)
 }
 
 // oneRevision is the trials that stand, all of one board revision.
@@ -152,7 +165,7 @@ func oneRevision(trials []Trial) ([]Trial, error) {
 }
 
 // describe gives the estimates of a fit.
-func (f *FitResult) describe(out *outcome) error {
+func (f *FitResult) describe(out *outcome, effects []effect) error {
 	m, fit := out.model, out.fit
 	if fit.Cov == nil {
 		return errors.New("the trials cannot tell inductance and capacitance apart; fit a capacitor of about three times the node's capacitance and read the ring")
@@ -196,6 +209,10 @@ func (f *FitResult) describe(out *outcome) error {
 		if f.Excitation == nil || x.Value > f.Excitation.Value {
 			f.Excitation = x
 		}
+	}
+	for _, x := range effects {
+		k := m.effect[x]
+		f.Effects = append(f.Effects, Effect{Name: x.String(), Unit: effectUnit[x], Size: e.relative(math.Exp(fit.P[k]), g(map[int]float64{k: 1}))})
 	}
 	f.shared = &sharedFit{p: fit.P, cov: fit.Cov, widen: e.widen, loss: m.loss}
 	return nil

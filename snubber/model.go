@@ -14,11 +14,13 @@ import (
 type model struct {
 	obs    *observations
 	params int
-	loss   int   // index of ln r; -1: no decay was read, and r is taken as zero
-	amps   []int // index of each operating point's I0; -1: no peak was read there
+	loss   int            // index of ln r; -1: no decay was read, and r is taken as zero
+	amps   []int          // index of each operating point's I0; -1: no peak was read there
+	effect [noEffects]int // index of the logarithm of each effect's size; -1: it is left out
+	ref    float64        // V: the highest bus, at which the node's capacitance is stated
 }
 
-func newModel(obs *observations) *model {
+func newModel(obs *observations, effects ...effect) *model {
 	m := &model{obs: obs, params: 2, loss: -1, amps: make([]int, len(obs.points))}
 	if obs.counts[decayAt] > 0 {
 		m.loss = m.params
@@ -30,6 +32,14 @@ func newModel(obs *observations) *model {
 			m.amps[i] = m.params
 			m.params++
 		}
+		m.ref = math.Max(m.ref, p.bus)
+	}
+	for e := range m.effect {
+		m.effect[e] = -1
+	}
+	for _, e := range effects {
+		m.effect[e] = m.params
+		m.params++
 	}
 	return m
 }
@@ -47,7 +57,8 @@ func (m *model) loop(p []float64) Loop {
 // values are what trial x's readings are predicted from, at parameters p and part errors d.
 func (m *model) values(x *observed, p, d []float64) circuitValues {
 	l := m.loop(p)
-	v := circuitValues{atL: l.Inductance, atC: l.Capacitance + x.trial.ProbeC, atR: l.Resistance, atRs: x.trial.Network.ESR, atE: x.bus}
+	v := circuitValues{atL: l.Inductance, atC: l.Capacitance + x.trial.ProbeC, atR: l.Resistance, atRs: x.trial.Network.ESR, atE: x.bus,
+		atProbe: x.trial.ProbeC, atRef: m.ref}
 	if k := m.amps[x.point]; k >= 0 {
 		v[atI0] = math.Abs(p[k])
 	}
@@ -59,8 +70,19 @@ func (m *model) values(x *observed, p, d []float64) circuitValues {
 		part := &m.obs.ohms[x.r]
 		v[atRs] += part.value + part.u*d[len(m.obs.caps)+x.r]
 	}
+	for e, k := range m.effect {
+		if k >= 0 {
+			v[effectAt[e]] = math.Exp(p[k])
+		}
+	}
+	if x.c < 0 {
+		v[atLead] = 0
+	}
 	return v
 }
+
+// effectAt is where each effect stands among a circuit's values.
+var effectAt = [noEffects]int{fallTime: atFall, lead: atLead, junction: atShare}
 
 // eval is the residuals of trial x, (predicted - read)/u of each reading it has, with their derivatives.
 func (m *model) eval(x *observed, p, d []float64, derivatives bool, b *leastsq.Block) {
@@ -71,7 +93,7 @@ func (m *model) eval(x *observed, p, d []float64, derivatives bool, b *leastsq.B
 		b.R = append(b.R, math.NaN()) // outside of what a circuit can be: the step is refused
 		return
 	}
-	signs, when := v.signs()
+	signs, when := v.signs(!math.IsNaN(x.value[peakAt]))
 	var slopes [3]circuitValues
 	if derivatives {
 		slopes = v.slopes(when)
@@ -96,6 +118,12 @@ func (m *model) eval(x *observed, p, d []float64, derivatives bool, b *leastsq.B
 		}
 		if i := m.amps[x.point]; i >= 0 {
 			row[i] = math.Copysign(slopes[k][atI0], p[i]) / x.u[k]
+		}
+		for e, i := range m.effect {
+			if i >= 0 {
+				at := effectAt[e]
+				row[i] = slopes[k][at] * v[at] / x.u[k]
+			}
 		}
 		var first, second float64
 		if x.c >= 0 {

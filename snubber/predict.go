@@ -3,27 +3,41 @@ package snubber
 import "math"
 
 // circuitValues is what a trial's readings are predicted from, in SI units. The order is that of its derivatives.
-type circuitValues [7]float64
+type circuitValues [12]float64
 
 const (
-	atL  = iota // H
-	atC         // F: the node's, with the probe
-	atR         // ohm: the loop's
-	atCs        // F: the network's; 0: none
-	atRs        // ohm: in series with it
-	atE         // V
-	atI0        // A
+	atL     = iota // H
+	atC            // F: the node's, with the probe
+	atR            // ohm: the loop's
+	atCs           // F: the network's; 0: none
+	atRs           // ohm: in series with it
+	atE            // V
+	atI0           // A
+	atFall         // s: the switch current's fall time; 0: it lets go at once
+	atLead         // H: in series with the network's capacitor
+	atShare        // of the node's capacitance, that falls with voltage
+	atProbe        // F: the part of atC that is the probe's
+	atRef          // V: the bus at which the node's capacitance is stated
 )
+
+// plain says that no effect beyond the linear loop is in play, so that the closed form serves.
+func (v *circuitValues) plain() bool { return v[atFall] == 0 && v[atLead] == 0 && v[atShare] == 0 }
 
 func (v *circuitValues) respond() Response {
 	return respond(Loop{v[atL], v[atC], v[atR]}, Network{C: v[atCs], R: v[atRs]}, Excitation{v[atE], v[atI0]})
 }
 
-// signs are the readings a response predicts: the ring's frequency, its decay and the peak. A network that does not
+// signs are the readings a response predicts: the ring's frequency, its decay and, where it is wanted, the peak. A network that does not
 // ring reads no frequency (0 Hz), and decays as its slowest pole does.
-func (v *circuitValues) signs() (s [3]float64, peakTime float64) {
+func (v *circuitValues) signs(wantPeak bool) (s [3]float64, peakTime float64) {
+	if !v.plain() {
+		return v.extended(wantPeak, -1)
+	}
 	r := v.respond()
 	s[ringAt], s[decayAt] = r.ringSigns()
+	if !wantPeak {
+		return s, math.Inf(1)
+	}
 	p := r.Peak()
 	s[peakAt] = p.Volts
 	return s, p.At
@@ -41,6 +55,9 @@ func (r *Response) ringSigns() (hz, decay float64) {
 // count (the envelope theorem).
 func (v *circuitValues) slopes(peakTime float64) (d [3]circuitValues) {
 	const rel = 3e-6 // balances the third derivative's part against rounding
+	if !v.plain() {
+		return v.extendedSlopes(peakTime, rel)
+	}
 	z := math.Sqrt(v[atL] / v[atC])
 	for k := atL; k <= atRs; k++ {
 		h := rel * v[k]
@@ -76,5 +93,31 @@ func (v *circuitValues) slopes(peakTime float64) (d [3]circuitValues) {
 	one[atE], one[atI0] = 1, 0
 	a = one.respond()
 	d[peakAt][atE] = a.NodeAt(peakTime)
+	return d
+}
+
+// extendedSlopes is slopes where effects are in play.
+func (v *circuitValues) extendedSlopes(peakTime, rel float64) (d [3]circuitValues) {
+	endless := math.IsInf(peakTime, 1)
+	for k := atL; k <= atShare; k++ {
+		h := rel * v[k]
+		if k == atR {
+			h = rel * math.Max(v[k], 0.01*math.Sqrt(v[atL]/v[atC]))
+		}
+		if h == 0 {
+			continue
+		}
+		low, high := *v, *v
+		low[k] -= h
+		high[k] += h
+		a, _ := low.extended(!endless, peakTime)
+		b, _ := high.extended(!endless, peakTime)
+		for q := range d {
+			d[q][k] = (b[q] - a[q]) / (2 * h)
+		}
+	}
+	if endless {
+		d[peakAt] = circuitValues{atE: 1}
+	}
 	return d
 }

@@ -210,7 +210,7 @@ func (o *outcome) because(a aside) string {
 	x := &o.model.obs.list[a.index]
 	// Predicted with the part as the others know it: one that served nowhere else is at what is printed on it.
 	v := o.model.values(x, o.fit.P, o.fit.D)
-	signs, _ := v.signs()
+	signs, _ := v.signs(!math.IsNaN(x.value[peakAt]))
 	worst, far := 0, -1.0
 	for k, s := range signs {
 		if !math.IsNaN(x.value[k]) {

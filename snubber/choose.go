@@ -1,0 +1,119 @@
+package snubber
+
+import (
+	"context"
+	"math"
+
+	"ringbook/snubber/leastsq"
+
+	"gonum.org/v1/gonum/stat/distuv"
+)
+
+// demanded is the probability of a chi-square as large as the plain model's below which the effects are tried, and worth
+// is by how much one must lower the criterion to be added.
+const (
+	demanded = 0.1
+	worth    = 2.0
+)
+
+// choose settles the plain model and, where its chi-square or a trial set aside demands it, the model with one effect
+// more at a time, as long as that lowers the corrected Akaike criterion
+//
+//	AICc = chi2 + 2 k + 2 k (k + 1)/(n - k - 1)
+//
+// of n readings and k parameters (Hurvich and Tsai, Biometrika 76, 297, 1989, from memory). A trial set aside counts as a
+// parameter for each of its readings, which is what it takes to explain it away, so that an effect that brings trials back
+// is weighed against losing them.
+func choose(ctx context.Context, obs *observations, start []float64) (*outcome, []effect, error) {
+	plain := newModel(obs)
+	best, err := plain.settle(ctx, start)
+	if err != nil {
+		return nil, nil, err
+	}
+	var used []effect
+	for len(used) < int(noEffects) && best.wanting() {
+		var better *outcome
+		var with effect
+		for e := range noEffects {
+			if contains(used, e) || !obs.shows(e) {
+				continue
+			}
+			m := newModel(obs, append(append([]effect{}, used...), e)...)
+			out, err := m.settle(ctx, append(append([]float64{}, best.fit.P...), m.startOf(e, best.fit.P)))
+			if err != nil {
+				return nil, nil, err
+			}
+			if out.fit.Cov == nil || out.fit.Status != leastsq.Converged {
+				continue
+			}
+			limit := best.criterion() - worth
+			if better != nil {
+				limit = better.criterion()
+			}
+			if out.criterion() < limit {
+				better, with = out, e
+			}
+		}
+		if better == nil {
+			break
+		}
+		best, used = better, append(used, with)
+	}
+	return best, used, nil
+}
+
+// wanting says whether the data demand more than the model has.
+func (o *outcome) wanting() bool {
+	if len(o.aside) > 0 {
+		return true
+	}
+	dof := o.model.readings(o.kept) - o.model.params
+	return dof > 0 && (distuv.ChiSquared{K: float64(dof)}).Survival(o.fit.Chi2) < demanded
+}
+
+func (o *outcome) criterion() float64 {
+	k := float64(o.model.params)
+	n := float64(o.model.readings(o.kept))
+	for _, a := range o.aside {
+		r := float64(o.model.obs.list[a.index].readings())
+		k += r
+		n += r
+	}
+	if n-k-1 <= 0 {
+		return math.Inf(1)
+	}
+	return o.fit.Chi2 + 2*k + 2*k*(k+1)/(n-k-1)
+}
+
+// shows says whether the readings can show an effect at all.
+func (o *observations) shows(e effect) bool {
+	switch e {
+	case fallTime:
+		return o.counts[peakAt] > 0
+	case lead:
+		return len(o.caps) > 0
+	default:
+		return o.points[0].bus > 0
+	}
+}
+
+// startOf is the logarithm of the size an effect starts with.
+func (m *model) startOf(e effect, p []float64) float64 {
+	switch e {
+	case fallTime: // s: a part of the bare ring's period
+		return p[0] + math.Log(2*math.Pi*0.1)
+	case lead: // H: a part of the loop's
+		return p[0] + p[1] + math.Log(0.03)
+	default: // share
+		return math.Log(0.2)
+	}
+}
+
+func contains(list []effect, e effect) bool {
+	for _, x := range list {
+		if x == e {
+			return true
+		}
+	}
+	return false
+}
