@@ -97,6 +97,7 @@ func helpCommand() *cobra.Command {
 			if len(rest) > 0 {
 				return knownCommand(found, rest)
 			}
+			found.InitDefaultHelpFlag()
 			return found.Help()
 		},
 	}

@@ -18,6 +18,8 @@ import (
 	"os/signal"
 	"strings"
 	"syscall"
+
+	"ringbook/store"
 )
 
 func main() {
@@ -60,8 +62,12 @@ func exitCode(err error, stderr io.Writer) int {
 		fmt.Fprintln(stderr, "ringbook: interrupted; what was logged before stands")
 		return 1
 	default:
-		// A list of what is wrong stands below its first line, set in.
-		fmt.Fprintf(stderr, "ringbook: %s\n", strings.ReplaceAll(err.Error(), "\n", "\n  "))
+		between := "; " // an error is one line
+		var rows *store.BadRows
+		if errors.As(err, &rows) {
+			between = "\n  " // but each bad row of a file has its own
+		}
+		fmt.Fprintf(stderr, "ringbook: %s\n", strings.ReplaceAll(err.Error(), "\n", between))
 		return 1
 	}
 }

@@ -74,7 +74,7 @@ func revisions(ctx context.Context, lb *store.Logbook, s store.Scope) ([]store.R
 	if err != nil || len(revs) > 0 {
 		return revs, err
 	}
-	all, err := lb.Revisions(ctx, store.Scope{})
+	all, err := lb.Revisions(ctx, store.Scope{IncludeStruck: true})
 	if err != nil {
 		return nil, err
 	}
@@ -91,7 +91,10 @@ func revisions(ctx context.Context, lb *store.Logbook, s store.Scope) ([]store.R
 	if !s.Since.IsZero() || !s.Until.IsZero() {
 		asked += " in that time"
 	}
-	return nil, fmt.Errorf("logbook %s holds no trial%s that stands; it has trials of %s", lb.Path(), asked, some(all))
+	if !s.IncludeStruck {
+		asked += " that stands"
+	}
+	return nil, fmt.Errorf("logbook %s holds no trial%s; it has trials of %s", lb.Path(), asked, some(all))
 }
 
 // some names a few board revisions, and says how many more there are.

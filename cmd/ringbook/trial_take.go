@@ -1,6 +1,8 @@
 package main
 
 import (
+	"fmt"
+
 	"ringbook/acquire"
 	"ringbook/recipes"
 	"ringbook/recipes/page"
@@ -38,7 +40,7 @@ Fit the network with the supply off and the bus discharged.`,
 			defer closing(lb, &err)
 			station, err := acquire.Open(ctx, rig)
 			if err != nil {
-				return err
+				return unlogged(once(err))
 			}
 			defer func() {
 				if e := station.Close(); e != nil && err == nil {
@@ -47,11 +49,11 @@ Fit the network with the supply off and the bus discharged.`,
 			}()
 			t, warnings, err := a.take(ctx, station, t)
 			if err != nil {
-				return err
+				return unlogged(err)
 			}
 			id, err := lb.Add(ctx, t)
 			if err != nil {
-				return err
+				return unlogged(err)
 			}
 			t.ID = id
 			if a.json {
@@ -71,3 +73,5 @@ Fit the network with the supply off and the bus discharged.`,
 	cmd.Flags().StringVar(&rigFile, "rig", "rig.toml", "`FILE` with the instruments and what to ask of them")
 	return cmd
 }
+
+func unlogged(err error) error { return fmt.Errorf("trial take: nothing was logged: %w", err) }
