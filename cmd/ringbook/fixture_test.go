@@ -5,6 +5,7 @@ import (
 	"context"
 	"database/sql"
 	"fmt"
+	"io"
 	"math/rand/v2"
 	"net"
 	"os"
@@ -42,8 +43,8 @@ var faults = map[string]string{
 	"dumb":      "", // not even *IDN?
 }
 
-// instrument FAULT serves an instrument on a port of the loopback interface and writes rig.toml for it. With "refused"
-// nothing listens at the address.
+// instrument FAULT serves an instrument on a port of the loopback interface and writes rig.toml for it; what it is asked is in
+// the file asked. With "refused" nothing listens at the address.
 func instrument(ts *testscript.TestScript, neg bool, args []string) {
 	if neg || len(args) != 1 {
 		ts.Fatalf("usage: instrument fault")
@@ -60,21 +61,24 @@ func instrument(ts *testscript.TestScript, neg bool, args []string) {
 		return
 	}
 	ts.Defer(func() { ln.Close() })
+	asked, err := os.Create(ts.MkAbs("asked"))
+	ts.Check(err)
+	ts.Defer(func() { asked.Close() })
 	go func() {
 		for {
 			conn, err := ln.Accept()
 			if err != nil {
 				return
 			}
-			go converse(conn, args[0], answer)
+			go converse(io.TeeReader(conn, asked), conn, args[0], answer)
 		}
 	}()
 }
 
-func converse(conn net.Conn, fault, answer string) {
+func converse(in io.Reader, conn net.Conn, fault, answer string) {
 	defer conn.Close()
 	queue := `0,"No error"`
-	for lines := bufio.NewScanner(conn); lines.Scan(); {
+	for lines := bufio.NewScanner(in); lines.Scan(); {
 		reply := ""
 		switch line := strings.ToUpper(strings.TrimSpace(lines.Text())); {
 		case fault == "dumb":
