@@ -35,6 +35,14 @@ limits the nearest miss is shown and the exit code is 3.`,
 				}
 				return usagef("--network %s: this version recommends RC networks only; leave the flag out", network)
 			}
+			for _, tol := range []struct {
+				flag  string
+				value quantity.Fraction
+			}{{"c-tol", cTol}, {"r-tol", rTol}} {
+				if tol.value >= 1 {
+					return usagef("--%s %v: a part of that tolerance may be nothing at all; write for example 5%%", tol.flag, tol.value)
+				}
+			}
 			src, err := a.source(ctx, &scope)
 			if err != nil {
 				return err

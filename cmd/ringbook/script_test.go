@@ -24,7 +24,7 @@ func scripts(t *testing.T, dir string) testscript.Params {
 	return testscript.Params{
 		Dir:                 dir,
 		RequireUniqueNames:  true,
-		Deadline:            time.Now().Add(2 * time.Minute), // a program that hangs is stopped, with its stack
+		Deadline:            time.Now().Add(5 * time.Minute), // a program that hangs is stopped, with its stack
 		RequireExplicitExec: true,
 		Setup: func(env *testscript.Env) error {
 			env.Setenv("TZ", "UTC") // --since and --until read days where the reader is
