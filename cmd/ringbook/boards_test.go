@@ -34,8 +34,7 @@ func madeUp(n int, rng *rand.Rand) []truth {
 
 // ring is the closed form of a series circuit L, r, C with the switch across C: at its opening the current is I0 and
 // the node at zero. It gives the damped frequency, the envelope's 1/e time and the highest voltage with cx added to C.
-// At the highest voltage the current is nothing: tan(wd t) = wd I0 / (a I0 + ...), found here by stepping instead, so
-// that nothing is shared with the program's own algebra.
+// The peak is found by stepping through the first period, so that nothing is shared with the program's own algebra.
 func (b truth) ring(cx float64) (hz, decay, peak float64) {
 	c := b.c + cx
 	a := b.r / (2 * b.l)

@@ -23,7 +23,7 @@ reads standard input. The header names the columns, in any order:
 
   board revision network c c_tol r r_tol probe_c bus_v current_a switching_hz
   ring_hz ring_hz_u decay_s decay_s_u peak_v peak_v_u at part note
-  (and, where known: esr measured_c measured_c_u session)
+  (and, where known: esr measured_c measured_c_u supply_a supply_a_u temp_c temp_c_u session struck)
 
 Values are SI numbers or engineering notation (470p, 2n2, 1.8MHz, 5%); an empty cell was not read.`,
 		Example: `  ringbook trial import trials.csv
