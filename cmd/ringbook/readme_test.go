@@ -132,7 +132,7 @@ func shell(t *testing.T, dir string, all []step) []string {
 	script.WriteString("kill $behind\nwait\n")
 	cmd := exec.CommandContext(t.Context(), "sh", "-c", script.String())
 	cmd.Dir = dir
-	cmd.Env = append(os.Environ(), "COLUMNS=", "RINGBOOK_LOGBOOK=")
+	cmd.Env = append(os.Environ(), "COLUMNS=", "RINGBOOK_LOGBOOK=", "GORACE="+raceAtOnce)
 	var out bytes.Buffer
 	cmd.Stdout, cmd.Stderr = &out, &out
 	if err := cmd.Run(); err != nil {
