@@ -13,7 +13,7 @@ import (
 // is by how much one must lower the criterion to be added.
 const (
 	demanded = 0.1
-	worth    = 2.0
+	worth    = 0.0
 )
 
 // choose settles the plain model and, where its chi-square or a trial set aside demands it, the model with one effect
@@ -39,7 +39,13 @@ func choose(ctx context.Context, obs *observations, start []float64) (*outcome, 
 				continue
 			}
 			m := newModel(obs, append(append([]effect{}, used...), e)...)
-			out, err := m.settle(ctx, append(append([]float64{}, best.fit.P...), m.startOf(e, best.fit.P)))
+			from := append(append([]float64{}, best.fit.P...), m.startOf(e, best.fit.P))
+			if promising, err := m.promises(ctx, best, from); err != nil {
+				return nil, nil, err
+			} else if !promising {
+				continue
+			}
+			out, err := m.settle(ctx, from)
 			if err != nil {
 				return nil, nil, err
 			}
@@ -60,6 +66,28 @@ func choose(ctx context.Context, obs *observations, start []float64) (*outcome, 
 		best, used = better, append(used, with)
 	}
 	return best, used, nil
+}
+
+// promises says whether the model may do better than the best so far: with the same trials kept, or with all of them.
+func (m *model) promises(ctx context.Context, best *outcome, start []float64) (bool, error) {
+	all := &outcome{model: m, kept: append([]int{}, best.kept...)}
+	for _, a := range best.aside {
+		all.kept = append(all.kept, a.index)
+	}
+	for _, o := range []*outcome{{model: m, kept: best.kept, aside: best.aside}, all} {
+		fit, err := m.fit(ctx, o.kept, start, nil)
+		if err != nil {
+			return false, err
+		}
+		o.fit = fit
+		if fit.Cov != nil && o.criterion() < best.criterion()-worth {
+			return true, nil
+		}
+		if len(best.aside) == 0 {
+			break
+		}
+	}
+	return false, nil
 }
 
 // wanting says whether the data demand more than the model has.

@@ -61,13 +61,26 @@ func (v *circuitValues) extended(wantPeak bool, fixed float64) (s [3]float64, wh
 		ring[atC] = own*junctionFactor(v[atShare], v[atE], ringPart*whole, v[atRef]) + v[atProbe]
 		top[atC] = own*junctionFactor(v[atShare], v[atE], whole, v[atRef]) + v[atProbe]
 	}
+	if v[atLead] == 0 {
+		r := ring.respond()
+		s[ringAt], s[decayAt] = r.ringSigns()
+		if !wantPeak {
+			return s, math.Inf(1)
+		}
+		if fixed >= 0 {
+			s[peakAt] = newFalling(&top).at(fixed)
+			return s, fixed
+		}
+		when, s[peakAt] = newFalling(&top).peak()
+		return s, when
+	}
 	poles := ring.poleSum()
 	s[ringAt], s[decayAt] = poles.ringSigns()
-	if top != ring {
-		poles = top.poleSum()
-	}
 	if !wantPeak {
 		return s, math.Inf(1)
+	}
+	if top != ring {
+		poles = top.poleSum()
 	}
 	if fixed >= 0 {
 		s[peakAt] = poles.at(fixed)
@@ -96,7 +109,7 @@ type poleSum struct {
 	bus, amps  float64
 	fall       float64 // s
 	ringing    int     // index of the pole that rings; -1: none
-	slow, fast float64 // 1/s: decay of the slowest pole; rad/s: size of the fastest that rings
+	slow, fast float64 // 1/s: decay of the slowest pole, and size of the fastest
 }
 
 func (v *circuitValues) poleSum() *poleSum {
@@ -136,8 +149,8 @@ func (v *circuitValues) poleSum() *poleSum {
 	p.slow = math.Inf(1)
 	for k := range p.n {
 		p.slow = math.Min(p.slow, -real(p.s[k]))
+		p.fast = math.Max(p.fast, cmplx.Abs(p.s[k]))
 		if im := imag(p.s[k]); im > 1e-9*w {
-			p.fast = math.Max(p.fast, im)
 			// The ring is the slower of two pairs in frequency: the other is the leads'.
 			if p.ringing < 0 || im < imag(p.s[p.ringing]) {
 				p.ringing = k
@@ -194,86 +207,56 @@ func (p *poleSum) ringSigns() (hz, decay float64) {
 	return imag(s) / (2 * math.Pi), -1 / real(s)
 }
 
-// at is the node's voltage at time t, V; slope is its derivative, V/s.
-func (p *poleSum) at(t float64) float64 { v, _, _ := p.value(t); return v }
-
-func (p *poleSum) value(t float64) (v, slope, bend float64) {
-	v = p.bus
+// at is the node's voltage at time t, V.
+func (p *poleSum) at(t float64) float64 {
+	v := p.bus
 	for k := range p.n {
 		s := p.s[k]
-		a := complex(p.bus, 0) * p.e[k]
 		ex := cmplx.Exp(s * complex(t, 0))
-		term := a * ex
-		v, slope, bend = v+real(term), slope+real(s*term), bend+real(s*s*term)
+		v += real(complex(p.bus, 0) * p.e[k] * ex)
 		i := complex(p.amps, 0) * p.i[k]
 		if p.fall == 0 {
-			term = i * ex
-			v, slope, bend = v+real(term), slope+real(s*term), bend+real(s*s*term)
-			continue
-		}
-		before := complex(1, 0) // exp(s (t - fall)), 1 while the current still falls
-		steady := complex(1, 0)
-		if t > p.fall {
-			before = cmplx.Exp(s * complex(t-p.fall, 0))
-			steady = before
-		}
-		i /= complex(p.fall, 0)
-		v += real(i / s * (ex - before))
-		if t > p.fall {
-			slope += real(i * (ex - steady))
-			bend += real(i * s * (ex - steady))
+			v += real(i * ex)
 		} else {
-			slope += real(i * ex)
-			bend += real(i * s * ex)
+			v += real(i / (s * complex(p.fall, 0)) * (ex - p.before(s, t)))
 		}
 	}
-	return v, slope, bend
+	return v
 }
 
-// peak is the highest voltage: the first stretch of the slowest ring is walked in steps a fraction of the fastest, and
-// the highest of the tops found is refined by Newton's steps.
+// before is exp(s (t - fall)), and 1 while the current still falls.
+func (p *poleSum) before(s complex128, t float64) complex128 {
+	if t <= p.fall {
+		return 1
+	}
+	return cmplx.Exp(s * complex(t-p.fall, 0))
+}
+
+// slope is the derivative of the node's voltage at time t, V/s.
+func (p *poleSum) slope(t float64) float64 {
+	sum := 0.0
+	for k := range p.n {
+		s := p.s[k]
+		ex := cmplx.Exp(s * complex(t, 0))
+		sum += real(s * complex(p.bus, 0) * p.e[k] * ex)
+		i := complex(p.amps, 0) * p.i[k]
+		switch {
+		case p.fall == 0:
+			sum += real(i * s * ex)
+		case t > p.fall:
+			sum += real(i * (ex - p.before(s, t)) / complex(p.fall, 0))
+		default:
+			sum += real(i * ex / complex(p.fall, 0))
+		}
+	}
+	return sum
+}
+
+// peak is the highest voltage, walked to as highest has it.
 func (p *poleSum) peak() (when, volts float64) {
-	when, volts = math.Inf(1), p.bus
 	end := p.fall + 60/p.slow
 	if p.ringing >= 0 {
 		end = math.Min(end, p.fall+2*math.Pi/imag(p.s[p.ringing])*1.5)
 	}
-	if !(end > 0) || math.IsInf(end, 1) {
-		return when, volts // the poles are not those of a circuit; whoever asked will refuse the rest too
-	}
-	step := math.Min(2*math.Pi/math.Max(p.fast, p.slow)/16, end/32)
-	step = math.Max(step, end/4000)
-	_, before, _ := p.value(0)
-	for t := step; t <= end; t += step {
-		_, slope, _ := p.value(t)
-		if slope <= 0 && before > 0 {
-			if top, high := p.top(t-step, t); high > volts {
-				when, volts = top, high
-			}
-		}
-		before = slope
-	}
-	return when, volts
-}
-
-func (p *poleSum) top(lo, hi float64) (t, v float64) {
-	t = (lo + hi) / 2
-	for range 60 {
-		var slope, bend float64
-		v, slope, bend = p.value(t)
-		if slope > 0 {
-			lo = t
-		} else {
-			hi = t
-		}
-		next := t - slope/bend
-		if !(next > lo && next < hi) {
-			next = (lo + hi) / 2
-		}
-		if math.Abs(next-t) <= 1e-13*t {
-			break
-		}
-		t = next
-	}
-	return t, v
+	return highest(p.bus, end, 2*math.Pi/p.fast/16, p.slope, p.at)
 }

@@ -1,5 +1,7 @@
 package snubber
 
+import "math"
+
 // Estimate is a quantity as the fit or the recommendation knows it. A nil *Estimate is a quantity the
 // trials cannot tell; it is null in JSON.
 type Estimate struct {
@@ -15,4 +17,13 @@ const normal95 = 1.959963984540054
 // estimate is a value with its standard uncertainty and the interval of coverage factor k around it.
 func estimate(value, u, k float64) *Estimate {
 	return &Estimate{Value: value, U: u, Low: value - k*u, High: value + k*u}
+}
+
+// allow widens the estimate of a positive quantity by one more independent component of its uncertainty, relative (GUM
+// 5.1.2), keeping its coverage factor.
+func (e *Estimate) allow(rel float64) {
+	f := math.Hypot(e.U, rel*e.Value) / math.Max(e.U, 1e-300)
+	e.Low = e.Value * math.Pow(e.Low/e.Value, f)
+	e.High = e.Value * math.Pow(e.High/e.Value, f)
+	e.U *= f
 }

@@ -164,6 +164,12 @@ func oneRevision(trials []Trial) ([]Trial, error) {
 	return standing, nil
 }
 
+// atRest is the relative standard uncertainty with which the capacitance that a ring sees, averaged over its swing, is that
+// of the node at rest at the bus. With up to half of it a junction's the two differ by up to some one percent, more or less
+// the same in every trial, so that trials at one operating point do not show it. Derived from junctionFactor; it counts where
+// the trials state a bus, so that the swing is known to be of its size.
+const atRest = 0.005
+
 // describe gives the estimates of a fit.
 func (f *FitResult) describe(out *outcome, effects []effect) error {
 	m, fit := out.model, out.fit
@@ -192,6 +198,11 @@ func (f *FitResult) describe(out *outcome, effects []effect) error {
 	f.Loop.Capacitance = e.relative(l.Capacitance, g(map[int]float64{0: 1, 1: -1}))
 	f.Loop.Impedance = e.relative(l.Impedance(), g(map[int]float64{1: 1}))
 	f.Loop.RingHz = e.relative(l.NaturalHz(), g(map[int]float64{0: -1}))
+	if m.ref > 0 && m.effect[junction] < 0 {
+		f.Loop.Capacitance.allow(atRest)
+		f.Loop.Impedance.allow(atRest / 2)
+		f.Loop.RingHz.allow(atRest / 2)
+	}
 	if m.loss >= 0 {
 		if r := e.relative(l.Resistance, g(map[int]float64{m.loss: 1})); r.U <= r.Value {
 			f.Loop.Resistance = r

@@ -143,8 +143,11 @@ func (m *model) fit(ctx context.Context, kept []int, start []float64, loss least
 		Eval: func(i int, p, d []float64, derivatives bool, b *leastsq.Block) {
 			m.eval(&m.obs.list[kept[i]], p, d, derivatives, b)
 		},
-	}, leastsq.Options{Loss: loss})
+	}, leastsq.Options{Loss: loss, MaxIterations: mostIterations})
 }
+
+// mostIterations ends a fit that wanders because the data do not hold an effect; a fit that converges takes some ten.
+const mostIterations = 40
 
 // readings counts the readings of the trials that kept lists.
 func (m *model) readings(kept []int) int {

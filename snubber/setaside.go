@@ -14,6 +14,14 @@ import (
 // falseAlarm is the probability with which a board whose trials are all sound loses one of them.
 const falseAlarm = 0.01
 
+// material is how far, relatively, a reading must lie from what the other trials predict for its trial to be set aside:
+// of the ring's frequency, the decay and the peak. A mislabelled capacitor or a misread frequency is farther off; what is
+// nearer may be the linear loop's own want of truth, and widens the intervals instead.
+var material = [3]float64{ringAt: 0.015, decayAt: 0.2, peakAt: 0.06}
+
+// materialAlone is the same for the peak of a trial that did not ring, which has nothing else to show a wrong part by.
+const materialAlone = 0.015
+
 // exactTrials is up to how many trials each is tested by a fit without it; beyond, by the linearised fit.
 const exactTrials = 25
 
@@ -31,6 +39,16 @@ type aside struct {
 	index  int
 	fall   float64
 	chance float64
+	part   bool // its capacitor lies outside its tolerance
+}
+
+// weight is how much better the others agree without the trial. A wrong capacitor is the commoner mistake than a wrong
+// reading of everything: ten to one, where both explain as much (common practice has no figure).
+func (a *aside) weight() float64 {
+	if a.part {
+		return a.fall + 2*math.Ln10
+	}
+	return a.fall
 }
 
 // settle fits, and sets aside what does not belong.
@@ -39,7 +57,7 @@ type aside struct {
 // trial is left out in turn: what chi-square falls by is, for a sound trial, itself distributed as chi-square with as many
 // degrees of freedom as the trial has readings (the likelihood-ratio test of a shift of its mean; Cook and Weisberg,
 // Residuals and Influence in Regression, 1982, section 2.2.2, from memory). The trial that stands farthest goes
-// where that is less likely than falseAlarm over the number of trials (Bonferroni); where the others scatter more than they
+// where it is materially off and that is less likely than falseAlarm over the number of trials (Bonferroni); where the others scatter more than they
 // state, the test is the F of fall and scatter instead. At most a third go. One set aside comes back when the others
 // later agree with it.
 func (m *model) settle(ctx context.Context, start []float64) (*outcome, error) {
@@ -88,24 +106,27 @@ func (o *outcome) worst(ctx context.Context) (*aside, error) {
 	if (distuv.ChiSquared{K: 1}).Survival(o.fit.Chi2) > falseAlarm/float64(len(o.kept)) {
 		return nil, nil
 	}
-	test := o.without
-	if len(o.kept) > exactTrials {
-		test = o.linearised()
-	}
+	test := o.test()
 	var worst *aside
 	for _, i := range o.kept {
 		a, err := test(ctx, i)
 		if err != nil {
 			return nil, err
 		}
-		if a != nil && (worst == nil || a.chance < worst.chance || a.chance == worst.chance && a.fall > worst.fall) {
+		// Of those that no chance explains, the one without which the others agree best.
+		if a != nil && a.chance <= falseAlarm && (worst == nil || a.weight() > worst.weight()) {
 			worst = a
 		}
 	}
-	if worst == nil || worst.chance > falseAlarm {
-		return nil, nil
-	}
 	return worst, nil
+}
+
+// test is how a trial is tested: exactly where they are few.
+func (o *outcome) test() func(context.Context, int) (*aside, error) {
+	if len(o.kept) > exactTrials {
+		return o.linearised()
+	}
+	return o.without
 }
 
 // without tests trial i by a fit without it; nil where the others cannot be fitted.
@@ -121,7 +142,75 @@ func (o *outcome) without(ctx context.Context, i int) (*aside, error) {
 	if fit.Cov == nil {
 		return nil, nil
 	}
-	return o.judge(i, o.fit.Chi2-fit.Chi2, fit.Chi2, o.model.readings(kept)-o.model.params), nil
+	others := &outcome{model: o.model, fit: fit, kept: kept}
+	if !others.far(i) {
+		return nil, nil
+	}
+	a := o.judge(i, o.fit.Chi2-fit.Chi2, fit.Chi2, o.model.readings(kept)-o.model.params)
+	// Two tests, each of half the allowance.
+	wrong := others.mislabelled(i) * float64(len(o.kept))
+	a.part = 2*wrong <= falseAlarm
+	a.chance = math.Min(1, 2*math.Min(a.chance, wrong))
+	return a, nil
+}
+
+// mislabelled is the probability that the capacitor of trial i is within its tolerance, by the ring (or else the peak) the
+// trial read, as the fit of the other trials predicts it; 1 where the part served in those too, or is not known by a bound.
+// The least squares take a tolerance for a normal error, which may lie anywhere; this test knows that it ends.
+func (o *outcome) mislabelled(i int) float64 {
+	x := &o.model.obs.list[i]
+	if x.c < 0 || !o.model.obs.caps[x.c].bound || o.model.obs.caps[x.c].uses > 1 || o.fit.Cov == nil {
+		return 1
+	}
+	k := ringAt
+	if math.IsNaN(x.value[ringAt]) {
+		if k = peakAt; math.IsNaN(x.value[peakAt]) {
+			return 1
+		}
+	}
+	var b leastsq.Block
+	o.model.eval(x, o.fit.P, o.fit.D, true, &b)
+	row := 0
+	if k == peakAt {
+		row = len(b.R) - 1
+	}
+	// In units of the reading's uncertainty and of the part's: the part must be off by e/slope to explain the reading.
+	n := o.model.params
+	v := mat.NewVecDense(n, b.P[row*n:(row+1)*n])
+	u := math.Sqrt(1 + mat.Inner(v, o.fit.Cov, v))
+	slope := math.Abs(b.D[0][row])
+	beyond := math.Abs(b.R[row]) - math.Sqrt(3)*slope
+	dof := o.model.readings(o.kept) - n
+	if scatter := o.scatter(); scatter > 1 {
+		return 2 * distuv.StudentsT{Sigma: 1, Nu: float64(dof)}.Survival(beyond/(u*scatter))
+	}
+	return 2 * distuv.UnitNormal.Survival(beyond/u)
+}
+
+// far says whether a reading of trial i is materially off what the fit predicts.
+func (o *outcome) far(i int) bool {
+	x := &o.model.obs.list[i]
+	v := o.model.values(x, o.fit.P, o.fit.D)
+	signs, _ := v.signs(!math.IsNaN(x.value[peakAt]))
+	for k, s := range signs {
+		allowed := material[k]
+		if k == peakAt && math.IsNaN(x.value[ringAt]) {
+			allowed = materialAlone
+		}
+		if math.Abs(s-x.value[k]) > allowed*x.value[k] {
+			return true
+		}
+	}
+	return false
+}
+
+// scatter is how many times more than they state the trials kept scatter; 1 where that may be chance.
+func (o *outcome) scatter() float64 {
+	dof := float64(o.model.readings(o.kept) - o.model.params)
+	if dof <= 0 || (distuv.ChiSquared{K: dof}).Survival(o.fit.Chi2) >= 0.05 {
+		return 1
+	}
+	return math.Sqrt(o.fit.Chi2 / dof)
 }
 
 // judge gives the probability, among all trials kept, of a fall of chi2 as large by chance, when trial i goes and the
@@ -129,7 +218,7 @@ func (o *outcome) without(ctx context.Context, i int) (*aside, error) {
 func (o *outcome) judge(i int, fall, chi2 float64, dof int) *aside {
 	k := float64(o.model.obs.list[i].readings())
 	chance := distuv.ChiSquared{K: k}.Survival(math.Max(fall, 0))
-	if dof > 0 && (distuv.ChiSquared{K: float64(dof)}).Survival(chi2) < 0.05 {
+	if dof > 0 && (distuv.ChiSquared{K: float64(dof)}).Survival(chi2) < 0.05 { // as scatter has it
 		chance = distuv.F{D1: k, D2: float64(dof)}.Survival(math.Max(fall, 0) / k / (chi2 / float64(dof)))
 	}
 	return &aside{index: i, fall: fall, chance: math.Min(1, chance*float64(len(o.kept)))}
@@ -180,6 +269,9 @@ func (o *outcome) linearised() func(context.Context, int) (*aside, error) {
 			return nil, nil // the others say nothing of this trial
 		}
 		fall := mat.Dot(e, &y)
+		if !o.far(i) {
+			return nil, nil
+		}
 		return o.judge(i, fall, math.Max(o.fit.Chi2-fall, 0), dof-k), nil
 	}
 }
@@ -194,8 +286,11 @@ func (o *outcome) readmit(ctx context.Context) error {
 			return err
 		}
 		back := &outcome{model: o.model, fit: fit, kept: kept}
-		again := back.judge(a.index, fit.Chi2-o.fit.Chi2, o.fit.Chi2, o.model.readings(o.kept)-o.model.params)
-		if again.chance > falseAlarm {
+		again, err := back.test()(ctx, a.index)
+		if err != nil {
+			return err
+		}
+		if again == nil || again.chance > falseAlarm {
 			o.fit, o.kept = fit, kept
 			o.aside = append(o.aside[:k], o.aside[k+1:]...)
 		} else {

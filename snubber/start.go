@@ -2,7 +2,6 @@ package snubber
 
 import (
 	"errors"
-	"fmt"
 	"math"
 	"sort"
 
@@ -144,13 +143,4 @@ func (m *model) scan(line *SubstitutionLine, trials []Trial) (Loop, bool) {
 // nothingToFit says what is missing where no trial gave a reading that the fit can use.
 func nothingToFit() error {
 	return errors.New("no trial in scope has a reading of ring_hz, decay_s or peak_v that the fit can use; take at least one bare trial and one with a known capacitor")
-}
-
-// describeTrial names a trial in a sentence: its identity's end and what it fitted.
-func describeTrial(t *Trial) string {
-	id := t.ID
-	if len(id) > 8 {
-		id = id[len(id)-8:]
-	}
-	return fmt.Sprintf("%s (%s)", id, t.Network.Kind)
 }
