@@ -13,7 +13,7 @@ import (
 // is by how much one must lower the criterion to be added.
 const (
 	demanded = 0.1
-	worth    = 0.0
+	worth    = 0
 )
 
 // choose settles the plain model and, where its chi-square or a trial set aside demands it, the model with one effect
@@ -68,19 +68,34 @@ func choose(ctx context.Context, obs *observations, start []float64) (*outcome, 
 	return best, used, nil
 }
 
-// promises says whether the model may do better than the best so far: with the same trials kept, or with all of them.
+// screened is on how many trials at most an effect is tried before it is fitted to all of them.
+const screened = 60
+
+// promises says whether the model may do better than the best so far: with the trials it kept, or with those it set aside
+// as well.
 func (m *model) promises(ctx context.Context, best *outcome, start []float64) (bool, error) {
-	all := &outcome{model: m, kept: append([]int{}, best.kept...)}
-	for _, a := range best.aside {
-		all.kept = append(all.kept, a.index)
+	without := &outcome{model: m, kept: thin(best.kept, screened), aside: best.aside}
+	all := &outcome{model: m, kept: without.kept}
+	for k, a := range best.aside {
+		if k < screened/3 {
+			all.kept = append(append([]int{}, all.kept...), a.index)
+		}
 	}
-	for _, o := range []*outcome{{model: m, kept: best.kept, aside: best.aside}, all} {
+	plain := &outcome{model: best.model, kept: without.kept, aside: best.aside, fit: best.fit}
+	if len(without.kept) < len(best.kept) {
+		fit, err := best.model.fit(ctx, plain.kept, best.fit.P, nil)
+		if err != nil {
+			return false, err
+		}
+		plain.fit = fit
+	}
+	for _, o := range []*outcome{without, all} {
 		fit, err := m.fit(ctx, o.kept, start, nil)
 		if err != nil {
 			return false, err
 		}
 		o.fit = fit
-		if fit.Cov != nil && o.criterion() < best.criterion()-worth {
+		if fit.Cov != nil && o.criterion() < plain.criterion()-worth {
 			return true, nil
 		}
 		if len(best.aside) == 0 {
@@ -88,6 +103,18 @@ func (m *model) promises(ctx context.Context, best *outcome, start []float64) (b
 		}
 	}
 	return false, nil
+}
+
+// thin is at most n of the list, evenly spread.
+func thin(list []int, n int) []int {
+	if len(list) <= n {
+		return list
+	}
+	out := make([]int, n)
+	for k := range out {
+		out[k] = list[k*(len(list)-1)/(n-1)]
+	}
+	return out
 }
 
 // wanting says whether the data demand more than the model has.

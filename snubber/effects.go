@@ -96,88 +96,113 @@ func (v *circuitValues) swing() float64 {
 	return math.Hypot(v[atE], v[atI0]*math.Sqrt(v[atL]/(v[atC]+v[atCs])))
 }
 
-// poleSum is a response as a sum over its poles: the node's voltage after a step of the bus and after a step of the
-// current,
+// poleSum is a response as a sum over its poles,
 //
-//	E (1 + sum e exp(s t)) + I0 sum i exp(s t)
+//	v(t) = settled + real part of the sum of a exp(s t)
 //
-// the latter averaged over the time in which the current falls. It serves where the leads add a fourth pole; where poles
-// meet it loses digits, which a fit can spare.
+// with one set of amplitudes while the switch's current falls and another after. Of a pair of conjugate poles one stands
+// for both. It serves where the leads add a fourth pole; where poles meet it loses digits, which a fit can spare.
 type poleSum struct {
-	n          int
-	s, e, i    [4]complex128
-	bus, amps  float64
-	fall       float64 // s
-	ringing    int     // index of the pole that rings; -1: none
-	slow, fast float64 // 1/s: decay of the slowest pole, and size of the fastest
+	n       int
+	s       [4]complex128 // 1/s
+	during  amplitudes    // while the current falls
+	after   amplitudes
+	fall    float64 // s
+	ringing int     // index of the pole that rings; -1: none
+	slow    float64 // 1/s: decay of the slowest pole
+	fast    float64 // 1/s: size of the fastest
 }
 
+type amplitudes struct {
+	settled float64 // V
+	a       [4]complex128
+}
+
+// poleSum finds the poles and amplitudes. With q = 1 + s Rs Cs + s^2 Ls Cs,
+//
+//	D(s) = q + (s L + r)(s C q + s Cs)
+//
+// is the characteristic polynomial, and the node's voltage after a step of the bus E and of the current I0
+//
+//	(E + s L I0) q/(s D(s))
+//
+// in the Laplace transform; a current that falls in tf is the mean of steps over that time.
 func (v *circuitValues) poleSum() *poleSum {
-	p := &poleSum{bus: v[atE], amps: v[atI0], fall: v[atFall], ringing: -1}
+	p := &poleSum{fall: v[atFall], ringing: -1, slow: math.Inf(1)}
 	l, c, r, cs, rs, ls := v[atL], v[atC], v[atR], v[atCs], v[atRs], v[atLead]
 	if cs == 0 {
 		rs, ls = 0, 0
 	}
-	// D(s) = q + (s L + r)(s C q + s Cs) with q = 1 + s Rs Cs + s^2 Ls Cs, in the unknown s/w0.
-	w := 1 / math.Sqrt(l*c)
-	z := l * w
-	q := [3]float64{1, rs * cs * w, ls * cs * w * w}
-	in := [2]float64{r / z, 1}               // (s L + r)/Z0
-	y := [4]float64{0, 1 + cs/c, q[1], q[2]} // (s C q + s Cs) Z0
+	w, z := 1/math.Sqrt(l*c), math.Sqrt(l/c)
+	q := [3]float64{1, rs * cs * w, ls * cs * w * w} // in the unknown s/w0
+	in := [2]float64{r / z, 1}                       // (s L + r)/Z0
+	y := [4]float64{0, 1 + cs/c, q[1], q[2]}         // (s C q + s Cs) Z0
 	d := [5]float64{q[0], q[1], q[2]}
 	for i, a := range in {
 		for j, b := range y {
 			d[i+j] += a * b
 		}
 	}
-	p.n = 4
-	for p.n > 2 && d[p.n] <= 1e-12*d[p.n-1] {
-		p.n--
+	n := 4
+	for n > 2 && d[n] <= 1e-12*d[n-1] {
+		n--
 	}
-	p.roots(d[:p.n+1])
-	for k := range p.n {
-		s := p.s[k]
-		num := complex(q[0], 0) + s*(complex(q[1], 0)+s*complex(q[2], 0))
-		slope := complex(0, 0)
-		for m := p.n; m >= 1; m-- {
-			slope = slope*s + complex(float64(m)*d[m], 0)
-		}
-		p.e[k] = num / (s * slope)
-		p.i[k] = complex(z, 0) * num / slope
-		p.s[k] = s * complex(w, 0)
-	}
-	p.slow = math.Inf(1)
-	for k := range p.n {
-		p.slow = math.Min(p.slow, -real(p.s[k]))
-		p.fast = math.Max(p.fast, cmplx.Abs(p.s[k]))
-		if im := imag(p.s[k]); im > 1e-9*w {
+	p.during.settled, p.after.settled = v[atE], v[atE]
+	for _, s := range roots(d[:n+1]) {
+		p.slow, p.fast = math.Min(p.slow, -real(s)*w), math.Max(p.fast, cmplx.Abs(s)*w)
+		weight := complex(2, 0) // for its conjugate
+		switch im := imag(s); {
+		case math.Abs(im) <= 1e-9:
+			weight = 1
+		case im < 0:
+			continue
+		default:
 			// The ring is the slower of two pairs in frequency: the other is the leads'.
-			if p.ringing < 0 || im < imag(p.s[p.ringing]) {
-				p.ringing = k
+			if p.ringing < 0 || im*w < imag(p.s[p.ringing]) {
+				p.ringing = p.n
 			}
 		}
+		num := complex(q[0], 0) + s*(complex(q[1], 0)+s*complex(q[2], 0))
+		slope := complex(0, 0)
+		for m := n; m >= 1; m-- {
+			slope = slope*s + complex(float64(m)*d[m], 0)
+		}
+		bus := weight * complex(v[atE], 0) * num / (s * slope)
+		amps := weight * complex(v[atI0]*z, 0) * num / slope
+		p.s[p.n] = s * complex(w, 0)
+		if p.fall == 0 {
+			p.after.a[p.n] = bus + amps
+		} else {
+			x := p.s[p.n] * complex(p.fall, 0)
+			p.during.a[p.n] = bus + amps/x
+			p.during.settled -= real(amps / x)
+			p.after.a[p.n] = bus + amps/x*(1-cmplx.Exp(-x))
+		}
+		p.n++
 	}
 	return p
 }
 
-// roots finds the roots of the polynomial d by the simultaneous iteration of Aberth (Math. Comp. 27, 339, 1973, from
-// memory).
-func (p *poleSum) roots(d []float64) {
+// roots finds the roots of the polynomial d, lowest coefficient first, of degree up to four, by the simultaneous iteration
+// of Aberth (Math. Comp. 27, 339, 1973, from memory).
+func roots(d []float64) []complex128 {
 	n := len(d) - 1
+	var store [4]complex128
+	s := store[:n]
 	bound := 0.0
 	for k := range n {
 		bound = math.Max(bound, math.Pow(math.Abs(d[k]/d[n]), 1/float64(n-k)))
 	}
 	for k := range n {
-		p.s[k] = cmplx.Rect(bound*(0.4+0.3*float64(k)/float64(n)), math.Pi/2+0.3+2*math.Pi*float64(k)/float64(n))
+		s[k] = cmplx.Rect(bound*(0.4+0.3*float64(k)/float64(n)), math.Pi/2+0.3+2*math.Pi*float64(k)/float64(n))
 	}
 	for range 60 {
 		moved := 0.0
 		for k := range n {
 			f, df := complex(0, 0), complex(0, 0)
 			for m := n; m >= 0; m-- {
-				df = df*p.s[k] + f
-				f = f*p.s[k] + complex(d[m], 0)
+				df = df*s[k] + f
+				f = f*s[k] + complex(d[m], 0)
 			}
 			if f == 0 {
 				continue
@@ -186,17 +211,18 @@ func (p *poleSum) roots(d []float64) {
 			sum := complex(0, 0)
 			for j := range n {
 				if j != k {
-					sum += 1 / (p.s[k] - p.s[j])
+					sum += 1 / (s[k] - s[j])
 				}
 			}
 			step := ratio / (1 - ratio*sum)
-			p.s[k] -= step
-			moved = math.Max(moved, cmplx.Abs(step)/cmplx.Abs(p.s[k]))
+			s[k] -= step
+			moved = math.Max(moved, cmplx.Abs(step)/cmplx.Abs(s[k]))
 		}
-		if moved < 1e-15 {
+		if moved < 1e-14 {
 			break
 		}
 	}
+	return s
 }
 
 func (p *poleSum) ringSigns() (hz, decay float64) {
@@ -207,56 +233,64 @@ func (p *poleSum) ringSigns() (hz, decay float64) {
 	return imag(s) / (2 * math.Pi), -1 / real(s)
 }
 
+func (p *poleSum) amplitudes(t float64) *amplitudes {
+	if t < p.fall {
+		return &p.during
+	}
+	return &p.after
+}
+
 // at is the node's voltage at time t, V.
 func (p *poleSum) at(t float64) float64 {
-	v := p.bus
+	x := p.amplitudes(t)
+	v := x.settled
 	for k := range p.n {
-		s := p.s[k]
-		ex := cmplx.Exp(s * complex(t, 0))
-		v += real(complex(p.bus, 0) * p.e[k] * ex)
-		i := complex(p.amps, 0) * p.i[k]
-		if p.fall == 0 {
-			v += real(i * ex)
-		} else {
-			v += real(i / (s * complex(p.fall, 0)) * (ex - p.before(s, t)))
-		}
+		v += real(x.a[k] * cmplx.Exp(p.s[k]*complex(t, 0)))
 	}
 	return v
 }
 
-// before is exp(s (t - fall)), and 1 while the current still falls.
-func (p *poleSum) before(s complex128, t float64) complex128 {
-	if t <= p.fall {
-		return 1
-	}
-	return cmplx.Exp(s * complex(t-p.fall, 0))
-}
-
 // slope is the derivative of the node's voltage at time t, V/s.
 func (p *poleSum) slope(t float64) float64 {
+	x := p.amplitudes(t)
 	sum := 0.0
 	for k := range p.n {
-		s := p.s[k]
-		ex := cmplx.Exp(s * complex(t, 0))
-		sum += real(s * complex(p.bus, 0) * p.e[k] * ex)
-		i := complex(p.amps, 0) * p.i[k]
-		switch {
-		case p.fall == 0:
-			sum += real(i * s * ex)
-		case t > p.fall:
-			sum += real(i * (ex - p.before(s, t)) / complex(p.fall, 0))
-		default:
-			sum += real(i * ex / complex(p.fall, 0))
-		}
+		sum += real(p.s[k] * x.a[k] * cmplx.Exp(p.s[k]*complex(t, 0)))
 	}
 	return sum
 }
 
-// peak is the highest voltage, walked to as highest has it.
+// peak is the highest voltage: that of the first ring and a half, walked in steps a sixteenth of the fastest pole's. The
+// exponentials are carried from step to step; each top is then found exactly.
 func (p *poleSum) peak() (when, volts float64) {
+	when, volts = math.Inf(1), p.after.settled
 	end := p.fall + 60/p.slow
 	if p.ringing >= 0 {
 		end = math.Min(end, p.fall+2*math.Pi/imag(p.s[p.ringing])*1.5)
 	}
-	return highest(p.bus, end, 2*math.Pi/p.fast/16, p.slope, p.at)
+	if !(end > 0) || math.IsInf(end, 1) || !(p.fast > 0) {
+		return when, volts // not the poles of a circuit; whoever asked will refuse the rest too
+	}
+	step := math.Max(2*math.Pi/p.fast/16, end/4000)
+	var ex, turn [4]complex128
+	for k := range p.n {
+		ex[k], turn[k] = p.s[k], cmplx.Exp(p.s[k]*complex(step, 0))
+	}
+	b := p.slope(0)
+	for hi := step; hi <= end+step; hi += step {
+		a := b
+		x := p.amplitudes(hi)
+		b = 0
+		for k := range p.n {
+			ex[k] *= turn[k]
+			b += real(x.a[k] * ex[k])
+		}
+		if a <= 0 || b > 0 {
+			continue
+		}
+		if t := crossing(hi-step, hi, a, b, p.slope); p.at(t) > volts {
+			when, volts = t, p.at(t)
+		}
+	}
+	return when, volts
 }

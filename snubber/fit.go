@@ -130,6 +130,11 @@ func fitTrials(ctx context.Context, trials []Trial) (*FitResult, error) {
 	if err != nil {
 		return nil, err
 	}
+	if out.model.still(out.fit.P) {
+		if out, effects, err = choose(ctx, obs, newModel(obs).from(out.model.loop(out.fit.P))); err != nil {
+			return nil, err
+		}
+	}
 	m = out.model
 	if out.fit.Status == leastsq.Stopped {
 		return nil, ctx.Err()
@@ -173,8 +178,9 @@ const atRest = 0.005
 // describe gives the estimates of a fit.
 func (f *FitResult) describe(out *outcome, effects []effect) error {
 	m, fit := out.model, out.fit
+	apart := errors.New("the trials cannot tell inductance and capacitance apart; fit a capacitor of about three times the node's capacitance and read the ring")
 	if fit.Cov == nil {
-		return errors.New("the trials cannot tell inductance and capacitance apart; fit a capacitor of about three times the node's capacitance and read the ring")
+		return apart
 	}
 	if m.loss < 0 {
 		f.Warnings = append(f.Warnings, "no decay was read: the ring's frequency was taken as undamped, which makes the loop look slower, and the loss is not known; read decay_s")
@@ -183,7 +189,7 @@ func (f *FitResult) describe(out *outcome, effects []effect) error {
 	if f.DOF > 0 && (distuv.ChiSquared{K: float64(f.DOF)}).Survival(f.Chi2) < 0.05 {
 		e.widen = math.Sqrt(f.Chi2 / float64(f.DOF))
 		e.student = distuv.StudentsT{Sigma: 1, Nu: float64(f.DOF)}.Quantile(0.975)
-		f.Warnings = append(f.Warnings, fmt.Sprintf("the trials scatter %.3g times more than their stated uncertainties allow (chi-square %.3g for %d degrees of freedom): the intervals were widened by that; look for a mislabelled capacitor or a misread frequency, or state larger uncertainties", e.widen, f.Chi2, f.DOF))
+		f.Warnings = append(f.Warnings, fmt.Sprintf("the trials scatter %.3g times more than their stated uncertainties allow (chi-square %.3g for %s of freedom): the intervals were widened by that; look for a mislabelled capacitor or a misread frequency, or state larger uncertainties", e.widen, f.Chi2, degrees(f.DOF)))
 	}
 	g := func(terms map[int]float64) []float64 { // a gradient by the shared parameters
 		v := make([]float64, m.params)
@@ -198,6 +204,12 @@ func (f *FitResult) describe(out *outcome, effects []effect) error {
 	f.Loop.Capacitance = e.relative(l.Capacitance, g(map[int]float64{0: 1, 1: -1}))
 	f.Loop.Impedance = e.relative(l.Impedance(), g(map[int]float64{1: 1}))
 	f.Loop.RingHz = e.relative(l.NaturalHz(), g(map[int]float64{0: -1}))
+	if l, c := f.Loop.Inductance, f.Loop.Capacitance; !(l.U <= l.Value && c.U <= c.Value) {
+		if e.widen > 1 {
+			return fmt.Errorf("the trials contradict each other: they scatter %.3g times more than their stated uncertainties allow, and no loop explains most of them; look for mislabelled capacitors and misread frequencies, or trials of another board", e.widen)
+		}
+		return apart
+	}
 	if m.ref > 0 && m.effect[junction] < 0 {
 		f.Loop.Capacitance.allow(atRest)
 		f.Loop.Impedance.allow(atRest / 2)
@@ -211,11 +223,16 @@ func (f *FitResult) describe(out *outcome, effects []effect) error {
 		}
 	}
 	for point, k := range m.amps {
-		if k < 0 {
+		var x *Estimate
+		switch {
+		case k >= 0:
+			x = e.absolute(math.Abs(fit.P[k]), g(map[int]float64{k: 1}))
+			x.Low = math.Max(0, x.Low)
+		case m.obs.points[point].still:
+			x = out.smallExcitation(point)
+		default:
 			continue
 		}
-		x := e.absolute(math.Abs(fit.P[k]), g(map[int]float64{k: 1}))
-		x.Low = math.Max(0, x.Low)
 		f.Excitations = append(f.Excitations, PointExcitation{BusV: m.obs.points[point].bus, CurrentA: m.obs.points[point].load, Excitation: x})
 		if f.Excitation == nil || x.Value > f.Excitation.Value {
 			f.Excitation = x
@@ -228,6 +245,8 @@ func (f *FitResult) describe(out *outcome, effects []effect) error {
 	f.shared = &sharedFit{p: fit.P, cov: fit.Cov, widen: e.widen, loss: m.loss}
 	return nil
 }
+
+func degrees(n int) string { return count(n, "degree") }
 
 // currentForPeak is the loop current, A, at which the network's exact peak is the one read, and the slope dV/dI
 // there; ok is false where even no current peaks higher than read. The peak rises with the current, so that a

@@ -6,6 +6,7 @@ import (
 	"math"
 
 	"ringbook/snubber/leastsq"
+	"ringbook/snubber/quantity"
 )
 
 // LinePoint is one trial on the substitution line.
@@ -106,7 +107,7 @@ func (s *SubstitutionLine) enough() error {
 	case bare:
 		return fmt.Errorf("all %d trials are bare: without a known capacitor inductance and capacitance cannot be told apart; fit one that brings the frequency down to about half", len(s.Points))
 	case high-low <= 1e-6*high:
-		return fmt.Errorf("all %d trials had the same capacitance, %.4g F, across the node: a line needs two; read the bare node too, or fit another capacitor", len(s.Points), high)
+		return fmt.Errorf("all %d trials had the same capacitance, %s, across the node: a line needs two; read the bare node too, or fit another capacitor", len(s.Points), farads(high))
 	}
 	return nil
 }
@@ -133,7 +134,7 @@ func (s *SubstitutionLine) fit() error {
 	case !(s.Slope > 0):
 		return s.rising()
 	case !(s.Intercept > 0):
-		return fmt.Errorf("the line meets zero at %.3g F: the loop's capacitance would be negative; a capacitor is mislabelled, a frequency misread (twice the ring, or the switching frequency), or the probe's capacitance overstated", s.Intercept/s.Slope)
+		return fmt.Errorf("the line meets zero at %s of added capacitance: the loop's capacitance would be negative; a capacitor is mislabelled, a frequency misread (twice the ring, or the switching frequency), or the probe's capacitance overstated", farads(s.Intercept/s.Slope))
 	}
 	return nil
 }
@@ -149,8 +150,10 @@ func (s *SubstitutionLine) rising() error {
 			b = p
 		}
 	}
-	hz := func(p LinePoint) float64 { return 1 / (2 * math.Pi * math.Sqrt(p.Inverse)) }
-	return fmt.Errorf("the frequency rises with added capacitance (%.4g Hz at %.3g F, %.4g Hz at %.3g F): no resonance does; check the capacitors' marking and whether the ring was read, not the switching frequency", hz(a), a.AddedC, hz(b), b.AddedC)
+	hz := func(p LinePoint) string {
+		return quantity.Format(1/(2*math.Pi*math.Sqrt(p.Inverse)), quantity.Frequency, 4)
+	}
+	return fmt.Errorf("the frequency rises with added capacitance (%s with %s, %s with %s): no resonance does; check the capacitors' marking and whether the ring was read, not the switching frequency", hz(a), farads(a.AddedC), hz(b), farads(b.AddedC))
 }
 
 func decayU(r Reading) float64 {
@@ -195,3 +198,5 @@ func (s *SubstitutionLine) without(list []SetAside) *SubstitutionLine {
 	s.Points = kept
 	return s
 }
+
+func farads(c float64) string { return quantity.Format(c, quantity.Capacitance, 3) }

@@ -28,7 +28,7 @@ func newModel(obs *observations, effects ...effect) *model {
 	}
 	for i, p := range obs.points {
 		m.amps[i] = -1
-		if p.peaks > 0 {
+		if p.peaks > 0 && !p.still {
 			m.amps[i] = m.params
 			m.params++
 		}

@@ -47,6 +47,7 @@ type physicalPart struct {
 type operating struct {
 	bus, load float64 // V, A; 0: not known
 	peaks     int     // how many peaks were read at it
+	still     bool    // they are no higher than the bus alone drives them: the excitation is too small to tell
 }
 
 // samePoint is how far apart, relatively, two settings of bus or load may be read and still be one operating point.
@@ -155,27 +156,28 @@ func observe(trials []Trial) (*observations, error) {
 		o.list = append(o.list, x)
 	}
 	for k, n := range unstated {
-		if n > 0 {
-			o.warn("%d readings of %s state no uncertainty: %g %% was taken; state %s_u", n, observedQuantity[k], 100*[3]float64{unstatedRing, unstatedDecay, unstatedPeak}[k], observedQuantity[k])
-		}
+		o.warn(n, "%s of %s without an uncertainty: %g %% was taken; state %s_u", "reading", observedQuantity[k], 100*[3]float64{unstatedRing, unstatedDecay, unstatedPeak}[k], observedQuantity[k])
 	}
-	if unstatedC > 0 {
-		o.warn("%d capacitors state no tolerance: %g %% was taken; state c_tol or measure them", unstatedC, 100*unstatedTol)
-	}
-	if unstatedR > 0 {
-		o.warn("%d resistors state no tolerance: %g %% was taken; state r_tol", unstatedR, 100*unstatedTol)
-	}
-	if noBus > 0 {
-		o.warn("%d peaks were left out because their bus voltage is not known; state bus_v", noBus)
-	}
-	if diode > 0 {
-		o.warn("%d trials with a diode in the network were left out of the fit", diode)
-	}
+	o.warn(unstatedC, "%s with a capacitor of no stated tolerance: %g %% was taken; state c_tol or measure it", "trial", 100*unstatedTol)
+	o.warn(unstatedR, "%s with a resistor of no stated tolerance: %g %% was taken; state r_tol", "trial", 100*unstatedTol)
+	o.warn(noBus, "%s left out because the bus voltage is not known; state bus_v", "peak")
+	o.warn(diode, "%s left out of the fit because a diode lies across the resistor", "trial")
 	return o, nil
 }
 
-func (o *observations) warn(format string, args ...any) {
-	o.warnings = append(o.warnings, fmt.Sprintf(format, args...))
+// warn adds a warning about n things of a name, where there are any; the format starts with their count and name.
+func (o *observations) warn(n int, format, name string, args ...any) {
+	if n > 0 {
+		o.warnings = append(o.warnings, fmt.Sprintf(format, append([]any{count(n, name)}, args...)...))
+	}
+}
+
+// count is a number of things in words: "1 trial", "2 trials".
+func count(n int, name string) string {
+	if n == 1 {
+		return "1 " + name
+	}
+	return fmt.Sprintf("%d %ss", n, name)
 }
 
 // use finds or adds the part of a key and counts the use.

@@ -5,8 +5,10 @@ import (
 	"errors"
 	"fmt"
 	"math"
+	"strings"
 
 	"ringbook/snubber/preferred"
+	"ringbook/snubber/quantity"
 )
 
 // Limits are what a recommendation must keep, and the parts it may use.
@@ -195,16 +197,18 @@ func (x *Choice) keeps(lim Limits) bool { return x.misses(lim) == 0 }
 
 // cure says what the nearest miss lacks.
 func (lim Limits) cure(x *Choice) string {
-	s := fmt.Sprintf("no RC network of these series keeps the limits; the nearest, R = %.3g ohm with C = %.3g F,", x.R, x.C)
-	switch {
-	case x.Peak.High > lim.MaxPeak:
-		s += fmt.Sprintf(" peaks at up to %.4g V: allow that much, lower the bus or the current, or shorten the loop", x.Peak.High)
-	case lim.MinDamping > 0 && x.Damping.Low < lim.MinDamping:
-		s += fmt.Sprintf(" damps the ring to %.3g only: ask for less damping", x.Damping.Low)
-	default:
-		s += fmt.Sprintf(" loses %.3g W: allow that much or lower the switching frequency", x.LossW)
+	s := fmt.Sprintf("no RC network of these series keeps the limits; the nearest, %s with %s,", quantity.Code(x.R, quantity.Resistance), quantity.Code(x.C, quantity.Capacitance))
+	var lacks []string
+	if x.Peak.High > lim.MaxPeak {
+		lacks = append(lacks, fmt.Sprintf("peaks at up to %s (allow that much, lower the bus or the current, or shorten the loop)", quantity.Format(x.Peak.High, quantity.Voltage, 4)))
 	}
-	return s
+	if lim.MinDamping > 0 && x.Damping.Low < lim.MinDamping {
+		lacks = append(lacks, fmt.Sprintf("damps the ring to %.3g only (ask for less damping)", x.Damping.Low))
+	}
+	if lim.MaxLoss > 0 && x.LossW > lim.MaxLoss {
+		lacks = append(lacks, fmt.Sprintf("loses %s (allow that much, or switch less often)", quantity.Format(x.LossW, quantity.Power, 3)))
+	}
+	return s + " " + strings.Join(lacks, " and ")
 }
 
 // evaluate predicts one network. The intervals of peak and damping are the extremes over the corners of the

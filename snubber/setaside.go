@@ -6,6 +6,7 @@ import (
 	"math"
 
 	"ringbook/snubber/leastsq"
+	"ringbook/snubber/quantity"
 
 	"gonum.org/v1/gonum/mat"
 	"gonum.org/v1/gonum/stat/distuv"
@@ -314,10 +315,11 @@ func (o *outcome) because(a aside) string {
 			}
 		}
 	}
-	text := fmt.Sprintf("it reads %s = %.4g where the other trials predict %.4g", observedQuantity[worst], x.value[worst], signs[worst])
+	unit := [3]quantity.Unit{quantity.Frequency, quantity.Time, quantity.Voltage}[worst]
+	text := fmt.Sprintf("it reads %s = %s where the other trials predict %s", observedQuantity[worst], quantity.Format(x.value[worst], unit, 4), quantity.Format(signs[worst], unit, 4))
 	if x.c >= 0 && worst == ringAt {
 		if c := o.model.capacitorFor(x, o.fit.P); c > 0 {
-			text += fmt.Sprintf("; that would take %.3g F where %.3g F is written", c, x.trial.Network.C)
+			text += fmt.Sprintf("; that would take %s where %s is written", farads(c), farads(x.trial.Network.C))
 		}
 	}
 	return text + fmt.Sprintf(" (chi-square falls by %.1f without it, chance %.1g)", a.fall, a.chance)
