@@ -8,14 +8,6 @@ import (
 	"gonum.org/v1/gonum/mat"
 )
 
-// sharedFit is what a fit knows of its shared parameters, for predictions from it.
-type sharedFit struct {
-	p     []float64
-	cov   *mat.SymDense
-	widen float64
-	loss  int
-}
-
 // estimator turns derivatives by the fit's shared parameters into estimates with their 95 % intervals.
 type estimator struct {
 	fit     *leastsq.PartitionedResult
@@ -40,8 +32,7 @@ func (e *estimator) absolute(value float64, g []float64) *Estimate {
 // spread is the standard uncertainty of the combination g of the shared parameters (GUM 5.2.2), and the coverage factor of
 // its 95 % interval.
 func (e *estimator) spread(g []float64) (u, k float64) {
-	v := mat.NewVecDense(len(g), g)
-	variance := mat.Inner(v, e.fit.Cov, v)
+	variance := leastsq.Propagate(e.fit.Cov, mat.NewDense(1, len(g), g)).At(0, 0)
 	if !(variance > 0) {
 		return 0, normal95
 	}
@@ -66,4 +57,32 @@ func (e *estimator) spread(g []float64) (u, k float64) {
 		shares = append(shares, w/u)
 	}
 	return u * e.widen, coverageFactor(shares)
+}
+
+// Correlation is how the errors of a fit's figures go together.
+type Correlation struct {
+	Of []string    `json:"of"` // the figures, by their names in JSON
+	R  [][]float64 `json:"r"`  // correlation coefficients, in that order
+}
+
+// correlation propagates the covariance of the shared parameters to the figures of the given gradients (GUM 5.2, F.1.2).
+func (e *estimator) correlation(of []string, gradients [][]float64) *Correlation {
+	n := len(gradients[0])
+	j := mat.NewDense(len(gradients), n, nil)
+	for i, g := range gradients {
+		j.SetRow(i, g)
+	}
+	cov := leastsq.Propagate(e.fit.Cov, j)
+	c := &Correlation{Of: of}
+	for i := range gradients {
+		row := make([]float64, len(gradients))
+		for k := range row {
+			if d := math.Sqrt(cov.At(i, i) * cov.At(k, k)); d > 0 {
+				row[k] = math.Max(-1, math.Min(1, cov.At(i, k)/d))
+			}
+		}
+		row[i] = 1
+		c.R = append(c.R, row)
+	}
+	return c
 }

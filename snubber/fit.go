@@ -32,7 +32,13 @@ type FitResult struct {
 
 	Line *SubstitutionLine `json:"-"` // the line of 1/(2 pi f0)^2 against added capacitance, without what was set aside; nil where none can be drawn
 
-	shared *sharedFit
+	// Correlation is that of the loop's figures and of the excitations, in the order of Excitations.
+	Correlation *Correlation `json:"correlation"`
+
+	// Suggestion is what to fit next from the E6 series; Next answers for the capacitors on hand.
+	Suggestion *Suggestion `json:"next"`
+
+	state *outcome // what the fit found, for questions asked of it later
 }
 
 // Effect is one effect beyond the linear loop that the trials demand, by the corrected Akaike criterion.
@@ -200,10 +206,12 @@ func (f *FitResult) describe(out *outcome, effects []effect) error {
 	}
 	l := m.loop(fit.P)
 	// ln L = ln T + ln Z0, ln C = ln T - ln Z0.
-	f.Loop.Inductance = e.relative(l.Inductance, g(map[int]float64{0: 1, 1: 1}))
-	f.Loop.Capacitance = e.relative(l.Capacitance, g(map[int]float64{0: 1, 1: -1}))
-	f.Loop.Impedance = e.relative(l.Impedance(), g(map[int]float64{1: 1}))
-	f.Loop.RingHz = e.relative(l.NaturalHz(), g(map[int]float64{0: -1}))
+	of := []string{"inductance_h", "capacitance_f", "impedance_ohm", "ring_hz"}
+	by := [][]float64{g(map[int]float64{0: 1, 1: 1}), g(map[int]float64{0: 1, 1: -1}), g(map[int]float64{1: 1}), g(map[int]float64{0: -1})}
+	f.Loop.Inductance = e.relative(l.Inductance, by[0])
+	f.Loop.Capacitance = e.relative(l.Capacitance, by[1])
+	f.Loop.Impedance = e.relative(l.Impedance(), by[2])
+	f.Loop.RingHz = e.relative(l.NaturalHz(), by[3])
 	if l, c := f.Loop.Inductance, f.Loop.Capacitance; !(l.U <= l.Value && c.U <= c.Value) {
 		if e.widen > 1 {
 			return fmt.Errorf("the trials contradict each other: they scatter %.3g times more than their stated uncertainties allow, and no loop explains most of them; look for mislabelled capacitors and misread frequencies, or trials of another board", e.widen)
@@ -242,7 +250,17 @@ func (f *FitResult) describe(out *outcome, effects []effect) error {
 		k := m.effect[x]
 		f.Effects = append(f.Effects, Effect{Name: x.String(), Unit: effectUnit[x], Size: e.relative(math.Exp(fit.P[k]), g(map[int]float64{k: 1}))})
 	}
-	f.shared = &sharedFit{p: fit.P, cov: fit.Cov, widen: e.widen, loss: m.loss}
+	if m.loss >= 0 {
+		of, by = append(of, "resistance_ohm"), append(by, g(map[int]float64{m.loss: 1}))
+	}
+	for _, k := range m.amps {
+		if k >= 0 {
+			of, by = append(of, "excitation_a"), append(by, g(map[int]float64{k: 1}))
+		}
+	}
+	f.Correlation = e.correlation(of, by)
+	f.state = out
+	f.Suggestion = f.Next(m.usualCandidates(f.Loop.Capacitance.Value))
 	return nil
 }
 

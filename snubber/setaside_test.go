@@ -303,3 +303,106 @@ func TestFitNeverNaN(t *testing.T) {
 		}
 	})
 }
+
+// Uncertainties stated a thousand times too small do not make a confident answer: the intervals widen to what the trials
+// scatter, and no sound trial is set aside for it.
+func TestUncertaintiesFarTooSmall(t *testing.T) {
+	trials := series(8, 7, 0, 11)
+	for i := range trials {
+		trials[i].Network.CTol = min(trials[i].Network.CTol, 5e-5)
+		for k := range trials[i].Readings {
+			trials[i].Readings[k].U /= 1000
+		}
+	}
+	f := fit(t, trials)
+	if len(f.Warnings) == 0 {
+		t.Error("no warning")
+	}
+	for what, e := range map[string]*snubber.Estimate{"L": f.Loop.Inductance, "C": f.Loop.Capacitance} {
+		truth := map[string]float64{"L": 12e-9, "C": 180e-12}[what]
+		if math.Abs(e.Value-truth) > 4*e.U {
+			t.Errorf("%s = %+v, made with %g", what, *e, truth)
+		}
+	}
+}
+
+// Capacitors all far smaller, or all far larger, than the node's tell little, and the interval says how little.
+func TestCapacitorsFarOff(t *testing.T) {
+	loop := snubber.Loop{Inductance: 12e-9, Capacitance: 180e-12, Resistance: 0.3}
+	for what, caps := range map[string][]float64{"small": {1e-12, 1.5e-12, 2.2e-12}, "large": {47e-9, 68e-9, 100e-9}} {
+		var trials []snubber.Trial
+		for i, c := range append([]float64{0}, caps...) {
+			n := snubber.Network{Kind: snubber.Bare}
+			if c > 0 {
+				n = snubber.Network{Kind: snubber.C, C: c, CTol: 0.05}
+			}
+			r, err := snubber.Respond(loop, n, snubber.Excitation{Bus: 48, Current: 1})
+			if err != nil {
+				t.Fatal(err)
+			}
+			hz, ok := r.RingHz()
+			if !ok {
+				continue
+			}
+			off := 1 + 0.003*math.Sin(float64(i*i+1)) // a reading error of the size stated
+			trials = append(trials, snubber.Trial{ID: string(rune('a' + i)), Board: "b", Revision: "A", Network: n, Readings: []snubber.Reading{{Quantity: snubber.RingHz, Value: hz * off, U: 0.003 * hz}}})
+		}
+		f, err := snubber.Fit(context.Background(), trials)
+		if err != nil {
+			t.Logf("%s: refused: %v", what, err)
+			continue
+		}
+		if e := f.Loop.Inductance; e.Low > 12e-9 || e.High < 12e-9 {
+			t.Errorf("%s: L = %+v does not hold 12 nH", what, *e)
+		}
+		t.Logf("%s: L = %+v", what, *f.Loop.Inductance)
+	}
+}
+
+// The capacitor suggested next is the one that, once tried, does shrink the uncertainty of Z0 most, by what was promised.
+func TestNext(t *testing.T) {
+	trials := series(7, 6, 0, 12)
+	start := fit(t, trials[:2]) // bare, and one capacitor near the node's own
+	if start.Suggestion == nil || start.Suggestion.Enough {
+		t.Fatalf("suggestion %+v", start.Suggestion)
+	}
+	var on []snubber.Candidate
+	for _, x := range trials[2:] {
+		on = append(on, snubber.Candidate{C: x.Network.C, CTol: x.Network.CTol})
+	}
+	next := start.Next(on)
+	best, least := "", math.Inf(1)
+	for _, x := range trials[2:] {
+		f := fit(t, append(append([]snubber.Trial{}, trials[:2]...), x))
+		rel := f.Loop.Impedance.U / f.Loop.Impedance.Value
+		if rel < least {
+			best, least = x.ID, rel
+		}
+		if x.Network.C == next.C {
+			near(t, "u(Z0) promised", next.ImpedanceU/start.Loop.Impedance.Value, rel, 0.15)
+		}
+	}
+	for _, x := range trials[2:] {
+		if x.Network.C == next.C && x.ID != best {
+			f := fit(t, append(append([]snubber.Trial{}, trials[:2]...), x))
+			// The readings' own errors move each by a little: it must be as good as the best within that.
+			near(t, "u(Z0) of the one suggested", f.Loop.Impedance.U/f.Loop.Impedance.Value, least, 0.05)
+		}
+	}
+	if enough := fit(t, series(60, 40, 0, 12)).Suggestion; enough != nil && !enough.Enough {
+		t.Errorf("after sixty trials: %+v", *enough)
+	}
+}
+
+// L and C share the capacitors' errors with opposite signs, and Z0 carries them: the correlations say so.
+func TestCorrelation(t *testing.T) {
+	c := fit(t, series(7, 6, 0, 13)).Correlation
+	at := map[string]int{}
+	for i, name := range c.Of {
+		at[name] = i
+	}
+	r := func(a, b string) float64 { return c.R[at[a]][at[b]] }
+	if r("inductance_h", "capacitance_f") > -0.9 || r("inductance_h", "impedance_ohm") < 0.9 || math.Abs(r("impedance_ohm", "ring_hz")) > 0.5 {
+		t.Errorf("correlations %+v", *c)
+	}
+}
