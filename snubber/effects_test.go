@@ -73,7 +73,11 @@ func TestSlopesAreDerivatives(t *testing.T) {
 	rapid.Check(t, func(t *rapid.T) {
 		v := drawValues(t)
 		rings(t, &v)
-		switch rapid.IntRange(0, 3).Draw(t, "effect") {
+		switch rapid.IntRange(0, 5).Draw(t, "effect") {
+		case 4:
+			v[atCs], v[atRs] = 0, 0
+		case 5:
+			v[atRs] = 0
 		case 1:
 			v[atFall] = 0.1 * math.Sqrt(v[atL]*v[atC])
 		case 2:

@@ -54,6 +54,11 @@ func (r *Response) ringSigns() (hz, decay float64) {
 // node's voltage at the time of the peak: there its derivative by time is zero, so that the peak's moving does not
 // count (the envelope theorem).
 func (v *circuitValues) slopes(peakTime float64) (d [3]circuitValues) {
+	if v.plain() && (v[atCs] == 0 || v[atRs] == 0) {
+		if d, ok := v.pairSlopes(peakTime); ok {
+			return d
+		}
+	}
 	const rel = 3e-6 // balances the third derivative's part against rounding
 	if !v.plain() {
 		return v.extendedSlopes(peakTime, rel)
@@ -120,4 +125,51 @@ func (v *circuitValues) extendedSlopes(peakTime, rel float64) (d [3]circuitValue
 		d[peakAt] = circuitValues{atE: 1}
 	}
 	return d
+}
+
+// pairSlopes is slopes where nothing or a capacitor alone is fitted, in closed form; ok is false where that does not ring.
+// With d = r/(2 L), w^2 = 1/(L Ct) - d^2, Ct = C + Cs and b = I0/Ct,
+//
+//	v(t) = E + exp(-d t) (-E cos(w t) + (b - d E)/w sin(w t))
+func (v *circuitValues) pairSlopes(peakTime float64) (out [3]circuitValues, ok bool) {
+	l, ct, r, e := v[atL], v[atC]+v[atCs], v[atR], v[atE]
+	d := r / (2 * l)
+	w02 := 1 / (l * ct)
+	w2 := w02 - d*d
+	if !(w2 > 0) {
+		return out, false
+	}
+	w := math.Sqrt(w2)
+	b := v[atI0] / ct
+	// Derivatives of w, d and b by L, Ct and r.
+	dByL, dByR := -d/l, 1/(2*l)
+	wByL, wByC, wByR := (-w02/l-2*d*dByL)/(2*w), -w02/ct/(2*w), -2*d*dByR/(2*w)
+	bByC := -b / ct
+	var byW, byD, byB float64
+	if math.IsInf(peakTime, 1) {
+		out[peakAt][atE] = 1
+	} else {
+		t := peakTime
+		sin, cos := math.Sincos(w * t)
+		ex := math.Exp(-d * t)
+		amp := (b - d*e) / w
+		byB = ex * sin / w
+		byD = -t*ex*(-e*cos+amp*sin) - e*byB
+		byW = ex * (e*t*sin + amp*t*cos - amp/w*sin)
+		out[peakAt][atI0] = byB / ct
+		out[peakAt][atE] = 1 - ex*cos - d*byB
+	}
+	out[ringAt][atL], out[ringAt][atC], out[ringAt][atR] = wByL/(2*math.Pi), wByC/(2*math.Pi), wByR/(2*math.Pi)
+	if d > 0 {
+		out[decayAt][atL], out[decayAt][atR] = -dByL/(d*d), -dByR/(d*d)
+	}
+	out[peakAt][atL] = byW*wByL + byD*dByL
+	out[peakAt][atC] = byW*wByC + byB*bByC
+	out[peakAt][atR] = byW*wByR + byD*dByR
+	if v[atCs] > 0 {
+		for k := range out {
+			out[k][atCs] = out[k][atC]
+		}
+	}
+	return out, true
 }

@@ -54,7 +54,8 @@ func (a *aside) weight() float64 {
 
 // settle fits, and sets aside what does not belong.
 //
-// It starts with a robust loss (Cauchy's, a trial at a time), so that a wrong trial does not lead the fit. Then each
+// Where the trials scatter more than they state it starts anew with a robust loss (Cauchy's, a trial at a time), so that a
+// wrong trial does not lead the fit. Then each
 // trial is left out in turn: what chi-square falls by is, for a sound trial, itself distributed as chi-square with as many
 // degrees of freedom as the trial has readings (the likelihood-ratio test of a shift of its mean; Cook and Weisberg,
 // Residuals and Influence in Regression, 1982, section 2.2.2, from memory). The trial that stands farthest goes
@@ -66,14 +67,20 @@ func (m *model) settle(ctx context.Context, start []float64) (*outcome, error) {
 	for i := range all {
 		all[i] = i
 	}
-	if robust, err := m.fit(ctx, all, start, leastsq.Cauchy(2.385)); err == nil && robust.Status != leastsq.Stopped {
-		start = robust.P
-	}
 	fit, err := m.fit(ctx, all, start, nil)
 	if err != nil {
 		return nil, err
 	}
 	o := &outcome{model: m, fit: fit, kept: all}
+	if o.scatter() > 1 {
+		robust, err := m.fit(ctx, all, start, leastsq.Cauchy(2.385))
+		if err != nil {
+			return nil, err
+		}
+		if o.fit, err = m.fit(ctx, all, robust.P, nil); err != nil {
+			return nil, err
+		}
+	}
 	for len(o.aside) < len(all)/3 {
 		worst, err := o.worst(ctx)
 		if err != nil {
@@ -124,10 +131,18 @@ func (o *outcome) worst(ctx context.Context) (*aside, error) {
 
 // test is how a trial is tested: exactly where they are few.
 func (o *outcome) test() func(context.Context, int) (*aside, error) {
+	quick := o.linearised()
 	if len(o.kept) > exactTrials {
-		return o.linearised()
+		return quick
 	}
-	return o.without
+	return func(ctx context.Context, i int) (*aside, error) {
+		x := &o.model.obs.list[i]
+		pulled := x.c >= 0 && math.Abs(o.fit.D[x.c]) > 1
+		if a, err := quick(ctx, i); err != nil || a != nil && a.chance > 0.9 && !pulled {
+			return nil, err // as sound as can be, and so is its part: no need of the exact test
+		}
+		return o.without(ctx, i)
+	}
 }
 
 // without tests trial i by a fit without it; nil where the others cannot be fitted.
@@ -270,7 +285,7 @@ func (o *outcome) linearised() func(context.Context, int) (*aside, error) {
 			return nil, nil // the others say nothing of this trial
 		}
 		fall := mat.Dot(e, &y)
-		if !o.far(i) {
+		if len(o.kept) > exactTrials && !o.far(i) {
 			return nil, nil
 		}
 		return o.judge(i, fall, math.Max(o.fit.Chi2-fall, 0), dof-k), nil
