@@ -245,6 +245,7 @@ func (o *outcome) judge(i int, fall, chi2 float64, dof int) *aside {
 func (o *outcome) linearised() func(context.Context, int) (*aside, error) {
 	dof := o.model.readings(o.kept) - o.model.params
 	var b leastsq.Block
+	var j, jc, h, y mat.Dense // kept from trial to trial
 	return func(_ context.Context, i int) (*aside, error) {
 		if o.fit.Cov == nil {
 			return nil, nil
@@ -253,7 +254,8 @@ func (o *outcome) linearised() func(context.Context, int) (*aside, error) {
 		o.model.eval(x, o.fit.P, o.fit.D, true, &b)
 		cov := o.fit.Joint(b.First, b.Second)
 		n, k := cov.SymmetricDim(), len(b.R)
-		j := mat.NewDense(k, n, nil)
+		j.Reset()
+		j.ReuseAs(k, n)
 		for r := range k {
 			for c := range o.model.params {
 				j.Set(r, c, b.P[r*o.model.params+c])
@@ -267,8 +269,9 @@ func (o *outcome) linearised() func(context.Context, int) (*aside, error) {
 				j.Set(r, at, b.D[1][r])
 			}
 		}
-		var h, jc mat.Dense
-		jc.Mul(j, cov)
+		jc.Reset()
+		jc.Mul(&j, cov)
+		h.Reset()
 		h.Mul(&jc, j.T())
 		for r := range k {
 			for c := range k {
@@ -279,12 +282,14 @@ func (o *outcome) linearised() func(context.Context, int) (*aside, error) {
 				h.Set(r, c, v)
 			}
 		}
-		e := mat.NewVecDense(k, append([]float64{}, b.R...))
-		var y mat.VecDense
-		if err := y.SolveVec(&h, e); err != nil {
+		y.Reset()
+		if err := y.Solve(&h, mat.NewDense(k, 1, b.R)); err != nil {
 			return nil, nil // the others say nothing of this trial
 		}
-		fall := mat.Dot(e, &y)
+		fall := 0.0
+		for r, e := range b.R {
+			fall += e * y.At(r, 0)
+		}
 		if len(o.kept) > exactTrials && !o.far(i) {
 			return nil, nil
 		}

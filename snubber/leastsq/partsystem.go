@@ -32,6 +32,9 @@ type firstPart struct {
 	with  []int     // nuisances of the second kind that it meets, from 0
 	c     []float64 // and its elements with them
 	scale float64
+
+	spread   []float64 // see spread; nil: not yet asked for
+	variance float64
 }
 
 func newPartSystem(shared, first, second int) *partSystem {
@@ -53,7 +56,7 @@ func (s *partSystem) clear(d []float64) {
 	clear(s.b)
 	for j := range s.parts {
 		q := &s.parts[j]
-		q.a, q.b = 1, d[j]
+		q.a, q.b, q.spread = 1, d[j], nil
 		clear(q.p)
 		clear(q.c)
 	}
@@ -242,9 +245,14 @@ func (s *partSystem) covariance(rank float64) (*mat.SymDense, bool) {
 	return cov, true
 }
 
-// onBase is the derivative of a nuisance of the first kind by the base unknowns, where the others are at their best.
-func (s *partSystem) onBase(j int) []float64 {
+// spread is the covariance of nuisance j of the first kind with the base unknowns, and its variance. With the others at
+// their best it follows the base by g = -(row of the base)/a, so that the former is cov g and the latter 1/a + g' cov g.
+// They are kept: many blocks see one part.
+func (s *partSystem) spread(j int) (with []float64, variance float64) {
 	q := &s.parts[j]
+	if q.spread != nil {
+		return q.spread, q.variance
+	}
 	g := make([]float64, s.base)
 	for i, p := range q.p {
 		g[i] = -p / q.a
@@ -252,25 +260,23 @@ func (s *partSystem) onBase(j int) []float64 {
 	for m, k := range q.with {
 		g[s.shared+k] = -q.c[m] / q.a
 	}
-	return g
+	var w mat.VecDense
+	v := mat.NewVecDense(s.base, g)
+	w.MulVec(s.cov, v)
+	q.spread, q.variance = w.RawVector().Data, 1/q.a+mat.Dot(v, &w)
+	return q.spread, q.variance
 }
 
 // cross is the covariance of a nuisance with the shared parameters.
 func (s *partSystem) cross(j int) []float64 {
 	out := make([]float64, s.shared)
-	if j >= s.first {
-		for i := range out {
-			out[i] = s.cov.At(i, s.shared+j-s.first)
-		}
+	if j < s.first {
+		with, _ := s.spread(j)
+		copy(out, with)
 		return out
 	}
-	g := s.onBase(j)
 	for i := range out {
-		for k, x := range g {
-			if x != 0 {
-				out[i] += s.cov.At(i, k) * x
-			}
-		}
+		out[i] = s.cov.At(i, s.shared+j-s.first)
 	}
 	return out
 }
@@ -291,20 +297,12 @@ func (s *partSystem) joint(first, second int) *mat.SymDense {
 			c.SetSym(i, j, s.cov.At(i, j))
 		}
 	}
-	var g []float64
+	var with []float64
 	if first >= 0 {
-		g = s.onBase(first)
-		for i, x := range s.cross(first) {
-			c.SetSym(i, at, x)
-		}
-		v := 1 / s.parts[first].a
-		for i, x := range g {
-			if x == 0 {
-				continue
-			}
-			for j, y := range g {
-				v += x * y * s.cov.At(i, j)
-			}
+		var v float64
+		with, v = s.spread(first)
+		for i := range n {
+			c.SetSym(i, at, with[i])
 		}
 		c.SetSym(at, at, v)
 		at++
@@ -316,11 +314,7 @@ func (s *partSystem) joint(first, second int) *mat.SymDense {
 		}
 		c.SetSym(at, at, s.cov.At(k, k))
 		if first >= 0 {
-			v := 0.0
-			for i, x := range g {
-				v += x * s.cov.At(i, k)
-			}
-			c.SetSym(at-1, at, v)
+			c.SetSym(at-1, at, with[k])
 		}
 	}
 	return c
