@@ -12,6 +12,7 @@ type Source struct {
 	Logbook *store.Logbook
 	Scope   store.Scope
 	Limits  Request
+	OnHand  []float64 // F: the capacitors on hand, for what to fit next; nil: the E6 series
 }
 
 // Trials are all the trials in scope, in the order they were read.
@@ -24,4 +25,18 @@ func (s Source) Trials(ctx context.Context) ([]snubber.Trial, error) {
 		all = append(all, t)
 	}
 	return all, nil
+}
+
+// Fit fits the trials, and says what to fit next of the capacitors on hand.
+func (s Source) Fit(ctx context.Context, trials []snubber.Trial) (*snubber.FitResult, error) {
+	fit, err := snubber.Fit(ctx, trials)
+	if err != nil || s.OnHand == nil {
+		return fit, err
+	}
+	var on []snubber.Candidate
+	for _, c := range s.OnHand {
+		on = append(on, snubber.Candidate{C: c, CTol: fit.UsualTolerance()})
+	}
+	fit.Suggestion = fit.Next(on)
+	return fit, nil
 }

@@ -21,7 +21,7 @@ func Substitution(ctx context.Context, p *page.Page, src Source) error {
 
 	// The square of the period grows in a straight line with the capacitance: its slope is the loop's inductance, and
 	// where it meets zero lies the loop's own capacitance.
-	fit, err := snubber.Fit(ctx, trials)
+	fit, err := src.Fit(ctx, trials)
 	if err != nil {
 		return err
 	}

@@ -9,6 +9,10 @@ type Estimate struct {
 	U     float64 `json:"u"`    // standard uncertainty (k = 1), unit of Value
 	Low   float64 `json:"low"`  // lower end of the 95 % interval
 	High  float64 `json:"high"` // upper end of the 95 % interval
+
+	// DOF is the effective degrees of freedom behind U, where the scatter of few repeats is part of it (GUM G.4); 0: so
+	// many that they do not matter.
+	DOF float64 `json:"dof,omitempty"`
 }
 
 // normal95 is the half-width of a normal distribution's 95 % interval in standard deviations.

@@ -5,58 +5,121 @@ import (
 
 	"ringbook/snubber/leastsq"
 
+	"gonum.org/v1/gonum/floats"
 	"gonum.org/v1/gonum/mat"
+	"gonum.org/v1/gonum/stat/distuv"
 )
 
 // estimator turns derivatives by the fit's shared parameters into estimates with their 95 % intervals.
 type estimator struct {
-	fit     *leastsq.PartitionedResult
-	obs     *observations
+	*outcome
 	widen   float64 // the factor by which the stated uncertainties are widened
-	student float64 // the coverage factor where they are; 0 where they are not
-	cross   [][]float64
+	student float64 // the degrees of freedom behind that; 0: they are not widened
+
+	cross [][]float64 // the covariance of each part's error with the shared parameters
+	rows  []readRow   // the readings with few repeats
+}
+
+// readRow is how far the shared parameters move with one reading, in units of its standard uncertainty.
+type readRow struct {
+	moves      []float64
+	typeA, dof float64
 }
 
 // relative is an estimate of a positive quantity whose logarithm has gradient g: its interval is even in ratio.
 func (e *estimator) relative(value float64, g []float64) *Estimate {
-	u, k := e.spread(g)
-	return &Estimate{Value: value, U: value * u, Low: value * math.Exp(-k*u), High: value * math.Exp(k*u)}
+	u, k, dof := e.spread(g)
+	return &Estimate{Value: value, U: value * u, Low: value * math.Exp(-k*u), High: value * math.Exp(k*u), DOF: dof}
 }
 
 // absolute is an estimate of a quantity with gradient g.
 func (e *estimator) absolute(value float64, g []float64) *Estimate {
-	u, k := e.spread(g)
-	return estimate(value, u, k)
+	u, k, dof := e.spread(g)
+	x := estimate(value, u, k)
+	x.DOF = dof
+	return x
 }
 
-// spread is the standard uncertainty of the combination g of the shared parameters (GUM 5.2.2), and the coverage factor of
-// its 95 % interval.
-func (e *estimator) spread(g []float64) (u, k float64) {
+// spread is the standard uncertainty of the combination g of the shared parameters (GUM 5.2.2), the coverage factor of its
+// 95 % interval and its effective degrees of freedom (0: very many).
+func (e *estimator) spread(g []float64) (u, k, dof float64) {
 	variance := leastsq.Propagate(e.fit.Cov, mat.NewDense(1, len(g), g)).At(0, 0)
 	if !(variance > 0) {
-		return 0, normal95
+		return 0, normal95, 0
 	}
 	u = math.Sqrt(variance)
 	if e.student > 0 {
-		return u * e.widen, e.student
+		return u * e.widen, distuv.StudentsT{Sigma: 1, Nu: e.student}.Quantile(0.975), e.student
 	}
-	if e.cross == nil {
-		for j := range e.fit.D {
-			e.cross = append(e.cross, e.fit.Cross(j))
-		}
-	}
+	e.prepare()
 	var shares []float64
 	for j, c := range e.cross {
-		if j < len(e.obs.caps) && !e.obs.caps[j].bound {
+		if j < len(e.model.obs.caps) && !e.model.obs.caps[j].bound {
 			continue // measured: a normal error
 		}
-		w := 0.0
-		for i, x := range g {
-			w += x * c[i]
-		}
-		shares = append(shares, w/u)
+		shares = append(shares, floats.Dot(g, c)/u)
 	}
-	return u * e.widen, coverageFactor(shares)
+	k = coverageFactor(shares)
+	// Welch and Satterthwaite's formula over the parts that rest on the scatter of repeats (GUM G.4.1, equation G.2b).
+	sum := 0.0
+	for _, r := range e.rows {
+		part := floats.Dot(g, r.moves) / u
+		sum += math.Pow(part*part*r.typeA, 2) / r.dof
+	}
+	if dof = 1 / sum; sum == 0 || dof > 200 {
+		return u, k, 0
+	}
+	return u, k * distuv.StudentsT{Sigma: 1, Nu: dof}.Quantile(0.975) / normal95, dof
+}
+
+// prepare fills what every estimate needs.
+func (e *estimator) prepare() {
+	if e.cross != nil {
+		return
+	}
+	e.cross = [][]float64{}
+	for j := range e.fit.D {
+		e.cross = append(e.cross, e.fit.Cross(j))
+	}
+	m := e.model
+	var b leastsq.Block
+	for _, i := range e.kept {
+		x := &m.obs.list[i]
+		if x.dof == [3]float64{} {
+			continue
+		}
+		m.eval(x, e.fit.P, e.fit.D, true, &b)
+		row := 0
+		for k, v := range x.value {
+			if math.IsNaN(v) {
+				continue
+			}
+			if x.dof[k] > 0 {
+				e.rows = append(e.rows, readRow{moves: e.moves(&b, row), typeA: x.typeA[k], dof: x.dof[k]})
+			}
+			row++
+		}
+	}
+}
+
+// moves is how far the shared parameters move with one reading: the covariance of the solution times the reading's row of
+// derivatives.
+func (e *estimator) moves(b *leastsq.Block, row int) []float64 {
+	n := e.model.params
+	out := make([]float64, n)
+	p := b.P[row*n : (row+1)*n]
+	for i := range out {
+		for j, x := range p {
+			out[i] += e.fit.Cov.At(i, j) * x
+		}
+	}
+	if b.First >= 0 {
+		floats.AddScaled(out, b.D[0][row], e.cross[b.First])
+	}
+	if b.Second >= 0 {
+		floats.AddScaled(out, b.D[1][row], e.cross[len(e.model.obs.caps)+b.Second])
+	}
+	return out
 }
 
 // Correlation is how the errors of a fit's figures go together.

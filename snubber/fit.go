@@ -7,8 +7,6 @@ import (
 	"math"
 
 	"ringbook/snubber/leastsq"
-
-	"gonum.org/v1/gonum/stat/distuv"
 )
 
 // FitResult is what the trials say of the loop. A nil estimate is a quantity they cannot tell.
@@ -191,10 +189,9 @@ func (f *FitResult) describe(out *outcome, effects []effect) error {
 	if m.loss < 0 {
 		f.Warnings = append(f.Warnings, "no decay was read: the ring's frequency was taken as undamped, which makes the loop look slower, and the loss is not known; read decay_s")
 	}
-	e := &estimator{fit: fit, obs: m.obs, widen: 1}
-	if f.DOF > 0 && (distuv.ChiSquared{K: float64(f.DOF)}).Survival(f.Chi2) < 0.05 {
-		e.widen = math.Sqrt(f.Chi2 / float64(f.DOF))
-		e.student = distuv.StudentsT{Sigma: 1, Nu: float64(f.DOF)}.Quantile(0.975)
+	e := &estimator{outcome: out, widen: out.scatter()}
+	if e.widen > 1 {
+		e.student = float64(f.DOF)
 		f.Warnings = append(f.Warnings, fmt.Sprintf("the trials scatter %.3g times more than their stated uncertainties allow (chi-square %.3g for %s of freedom): the intervals were widened by that; look for a mislabelled capacitor or a misread frequency, or state larger uncertainties", e.widen, f.Chi2, degrees(f.DOF)))
 	}
 	g := func(terms map[int]float64) []float64 { // a gradient by the shared parameters

@@ -75,19 +75,31 @@ func (m *model) usualCandidates(c float64) []Candidate {
 	if err != nil {
 		return nil
 	}
-	tol := unstatedTol
-	var tols []float64
-	for _, p := range m.obs.caps {
-		tols = append(tols, p.u/p.value*math.Sqrt(3))
-	}
-	if len(tols) > 0 {
-		tol = median(tols)
-	}
+	tol := m.usualTolerance()
 	var on []Candidate
 	for _, v := range values {
 		on = append(on, Candidate{C: v, CTol: tol})
 	}
 	return on
+}
+
+// UsualTolerance is the median tolerance of the capacitors of the series, as a fraction; 5 % where none was fitted.
+func (f *FitResult) UsualTolerance() float64 {
+	if f.state == nil {
+		return unstatedTol
+	}
+	return f.state.model.usualTolerance()
+}
+
+func (m *model) usualTolerance() float64 {
+	var tols []float64
+	for _, p := range m.obs.caps {
+		tols = append(tols, p.u/p.value*math.Sqrt(3))
+	}
+	if len(tols) == 0 {
+		return unstatedTol
+	}
+	return median(tols)
 }
 
 func (m *model) served(c float64) bool {

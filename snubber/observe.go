@@ -3,6 +3,8 @@ package snubber
 import (
 	"fmt"
 	"math"
+
+	"gonum.org/v1/gonum/stat"
 )
 
 // What is taken where a trial states no uncertainty, as a fraction of the value (standard uncertainties) or as a bound
@@ -20,6 +22,8 @@ type observed struct {
 	trial *Trial
 	value [3]float64 // ring Hz, decay s, peak V
 	u     [3]float64 // standard uncertainties of those
+	typeA [3]float64 // the part of the variance that comes from the scatter of repeats, 0 to 1
+	dof   [3]float64 // degrees of freedom of that part
 	bus   float64    // V; 0: not known
 	point int        // which excitation applies: an index of operating points
 	c     int        // which capacitor: an index of capacitors; -1: none
@@ -125,6 +129,9 @@ func observe(trials []Trial) (*observations, error) {
 				unstated[k]++
 			}
 			x.value[k], x.u[k], any = r.Value, u, true
+			if n := len(r.Repeats); n > 1 {
+				x.typeA[k], x.dof[k] = math.Min(1, scatterOfMean(r.Repeats)/(u*u)), float64(n-1)
+			}
 			o.counts[k]++
 		}
 		if !any {
@@ -178,6 +185,11 @@ func count(n int, name string) string {
 		return "1 " + name
 	}
 	return fmt.Sprintf("%d %ss", n, name)
+}
+
+// scatterOfMean is the variance of the mean of repeats, from their scatter (GUM 4.2.3).
+func scatterOfMean(repeats []float64) float64 {
+	return stat.Variance(repeats, nil) / float64(len(repeats))
 }
 
 // use finds or adds the part of a key and counts the use.

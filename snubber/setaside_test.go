@@ -406,3 +406,46 @@ func TestCorrelation(t *testing.T) {
 		t.Errorf("correlations %+v", *c)
 	}
 }
+
+// A mislabelled capacitor that served in two trials of eight spoils both, and neither stands alone: both go.
+func TestWrongPartInTwoTrials(t *testing.T) {
+	trials := series(7, 6, 0, 14)
+	again := trials[3]
+	again.ID = "trial-again"
+	trials = append(trials, again)
+	for _, i := range []int{3, 7} {
+		trials[i].Network.C *= 1.41
+	}
+	f := fit(t, trials)
+	got := map[string]bool{}
+	for _, id := range asideIDs(f) {
+		got[id] = true
+	}
+	if len(got) != 2 || !got[trials[3].ID] || !got[again.ID] {
+		t.Errorf("set aside %v", asideIDs(f))
+	}
+	holds(t, "L", f.Loop.Inductance, 12e-9)
+}
+
+// A reading whose uncertainty rests on three repeats widens the interval by Student's t of few degrees of freedom.
+func TestFewRepeats(t *testing.T) {
+	trials := series(7, 6, 0, 15)
+	for i := range trials {
+		trials[i].Network.CTol = min(trials[i].Network.CTol, 1e-6) // so that the readings are all there is
+	}
+	many := fit(t, trials)
+	for i := range trials {
+		for k, r := range trials[i].Readings {
+			d := r.U * math.Sqrt(3) // three repeats whose mean has the standard uncertainty stated
+			trials[i].Readings[k].Repeats = []float64{r.Value - d, r.Value, r.Value + d}
+		}
+	}
+	few := fit(t, trials)
+	if few.Loop.Inductance.DOF < 2 || few.Loop.Inductance.DOF > 14 || many.Loop.Inductance.DOF != 0 {
+		t.Errorf("effective degrees of freedom %g, and %g without repeats", few.Loop.Inductance.DOF, many.Loop.Inductance.DOF)
+	}
+	width := func(e *snubber.Estimate) float64 { return math.Log(e.High / e.Low) }
+	if r := width(few.Loop.Inductance) / width(many.Loop.Inductance); r < 1.05 || r > 2.2 {
+		t.Errorf("the interval is %g times as wide", r)
+	}
+}

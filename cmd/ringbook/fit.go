@@ -3,27 +3,39 @@ package main
 import (
 	"ringbook/recipes"
 	"ringbook/recipes/page"
-	"ringbook/snubber"
+	"ringbook/snubber/quantity"
 
 	"github.com/spf13/cobra"
 )
 
 func fitCommand(a *app) *cobra.Command {
 	var scope scopeFlags
+	var onHand []string
 	cmd := &cobra.Command{
 		Use:   "fit",
 		Short: "The loop's parasitics across all trials in scope",
 		Long: `fit takes every trial in scope that stands and gives the loop's inductance, capacitance and loss resistance, its
-impedance and ring frequency, and the excitation, each with its 95 % interval.`,
+impedance and ring frequency, and the excitation, each with its 95 % interval. A trial that does not belong with the others
+is set aside, with the reason. At the end it says which capacitor would tell most next, or that it is enough.`,
 		Example: `  ringbook fit --board winch-drive --revision B
+  ringbook fit --on-hand 100p,330p,1n0
   ringbook fit --board winch-drive --revision B --json`,
 		Args: words(0, 0),
 		RunE: func(cmd *cobra.Command, args []string) (err error) {
 			ctx := cmd.Context()
+			var caps []float64
+			for _, text := range onHand {
+				var c quantity.Farad
+				if err := c.Set(text); err != nil {
+					return usagef("--on-hand: %w", err)
+				}
+				caps = append(caps, float64(c))
+			}
 			src, err := a.source(ctx, &scope)
 			if err != nil {
 				return err
 			}
+			src.OnHand = caps
 			defer closing(src.Logbook, &err)
 			if !a.json {
 				p := page.New("Loop of " + src.Scope.Board + " " + src.Scope.Revision)
@@ -36,7 +48,7 @@ impedance and ring frequency, and the excitation, each with its 95 % interval.`,
 			if err != nil {
 				return err
 			}
-			fit, err := snubber.Fit(ctx, trials)
+			fit, err := src.Fit(ctx, trials)
 			if err != nil {
 				return err
 			}
@@ -44,5 +56,6 @@ impedance and ring frequency, and the excitation, each with its 95 % interval.`,
 		},
 	}
 	scope.add(cmd)
+	cmd.Flags().StringSliceVar(&onHand, "on-hand", nil, "the `CAPACITORS` on hand, such as 100p,330p: which would tell most next")
 	return cmd
 }
