@@ -18,6 +18,12 @@ type Request struct {
 
 const usualDerate = 0.8
 
+// A recommendation is proven on so many draws of the fit, always the same ones.
+const (
+	draws = 2000
+	seed  = 1
+)
+
 // Recommendation fits the trials in scope and recommends a network for them.
 func Recommendation(ctx context.Context, src Source) (*snubber.FitResult, *snubber.Recommendation, error) {
 	trials, err := src.Trials(ctx)
@@ -28,7 +34,8 @@ func Recommendation(ctx context.Context, src Source) (*snubber.FitResult, *snubb
 	if err != nil {
 		return nil, nil, err
 	}
-	at, notes, err := snubber.Worst(fit, trials)
+	at := fit.Hardest(trials)
+	ahead, notes, err := fit.Ahead(at, draws, seed)
 	if err != nil {
 		return nil, nil, err
 	}
@@ -44,7 +51,7 @@ func Recommendation(ctx context.Context, src Source) (*snubber.FitResult, *snubb
 			return nil, nil, err
 		}
 	}
-	rec, err := snubber.Recommend(ctx, fit.Nominal(), at.Excitation, lim)
+	rec, err := snubber.Recommend(ctx, ahead, lim)
 	if err != nil {
 		return nil, nil, err
 	}

@@ -5,54 +5,9 @@ import (
 	"errors"
 	"fmt"
 	"math"
-	"strings"
-
-	"ringbook/snubber/preferred"
-	"ringbook/snubber/quantity"
+	"sort"
+	"sync"
 )
-
-// Limits are what a recommendation must keep, and the parts it may use.
-type Limits struct {
-	MaxPeak     float64          // V, > 0: the highest voltage allowed across the switch
-	MinDamping  float64          // damping ratio of the ringing pair, 0 to 1; 0: no limit
-	MaxLoss     float64          // W; 0: no limit
-	SwitchingHz float64          // Hz, > 0
-	CSeries     preferred.Series // 0: E12
-	RSeries     preferred.Series // 0: E24
-	CTol        float64          // bound of the capacitor's error, fraction; 0: parts taken as nominal
-	RTol        float64          // bound of the resistor's error, fraction; 0: parts taken as nominal
-}
-
-// Choice is one network with what it is predicted to do.
-type Choice struct {
-	Network   Kind      `json:"network"`
-	R         float64   `json:"r_ohm"`
-	C         float64   `json:"c_f"`
-	Peak      *Estimate `json:"peak_v"`        // with the parts at nominal; the interval covers their tolerance
-	Damping   *Estimate `json:"damping_ratio"` // likewise
-	LossW     float64   `json:"loss_w"`        // resistor, switch and loop
-	ResistorW float64   `json:"resistor_w"`
-	SwitchW   float64   `json:"switch_w"`
-	LoopW     float64   `json:"loop_w"`
-	Ratings   Ratings   `json:"ratings"`
-}
-
-// Ratings are the least ratings of the parts to buy.
-type Ratings struct {
-	ResistorW  float64 `json:"resistor_w"`  // W at the part's surroundings: twice the loss, next standard power above
-	CapacitorV float64 `json:"capacitor_v"` // V: the highest voltage the capacitor sees
-}
-
-// Recommendation is the answer to Recommend.
-type Recommendation struct {
-	Met          bool     `json:"met"`
-	LimitV       float64  `json:"limit_v"`       // V: the peak limit it was asked to keep
-	Choice       *Choice  `json:"choice"`        // the least loss that keeps the limits, or the nearest miss
-	Alternatives []Choice `json:"alternatives"`  // more loss for a lower peak, in order of loss
-	RuleOfThumb  *Choice  `json:"rule_of_thumb"` // R = Z0 and C three times the loop's, nearest in series
-	Bare         *Choice  `json:"bare"`          // what the loop does with nothing fitted
-	Warnings     []string `json:"warnings"`
-}
 
 // The range of parts searched, relative to the loop: outside it a capacitor does nothing or costs more than any
 // bench accepts, and a resistor is a wire or is not there.
@@ -60,185 +15,329 @@ const (
 	searchCLow, searchCHigh = 0.1, 100.0 // of the loop's capacitance
 	searchRLow, searchRHigh = 0.03, 30.0 // of the loop's impedance
 	alternatives            = 5
+	held                    = 0.99        // the share of the loops that the fit allows on which the worst corner must keep a limit
+	heldSteps               = 2.326347874 // standard uncertainties to that share of a normal distribution, one-sided
+	screenSlack             = 0.01        // how far over the limit a network may be screened and still be worth proving
 )
 
-// Recommend chooses R and C: the network of least loss whose peak, with the parts anywhere in tolerance, stays
-// under the limit.
+// Recommend chooses the network of least loss that keeps the limits with the parts anywhere in tolerance and the loop
+// anywhere the fit allows.
 //
-// For each capacitor of the series the resistor that keeps the peak lowest is taken among those that keep the
-// damping: the loss is the capacitor's, and the resistor hardly changes it. The peak and the damping are those of
-// the exact response. An error means that there is nothing to compute; limits that nothing meets are an answer
-// with Met false, whose Choice is the nearest miss.
-func Recommend(ctx context.Context, l Loop, e Excitation, lim Limits) (*Recommendation, error) {
-	if err := lim.check(e); err != nil {
-		return nil, fmt.Errorf("recommending a network: %w", err)
-	}
-	if lim.CSeries == 0 {
-		lim.CSeries = preferred.E12
-	}
-	if lim.RSeries == 0 {
-		lim.RSeries = preferred.E24
-	}
-	bare, err := evaluate(l, Network{Kind: Bare}, e, lim)
+// First every capacitor is screened with the resistors: the exact peak at the corners of the tolerances, plus what the fit's
+// uncertainties add along their independent directions, to first order. For each capacitor the resistor that misses the
+// limits least, and then leaves the lowest peak, is kept; the loss is the capacitor's and the resistor hardly changes it. The
+// survivors are then proven in order of their loss: for each draw of the prospect the exact peak at every corner, of which 99 %
+// must keep the limit.
+//
+// An error means that there is nothing to compute; limits that nothing meets are an answer with Met false, whose Choice is
+// the nearest miss.
+func Recommend(ctx context.Context, p *Prospect, lim Limits) (*Recommendation, error) {
+	rec, err := recommend(ctx, p, lim.filled())
 	if err != nil {
 		return nil, fmt.Errorf("recommending a network: %w", err)
-	}
-	rec := &Recommendation{LimitV: lim.MaxPeak, Bare: bare, Alternatives: []Choice{}, Warnings: []string{}}
-	cs, err := lim.CSeries.Between(searchCLow*l.Capacitance, searchCHigh*l.Capacitance)
-	if err != nil {
-		return nil, fmt.Errorf("recommending a network: capacitors near the loop's: %w", err)
-	}
-	z := l.Impedance()
-	rs, err := lim.RSeries.Between(searchRLow*z, searchRHigh*z)
-	if err != nil {
-		return nil, fmt.Errorf("recommending a network: resistors near the loop's impedance: %w", err)
-	}
-	var nearest *Choice
-	for _, c := range cs {
-		if err := ctx.Err(); err != nil {
-			return nil, fmt.Errorf("recommending a network: %w", err)
-		}
-		best, err := bestResistor(l, e, lim, c, rs)
-		if err != nil {
-			return nil, fmt.Errorf("recommending a network: %w", err)
-		}
-		switch {
-		case !best.keeps(lim):
-			if nearest == nil || best.misses(lim) < nearest.misses(lim) {
-				nearest = best
-			}
-		case rec.Choice == nil:
-			rec.Choice, rec.Met = best, true
-		case len(rec.Alternatives) < alternatives && best.Peak.High < rec.front().Peak.High:
-			rec.Alternatives = append(rec.Alternatives, *best)
-		}
-	}
-	if rec.Choice == nil {
-		rec.Choice = nearest
-		rec.Warnings = append(rec.Warnings, lim.cure(nearest))
-	}
-	thumbC, err := lim.CSeries.Nearest(3 * l.Capacitance)
-	if err != nil {
-		return nil, fmt.Errorf("recommending a network: %w", err)
-	}
-	thumbR, err := lim.RSeries.Nearest(z)
-	if err != nil {
-		return nil, fmt.Errorf("recommending a network: %w", err)
-	}
-	rec.RuleOfThumb, err = evaluate(l, lim.rc(thumbR, thumbC), e, lim)
-	if err != nil {
-		return nil, fmt.Errorf("recommending a network: the rule of thumb: %w", err)
 	}
 	return rec, nil
 }
 
-// front is the last network kept: the one with the lowest peak so far.
-func (r *Recommendation) front() *Choice {
-	if n := len(r.Alternatives); n > 0 {
-		return &r.Alternatives[n-1]
+func recommend(ctx context.Context, p *Prospect, lim Limits) (*Recommendation, error) {
+	if err := lim.check(p.Excitation); err != nil {
+		return nil, err
 	}
-	return r.Choice
+	candidates, err := p.screen(ctx, lim)
+	if err != nil {
+		return nil, err
+	}
+	rec := &Recommendation{LimitV: lim.MaxPeak, Alternatives: []Choice{}, Warnings: []string{}}
+	if rec.Bare, err = p.prove(Network{Kind: Bare}, lim); err != nil {
+		return nil, err
+	}
+	var nearest *candidate
+	front := math.Inf(1)
+	for i := range candidates {
+		if err := ctx.Err(); err != nil {
+			return nil, err
+		}
+		c := &candidates[i]
+		if nearest == nil || c.miss < nearest.miss {
+			nearest = c
+		}
+		if c.miss > screenSlack || c.high >= front || len(rec.Alternatives) == alternatives {
+			continue
+		}
+		x, err := p.prove(c.network, lim)
+		if err != nil {
+			return nil, err
+		}
+		switch {
+		case !x.keeps(lim) || x.WorstV >= front:
+			continue
+		case rec.Choice == nil:
+			rec.Choice, rec.Met = x, true
+		default:
+			rec.Alternatives = append(rec.Alternatives, *x)
+		}
+		front = x.WorstV
+	}
+	if rec.Choice == nil {
+		if rec.Choice, err = p.prove(nearest.network, lim); err != nil {
+			return nil, err
+		}
+		rec.Warnings = append(rec.Warnings, lim.cure(rec.Choice))
+	}
+	return rec, p.thumb(rec, lim)
 }
 
-func (lim Limits) check(e Excitation) error {
-	switch {
-	case !(lim.MaxPeak > 0) || math.IsInf(lim.MaxPeak, 0):
-		return fmt.Errorf("peak limit %g V: it must be positive; give the board's rating or a limit", lim.MaxPeak)
-	case !(e.Bus > 0):
-		return errors.New("the bus voltage is not known; read it or state it with the trials")
-	case lim.MaxPeak <= e.Bus:
-		return fmt.Errorf("peak limit %g V is not above the bus of %g V: the node settles at the bus, so no network can keep it; raise the limit or the device's rating, or lower the bus", lim.MaxPeak, e.Bus)
-	case !(lim.SwitchingHz > 0) || math.IsInf(lim.SwitchingHz, 0):
-		return fmt.Errorf("switching frequency %g Hz: the loss needs it; state it with the trials or the request", lim.SwitchingHz)
-	case !(lim.MinDamping >= 0 && lim.MinDamping <= 1):
-		return fmt.Errorf("least damping ratio %g: it lies between 0 and 1", lim.MinDamping)
-	case !(lim.MaxLoss >= 0):
-		return fmt.Errorf("loss limit %g W: it must be zero (no limit) or positive", lim.MaxLoss)
-	case !(lim.CTol >= 0 && lim.CTol < 1) || !(lim.RTol >= 0 && lim.RTol < 1):
-		return fmt.Errorf("part tolerances %g and %g: each is a fraction from 0 to 1, such as 0.05", lim.CTol, lim.RTol)
+// thumb adds the rule of thumb.
+func (p *Prospect) thumb(rec *Recommendation, lim Limits) error {
+	c, err := lim.CSeries.Nearest(3 * p.Loop.Capacitance)
+	if err != nil {
+		return err
+	}
+	r, err := lim.RSeries.Nearest(p.Loop.Impedance())
+	if err != nil {
+		return err
+	}
+	if rec.RuleOfThumb, err = p.prove(lim.network(RC, r, c), lim); err != nil {
+		return err
+	}
+	if s := firstSpike(rec.RuleOfThumb, p.Excitation, lim.MaxPeak); s != "" {
+		rec.Warnings = append(rec.Warnings, s)
 	}
 	return nil
 }
 
-func (lim Limits) rc(r, c float64) Network {
-	return Network{Kind: RC, R: r, C: c, RTol: lim.RTol, CTol: lim.CTol}
+// candidate is a network as screened.
+type candidate struct {
+	network Network
+	loss    float64 // W
+	high    float64 // V: the peak to first order of all uncertainties
+	miss    float64 // how far outside the limits
 }
 
-// bestResistor is, for one capacitor, the resistor that misses the limits least and, among those that keep them,
-// leaves the lowest peak.
-func bestResistor(l Loop, e Excitation, lim Limits, c float64, rs []float64) (*Choice, error) {
-	var best *Choice
+// screen gives the candidates in order of their loss, one for each kind and capacitor.
+func (p *Prospect) screen(ctx context.Context, lim Limits) ([]candidate, error) {
+	cs, rs := lim.OnHandC, lim.OnHandR
+	var err error
+	if cs == nil {
+		if cs, err = lim.CSeries.Between(searchCLow*p.Loop.Capacitance, searchCHigh*p.Loop.Capacitance); err != nil {
+			return nil, fmt.Errorf("capacitors near the loop's: %w", err)
+		}
+	}
+	if rs == nil {
+		if rs, err = lim.RSeries.Between(searchRLow*p.Loop.Impedance(), searchRHigh*p.Loop.Impedance()); err != nil {
+			return nil, fmt.Errorf("resistors near the loop's impedance: %w", err)
+		}
+	}
+	var out []candidate
+	for _, k := range lim.Kinds {
+		for _, c := range cs {
+			if err := ctx.Err(); err != nil {
+				return nil, err
+			}
+			best, err := p.bestResistor(k, c, rs, lim)
+			if err != nil {
+				return nil, err
+			}
+			if best != nil {
+				out = append(out, *best)
+			}
+		}
+	}
+	if len(out) == 0 {
+		return nil, errors.New("no part to choose from: no capacitor or no resistor is on hand")
+	}
+	sort.SliceStable(out, func(i, j int) bool { return out[i].loss < out[j].loss })
+	return out, nil
+}
+
+// bestResistor is the network of a kind with one capacitor that misses the limits least, and of those the one with the
+// lowest peak. Where the peak alone is asked for, only the resistors beside the one with the lowest nominal peak are
+// screened in full.
+func (p *Prospect) bestResistor(k Kind, c float64, rs []float64, lim Limits) (*candidate, error) {
+	if !k.HasR() {
+		rs = []float64{0}
+	} else if lim.MinDamping == 0 && lim.SettleS == 0 && len(rs) > 5 {
+		at, low := 0, math.Inf(1)
+		for i, r := range rs {
+			n := lim.network(k, r, c)
+			peak, _, err := p.nominal.look(&n)
+			if err != nil {
+				return nil, err
+			}
+			if peak < low {
+				at, low = i, peak
+			}
+		}
+		rs = rs[max(0, at-2):min(len(rs), at+3)]
+	}
+	var best *candidate
 	for _, r := range rs {
-		x, err := evaluate(l, lim.rc(r, c), e, lim)
+		x, err := p.screened(lim.network(k, r, c), lim)
 		if err != nil {
 			return nil, err
 		}
-		if best == nil || x.misses(lim) < best.misses(lim) ||
-			x.misses(lim) == best.misses(lim) && x.Peak.High < best.Peak.High {
+		if best == nil || x.miss < best.miss || x.miss == best.miss && x.high < best.high {
 			best = x
 		}
 	}
 	return best, nil
 }
 
-// misses says how far a choice lies outside the limits, as the sum of its relative excesses; 0 when it keeps them.
-func (x *Choice) misses(lim Limits) float64 {
-	m := math.Max(0, x.Peak.High/lim.MaxPeak-1)
-	if lim.MinDamping > 0 {
-		m += math.Max(0, 1-x.Damping.Low/lim.MinDamping)
-	}
-	if lim.MaxLoss > 0 {
-		m += math.Max(0, x.LossW/lim.MaxLoss-1)
-	}
-	return m
-}
-
-func (x *Choice) keeps(lim Limits) bool { return x.misses(lim) == 0 }
-
-// cure says what the nearest miss lacks.
-func (lim Limits) cure(x *Choice) string {
-	s := fmt.Sprintf("no RC network of these series keeps the limits; the nearest, %s with %s,", quantity.Code(x.R, quantity.Resistance), quantity.Code(x.C, quantity.Capacitance))
-	var lacks []string
-	if x.Peak.High > lim.MaxPeak {
-		lacks = append(lacks, fmt.Sprintf("peaks at up to %s (allow that much, lower the bus or the current, or shorten the loop)", quantity.Format(x.Peak.High, quantity.Voltage, 4)))
-	}
-	if lim.MinDamping > 0 && x.Damping.Low < lim.MinDamping {
-		lacks = append(lacks, fmt.Sprintf("damps the ring to %.3g only (ask for less damping)", x.Damping.Low))
-	}
-	if lim.MaxLoss > 0 && x.LossW > lim.MaxLoss {
-		lacks = append(lacks, fmt.Sprintf("loses %s (allow that much, or switch less often)", quantity.Format(x.LossW, quantity.Power, 3)))
-	}
-	return s + " " + strings.Join(lacks, " and ")
-}
-
-// evaluate predicts one network. The intervals of peak and damping are the extremes over the corners of the
-// parts' tolerances; u takes them as bounds of a rectangular distribution (GUM 4.3.7).
-func evaluate(l Loop, n Network, e Excitation, lim Limits) (*Choice, error) {
-	loss, err := SwitchingLoss(l, n, e, lim.SwitchingHz)
-	if err != nil {
-		return nil, err
-	}
-	x := &Choice{Network: n.Kind, R: n.R, C: n.C,
-		LossW: loss.Total, ResistorW: loss.Resistor, SwitchW: loss.Switch, LoopW: loss.Loop}
-	for i, corner := range corners(n) {
-		r, err := Respond(l, corner, e)
+// screened is one network to first order.
+func (p *Prospect) screened(n Network, lim Limits) (*candidate, error) {
+	x := &Choice{leastDamping: 1}
+	var worst Network
+	for _, corner := range corners(n) {
+		peak, damping, err := p.nominal.look(&corner)
 		if err != nil {
 			return nil, err
 		}
-		peak, damping := r.Peak().Volts, r.DampingRatio()
-		if i == 0 {
-			x.Peak = &Estimate{Value: peak, Low: peak, High: peak}
-			x.Damping = &Estimate{Value: damping, Low: damping, High: damping}
-			continue
+		if peak > x.WorstV {
+			x.WorstV, worst = peak, corner
 		}
-		x.Peak.Low, x.Peak.High = math.Min(x.Peak.Low, peak), math.Max(x.Peak.High, peak)
-		x.Damping.Low, x.Damping.High = math.Min(x.Damping.Low, damping), math.Max(x.Damping.High, damping)
+		x.leastDamping = math.Min(x.leastDamping, damping)
 	}
-	for _, q := range []*Estimate{x.Peak, x.Damping} {
-		q.U = (q.High - q.Low) / (2 * math.Sqrt(3))
+	var uPeak, uDamping float64
+	base, ratio, err := p.nominal.look(&worst)
+	if err != nil {
+		return nil, err
 	}
-	x.Ratings = Ratings{ResistorW: powerRating(loss.Resistor), CapacitorV: x.Peak.High}
+	for i := range p.by {
+		peak, damping, err := p.by[i].look(&worst)
+		if err != nil {
+			return nil, err
+		}
+		uPeak, uDamping = math.Hypot(uPeak, peak-base), math.Hypot(uDamping, damping-ratio)
+	}
+	x.WorstV += heldSteps * uPeak
+	x.leastDamping -= heldSteps * uDamping
+	loss, err := SwitchingLoss(p.Loop, n, p.Excitation, lim.SwitchingHz)
+	if err != nil {
+		return nil, err
+	}
+	x.LossW = loss.Total
+	if lim.SettleS > 0 {
+		x.settles = p.settling(n, lim.SettleBand)
+	}
+	return &candidate{network: n, loss: loss.Total, high: x.WorstV, miss: x.misses(lim)}, nil
+}
+
+// prove predicts one network over the prospect's draws. The interval of the peak is that of draws with the parts drawn from
+// their tolerances too; WorstV is what the worst corner keeps on the share held of the loops.
+func (p *Prospect) prove(n Network, lim Limits) (*Choice, error) {
+	loss, err := SwitchingLoss(p.Loop, n, p.Excitation, lim.SwitchingHz)
+	if err != nil {
+		return nil, err
+	}
+	x := &Choice{Network: n.Kind, R: n.R, C: n.C, LossW: loss.Total, ResistorW: loss.Resistor, SwitchW: loss.Switch, LoopW: loss.Loop}
+	x.settles = p.settling(n, lim.SettleBand)
+	peak, damping, err := p.nominal.look(&n)
+	if err != nil {
+		return nil, err
+	}
+	x.Peak, x.Damping = &Estimate{Value: peak}, &Estimate{Value: damping}
+	if err := p.spread(x, n); err != nil {
+		return nil, err
+	}
+	x.Ratings = Ratings{ResistorW: powerRating(loss.Resistor), CapacitorV: x.WorstV}
 	return x, nil
+}
+
+// spread fills what the draws say of a choice.
+func (p *Prospect) spread(x *Choice, n Network) error {
+	edge := corners(n)
+	drawn := p.drawn
+	if len(drawn) == 0 {
+		drawn = []circuitValues{p.nominal}
+	}
+	type outcome struct{ peak, damping, worst, least []float64 }
+	part := func(drawn []circuitValues, from int, o *outcome) error {
+		for i := range drawn {
+			worst, least := 0.0, 1.0
+			for k := range edge {
+				v, d, err := drawn[i].look(&edge[k])
+				if err != nil {
+					return err
+				}
+				worst, least = math.Max(worst, v), math.Min(least, d)
+			}
+			m := n
+			m.C *= 1 + n.CTol*lattice(from+i, 0)
+			m.R *= 1 + n.RTol*lattice(from+i, 1)
+			v, d, err := drawn[i].look(&m)
+			if err != nil {
+				return err
+			}
+			o.peak, o.damping = append(o.peak, v), append(o.damping, d)
+			o.worst, o.least = append(o.worst, worst), append(o.least, least)
+		}
+		return nil
+	}
+	var halves [2]outcome
+	var errs [2]error
+	half := len(drawn) / 2
+	var wait sync.WaitGroup
+	wait.Go(func() { errs[0] = part(drawn[:half], 0, &halves[0]) })
+	errs[1] = part(drawn[half:], half, &halves[1])
+	wait.Wait()
+	if err := errors.Join(errs[:]...); err != nil {
+		return err
+	}
+	join := func(a, b []float64) []float64 {
+		s := append(a, b...)
+		sort.Float64s(s)
+		return s
+	}
+	peaks, dampings := join(halves[0].peak, halves[1].peak), join(halves[0].damping, halves[1].damping)
+	worst, least := join(halves[0].worst, halves[1].worst), join(halves[0].least, halves[1].least)
+	x.WorstV, x.leastDamping = quantile(worst, held), quantile(least, 1-held)
+	x.Peak.within(peaks)
+	x.Damping.within(dampings)
+	if len(p.drawn) == 0 { // the loop is known exactly: only the parts are open, and the corners bound them
+		corner(x.Peak, edge, func(n *Network) float64 { v, _, _ := p.nominal.look(n); return v })
+		corner(x.Damping, edge, func(n *Network) float64 { _, d, _ := p.nominal.look(n); return d })
+	}
+	return nil
+}
+
+// lattice is the i-th of evenly spread values in -1 to 1, in one of two dimensions (Kronecker's sequence of the plastic
+// number; Roberts 2018, from memory): the parts' errors are drawn without chance.
+func lattice(i, dimension int) float64 {
+	const g = 1.32471795724474602596
+	step := 1 / g
+	if dimension == 1 {
+		step = 1 / (g * g)
+	}
+	x := 0.5 + step*float64(i+1)
+	return 2*(x-math.Floor(x)) - 1
+}
+
+// within makes the interval and the standard uncertainty those of sorted draws.
+func (e *Estimate) within(sorted []float64) {
+	mean, sum := 0.0, 0.0
+	for _, v := range sorted {
+		mean += v / float64(len(sorted))
+	}
+	for _, v := range sorted {
+		sum += (v - mean) * (v - mean)
+	}
+	e.U = math.Sqrt(sum / float64(max(1, len(sorted)-1)))
+	e.Low, e.High = math.Min(e.Value, quantile(sorted, 0.025)), math.Max(e.Value, quantile(sorted, 0.975))
+}
+
+// corner makes the interval the extremes over the corners of the tolerances, as bounds of a rectangular distribution.
+func corner(e *Estimate, edge []Network, at func(*Network) float64) {
+	e.Low, e.High = e.Value, e.Value
+	for i := range edge {
+		v := at(&edge[i])
+		e.Low, e.High = math.Min(e.Low, v), math.Max(e.High, v)
+	}
+	e.U = (e.High - e.Low) / (2 * math.Sqrt(3))
+}
+
+// quantile is the q-th of sorted values, nearest above.
+func quantile(sorted []float64, q float64) float64 {
+	return sorted[min(len(sorted)-1, max(0, int(math.Ceil(q*float64(len(sorted))))-1))]
 }
 
 // corners lists a network at nominal and at the corners of its parts' tolerances.
@@ -248,10 +347,10 @@ func corners(n Network) []Network {
 	if n.CTol > 0 {
 		cs = []float64{n.C * (1 - n.CTol), n.C * (1 + n.CTol)}
 	}
-	if n.RTol > 0 {
+	if n.RTol > 0 && n.R > 0 {
 		rs = []float64{n.R * (1 - n.RTol), n.R * (1 + n.RTol)}
 	}
-	if n.CTol == 0 && n.RTol == 0 {
+	if len(cs) == 1 && len(rs) == 1 {
 		return out
 	}
 	for _, c := range cs {
@@ -264,13 +363,37 @@ func corners(n Network) []Network {
 	return out
 }
 
-// powerRating is the next standard resistor power above twice the loss, W; above the largest, twice the loss
-// itself. Common practice; the data sheet's derating line decides.
-func powerRating(w float64) float64 {
-	for _, p := range []float64{0.0625, 0.1, 0.125, 0.25, 0.5, 1, 2, 3, 5, 7, 10, 15, 25, 50, 100} {
-		if p >= 2*w {
-			return p
+// look is the peak and the damping ratio of a network.
+func (v *circuitValues) look(n *Network) (peak, damping float64, err error) {
+	if n.Kind == RCD {
+		return 0, 0, fmt.Errorf("network rcd: %w", ErrNetwork)
+	}
+	peak, damping = v.predict(n)
+	return peak, damping, nil
+}
+
+// settling is the time after which the node stays within band of the bus, with the nominal loop, s: where the envelope of
+// what still rings has fallen to it.
+func (p *Prospect) settling(n Network, band float64) float64 {
+	v := p.nominal
+	v[atCs], v[atRs] = n.C, n.SeriesOhm()
+	r := v.respond()
+	limit := band * v[atE]
+	rate := r.modes.slowest()
+	if r.modes.third {
+		rate = math.Min(rate, -r.modes.p)
+	}
+	if !(rate > 0) {
+		return math.Inf(1)
+	}
+	// The last time outside the band, looked for backwards from where all has died away.
+	end := 0.0
+	span := 20 / rate
+	step := math.Min(span/400, 0.1)
+	for tau := 0.0; tau < span; tau += step {
+		if math.Abs(r.node.at(r.modes.basis(tau))) > limit {
+			end = tau + step
 		}
 	}
-	return 2 * w
+	return end / r.w0
 }
