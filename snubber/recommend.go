@@ -245,7 +245,10 @@ func (p *Prospect) prove(n Network, lim Limits) (*Choice, error) {
 
 // spread fills what the draws say of a choice.
 func (p *Prospect) spread(x *Choice, n Network) error {
-	edge := corners(n)
+	edge, err := p.edges(n)
+	if err != nil {
+		return err
+	}
 	drawn := p.drawn
 	if len(drawn) == 0 {
 		drawn = []circuitValues{p.nominal}
@@ -294,10 +297,64 @@ func (p *Prospect) spread(x *Choice, n Network) error {
 	x.Peak.within(peaks)
 	x.Damping.within(dampings)
 	if len(p.drawn) == 0 { // the loop is known exactly: only the parts are open, and the corners bound them
-		corner(x.Peak, edge, func(n *Network) float64 { v, _, _ := p.nominal.look(n); return v })
-		corner(x.Damping, edge, func(n *Network) float64 { _, d, _ := p.nominal.look(n); return d })
+		all := corners(n)
+		corner(x.Peak, all, func(n *Network) float64 { v, _, _ := p.nominal.look(n); return v })
+		corner(x.Damping, all, func(n *Network) float64 { _, d, _ := p.nominal.look(n); return d })
 	}
 	return nil
+}
+
+// edges are the corners of a network's tolerances at which the peak is highest or the damping least, for the nominal loop
+// or for one moved by two standard uncertainties along any of the fit's directions: the others need not be looked at in every
+// draw.
+func (p *Prospect) edges(n Network) ([]Network, error) {
+	all := corners(n)
+	if len(all) == 1 {
+		return all, nil
+	}
+	extreme := make([]bool, len(all))
+	look := func(v *circuitValues) error {
+		high, low, worst, least := 0.0, 2.0, 0, 0
+		for i := range all {
+			peak, damping, err := v.look(&all[i])
+			if err != nil {
+				return err
+			}
+			if peak > high {
+				high, worst = peak, i
+			}
+			if damping < low {
+				low, least = damping, i
+			}
+		}
+		extreme[worst], extreme[least] = true, true
+		return nil
+	}
+	if err := look(&p.nominal); err != nil {
+		return nil, err
+	}
+	for i := range p.by {
+		for _, steps := range []float64{-2, 2} {
+			v := p.nominal
+			for k := range v {
+				v[k] += steps * (p.by[i][k] - p.nominal[k])
+			}
+			v[atR], v[atI0] = math.Max(v[atR], 0), math.Max(v[atI0], 0)
+			if v[atL] <= 0 || v[atC] <= 0 {
+				continue
+			}
+			if err := look(&v); err != nil {
+				return nil, err
+			}
+		}
+	}
+	var edge []Network
+	for i, x := range extreme {
+		if x {
+			edge = append(edge, all[i])
+		}
+	}
+	return edge, nil
 }
 
 // lattice is the i-th of evenly spread values in -1 to 1, in one of two dimensions (Kronecker's sequence of the plastic

@@ -5,7 +5,9 @@ import (
 	"fmt"
 	"math"
 	"math/rand/v2"
+	"sort"
 	"testing"
+	"time"
 
 	"ringbook/acquire/simbench"
 	"ringbook/snubber"
@@ -186,4 +188,147 @@ func fitStudy(b *testing.B, kind studyKind) {
 	}{{l / boards, "L-held"}, {c / boards, "C-held"}, {z / boards, "Z0-held"}, {r / boards, "r-held"}, {found / wrong, "wrong-found"}, {sound / boards, "sound-lost"}, {widened / boards, "warned"}, {failed / boards, "failed"}, {bias / boards, "C-bias"}} {
 		b.ReportMetric(100*m.share, m.name+"-%")
 	}
+}
+
+// A study of the choice on the same boards: a limit is drawn between the bus and the bare peak, the trials are fitted, a
+// network is recommended, and its parts are tried at the corners of their tolerances on the board itself, integrated. An
+// iteration is a board:
+//
+//	go test ./cmd/ringbook -run '^$' -bench ChoiceStudy -benchtime 500x
+//
+// Reported: the share of boards on which every corner keeps the limit, for the choice and for the rule of thumb; how many
+// times larger the capacitor is than the smallest of the series with which any resistor would have kept it on that board;
+// and the time from trials to choice.
+func BenchmarkChoiceStudy(b *testing.B) {
+	for _, kind := range []studyKind{
+		{name: "linear"},
+		{name: "junction-and-fall", junction: 0.5, fall: 0.3},
+	} {
+		b.Run(kind.name, func(b *testing.B) { choiceStudy(b, kind) })
+	}
+}
+
+const (
+	studyCTol = 0.05
+	studyRTol = 0.01
+)
+
+func choiceStudy(b *testing.B, kind studyKind) {
+	ctx := context.Background()
+	var boards, unmet, held, thumb, thumbLarger float64
+	var ratios []float64
+	var spent time.Duration
+	for b.Loop() {
+		boards++
+		seed := uint64(boards)
+		s, err := makeStudyBoard(kind, seed)
+		if err != nil {
+			b.Fatal(err)
+		}
+		cfg := s.cfg
+		cfg.ProbeF, cfg.Parts.CTol, cfg.Parts.RTol = 0, 0, 0
+		board, err := simbench.New(cfg)
+		if err != nil {
+			b.Fatal(err)
+		}
+		bare, err := board.Respond(ctx, simbench.Network{Kind: simbench.Bare})
+		if err != nil {
+			b.Fatal(err)
+		}
+		rng := rand.New(rand.NewPCG(seed, 23))
+		limit := cfg.BusV + (0.4+0.4*rng.Float64())*(bare.Peak-cfg.BusV)
+		began := time.Now()
+		fit, err := snubber.Fit(ctx, s.trials)
+		if err != nil {
+			b.Fatal(err)
+		}
+		ahead, _, err := fit.Ahead(fit.Hardest(s.trials), 2000, 1)
+		if err != nil {
+			b.Fatal(err)
+		}
+		rec, err := snubber.Recommend(ctx, ahead, snubber.Limits{MaxPeak: limit, SwitchingHz: 100e3, CTol: studyCTol, RTol: studyRTol})
+		if err != nil {
+			b.Fatal(err)
+		}
+		spent += time.Since(began)
+		keeps := func(c, r float64) bool {
+			for _, dc := range []float64{1 - studyCTol, 1 + studyCTol} {
+				for _, dr := range []float64{1 - studyRTol, 1 + studyRTol} {
+					x, err := board.Respond(ctx, simbench.Network{Kind: simbench.RC, C: c * dc, R: r * dr})
+					if err != nil {
+						b.Fatal(err)
+					}
+					if x.Peak > limit {
+						return false
+					}
+				}
+			}
+			return true
+		}
+		if !rec.Met {
+			unmet++
+			continue
+		}
+		if keeps(rec.Choice.C, rec.Choice.R) {
+			held++
+		} else {
+			b.Logf("board %d: limit %.4g V, chosen %.3g ohm %.3g F, predicted %+v worst %.4g", seed, limit, rec.Choice.R, rec.Choice.C, *rec.Choice.Peak, rec.Choice.WorstV)
+		}
+		if keeps(rec.RuleOfThumb.C, rec.RuleOfThumb.R) {
+			thumb++
+		}
+		smallest := smallestThatKeeps(b, rec.Choice, keeps)
+		ratios = append(ratios, rec.Choice.C/smallest)
+		thumbLarger += rec.RuleOfThumb.C / smallest
+	}
+	sort.Float64s(ratios)
+	met := boards - unmet
+	b.ReportMetric(100*held/met, "held-%")
+	b.ReportMetric(100*thumb/met, "thumb-held-%")
+	b.ReportMetric(ratios[len(ratios)/2], "C-ratio-median")
+	b.ReportMetric(ratios[len(ratios)*9/10], "C-ratio-p90")
+	b.ReportMetric(thumbLarger/met, "thumb-C-ratio-mean")
+	b.ReportMetric(100*unmet/boards, "unmet-%")
+	b.ReportMetric(spent.Seconds()/boards*1e3, "ms-to-choice")
+}
+
+// smallestThatKeeps walks down the E12 series from the choice as long as some resistor of E24 near its own keeps the limit,
+// or up where the choice does not.
+func smallestThatKeeps(b *testing.B, x *snubber.Choice, keeps func(c, r float64) bool) float64 {
+	any := func(c float64) bool {
+		// The best resistor goes about as C^-0.4 in this range; the neighbours on both sides are tried.
+		r := x.R * math.Pow(x.C/c, 0.4)
+		rs, err := preferred.E24.Between(r*0.6, r*1.7)
+		if err != nil {
+			b.Fatal(err)
+		}
+		for _, r := range rs {
+			if keeps(c, r) {
+				return true
+			}
+		}
+		return false
+	}
+	c := x.C
+	for range 12 {
+		if any(c) {
+			break
+		}
+		next, err := preferred.E12.Above(c * 1.05)
+		if err != nil {
+			b.Fatal(err)
+		}
+		c = next
+	}
+	for range 12 {
+		next, err := preferred.E12.Below(c / 1.05)
+		if err != nil {
+			b.Fatal(err)
+		}
+		if !any(next) {
+			return c
+		}
+		c = next
+	}
+	return c
 }
