@@ -41,6 +41,11 @@ type Network struct {
 	ESR       float64 // ohm, >= 0: the capacitor's equivalent series resistance; 0: none
 	MeasuredC float64 // F: the capacitor as measured on a meter; 0: not measured
 	MeasuredU float64 // F: standard uncertainty of MeasuredC
+
+	// TurnOff takes these in; Respond, of ideal parts, leaves them out.
+	RInductance float64 // H, >= 0 for rc and rcd: the resistor's own, in series with R; 0: a non-inductive resistor
+	DiodeDrop   float64 // V, >= 0 for rcd: the diode's forward voltage at no current; 0: none
+	DiodeOhm    float64 // ohm, >= 0 for rcd: the diode's on-resistance; 0: none, the diode holds its drop at any current
 }
 
 // SeriesOhm is all the resistance in series with the network's capacitor, ohm.
@@ -66,6 +71,22 @@ func (n Network) Check() error {
 		return fmt.Errorf("r_tol = %g: a tolerance is a fraction from 0 to 1, such as 0.05 or 5%%", n.RTol)
 	case !(n.ESR >= 0) || math.IsInf(n.ESR, 0):
 		return fmt.Errorf("esr = %g ohm: it must be zero or a positive, finite number", n.ESR)
+	}
+	for _, x := range []struct {
+		what, unit string
+		value      float64
+		has        bool
+	}{
+		{"inductance of the resistor", "H", n.RInductance, n.Kind.HasR()},
+		{"diode drop", "V", n.DiodeDrop, n.Kind == RCD},
+		{"diode on-resistance", "ohm", n.DiodeOhm, n.Kind == RCD},
+	} {
+		switch {
+		case !(x.value >= 0) || math.IsInf(x.value, 0):
+			return fmt.Errorf("%s %g %s: it must be zero or a positive, finite number", x.what, x.value, x.unit)
+		case x.value != 0 && !x.has:
+			return fmt.Errorf("network %s with a %s of %g %s: it has no such part; leave it zero", n.Kind, x.what, x.value, x.unit)
+		}
 	}
 	return nil
 }
