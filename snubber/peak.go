@@ -48,18 +48,20 @@ func (r Response) turns(offer func(tau float64), done func(tau float64) bool) {
 	tau, ok := m.firstZero(g0, y3-m.p*s.y2)
 	slow := math.Min(-m.p, m.slowest())
 	from := 0.0
-	rising := true // E > 0 or I0 > 0: the node starts upwards
+	before := s.y1 // the slope where the stretch begins; E > 0 or I0 > 0, so that the node starts upwards
+	rising := true
 	for n := 0; n < maxTurns; n++ {
 		to := tau
 		// No further zero of g, or one so late that all has died away (60 time constants): the last stretch.
 		if late := from + 60/slow; !ok || to > late {
 			to, ok = late, false
 		}
-		falls := m.slope(s, m.basis(to)) < 0
+		after := m.slope(s, m.basis(to))
+		falls := after < 0
 		if rising && falls {
-			offer(m.turn(s, from, to))
+			offer(m.turn(s, from, to, before, after))
 		}
-		rising = !falls
+		rising, before = !falls, after
 		if !ok || done(to) {
 			return
 		}
@@ -72,9 +74,13 @@ func (r Response) turns(offer func(tau float64), done func(tau float64) bool) {
 	}
 }
 
-// turn is the one zero of the slope of s in [lo, hi], rising before and falling after it.
-func (m modes) turn(s series, lo, hi float64) float64 {
+// turn is the one zero of the slope of s in [lo, hi], where it has the values a >= 0 and b < 0.
+func (m modes) turn(s series, lo, hi, a, b float64) float64 {
 	tau := (lo + hi) / 2
+	// In a short stretch the chord is the better start; in a long one the slope has all but died away at its end.
+	if 5*-b > a && a > 0 {
+		tau = lo + (hi-lo)*a/(a-b)
+	}
 	for range 100 {
 		b := m.basis(tau)
 		f := m.slope(s, b)
@@ -88,10 +94,12 @@ func (m modes) turn(s series, lo, hi float64) float64 {
 		if !(next > lo && next < hi) {
 			next = (lo + hi) / 2
 		}
-		if math.Abs(next-tau) <= 1e-14*tau {
+		// Newton's error squares from step to step: what is left after a step this small is rounding.
+		small := math.Abs(next-tau) <= 1e-8*tau
+		tau = next
+		if small {
 			break
 		}
-		tau = next
 	}
 	return tau
 }
