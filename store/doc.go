@@ -1,6 +1,6 @@
 // Package store is the logbook: boards and their revisions, and every trial made on them, in one SQLite file.
 //
-// A logbook is written once. A trial, its readings, its waveforms and its strikes are rows that are added and never
+// A logbook is written once. A trial, its readings, its waveforms and its strikes, and a decision are rows that are added and never
 // changed, replaced or deleted; triggers in the file itself refuse that to any program that does not first drop them. A
 // trial found to be wrong is struck: a row with the reason, beside the trial, which stays readable. What Add has
 // acknowledged is on the disk: the file is kept in write-ahead-log mode with synchronous FULL, and a process killed at any
@@ -10,7 +10,8 @@
 // without touching it.
 //
 // Open makes or opens a logbook; Add logs one trial, AddAll many or none; Trials streams those in a Scope, Trial finds one
-// by its id or the end of it, Strike marks one as wrong. ReadCSV and WriteCSV carry trials in and out as CSV. What a person
+// by its id or the end of it, Strike marks one as wrong. AddDecision logs what was recommended with the trials it rests on
+// and their TrialsDigest, Decisions and Decision give it back, DecisionTrials its trials. ReadCSV and WriteCSV carry trials in and out as CSV. What a person
 // has to know of a file that cannot be used is a Fault: the path, what is wrong, and the cure.
 //
 // # The file
@@ -51,4 +52,40 @@
 // table trial. For example, the fastest bare ring of each revision:
 //
 //	SELECT board, revision, max(ring_hz) FROM trial_table WHERE struck IS NULL AND network = 'bare' GROUP BY 1, 2;
+//
+// # The view decision_table
+//
+// Since schema 2, a row for each decision: what was recommended, what was predicted of it, and for what.
+//
+//	id              the decision's identity, a UUID version 7 in text
+//	board           the board's name
+//	revision        the board revision's name
+//	network         what was recommended: c, rc, rcd
+//	c               its capacitor, F
+//	c_tol           bound of the capacitor's error as a fraction of c
+//	r               its resistor, ohm
+//	r_tol           bound of the resistor's error as a fraction of r
+//	limit_v         the peak it is to stay under, V
+//	peak_v          the peak predicted, V
+//	peak_v_u        its standard uncertainty (k = 1), V
+//	peak_v_low      lower end of its 95 % interval, V
+//	peak_v_high     upper end of it, V
+//	damping_ratio   damping ratio of the least damped pair
+//	loss_w          what the ring and the network lose, W
+//	bus_v           the operating point it was made for: bus voltage, V
+//	excitation_a    and loop current at the instant the switch lets go, A
+//	switching_hz    and switching frequency, Hz
+//	inductance_h    the loop it was made for: inductance, H
+//	capacitance_f   capacitance, F
+//	resistance_ohm  loss resistance, ohm; NULL where no decay was read
+//	at              when it was made, as in trial_table
+//	trials          how many trials it rests on
+//	struck          how many of these have been struck since
+//	digest          SHA-256 of these trials as they were; TrialsDigest says of what text
+//
+// Table decision_trial names the trials, and decision.recommendation keeps the whole answer as JSON. What was then measured
+// with the network recommended, for example:
+//
+//	SELECT d.id, d.peak_v, t.peak_v FROM decision_table d JOIN trial_table t USING (board, revision, network)
+//	WHERE t.at >= d.at AND t.c = d.c AND t.r IS d.r AND t.struck IS NULL;
 package store

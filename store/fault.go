@@ -14,15 +14,16 @@ import (
 // What can be wrong with a logbook's file or with what was asked of it. Test for them with errors.Is; the error itself
 // is a Fault, or a sentence that names the trial.
 var (
-	ErrMissing  = errors.New("no logbook there")
-	ErrStranger = errors.New("not a logbook")
-	ErrNewer    = errors.New("from a newer version")
-	ErrReadOnly = errors.New("not writable")
-	ErrDamaged  = errors.New("damaged")
-	ErrBusy     = errors.New("busy")
-	ErrFull     = errors.New("no room on the disk")
-	ErrNoTrial  = errors.New("no such trial")
-	ErrStruck   = errors.New("already struck")
+	ErrMissing    = errors.New("no logbook there")
+	ErrStranger   = errors.New("not a logbook")
+	ErrNewer      = errors.New("from a newer version")
+	ErrReadOnly   = errors.New("not writable")
+	ErrDamaged    = errors.New("damaged")
+	ErrBusy       = errors.New("busy")
+	ErrFull       = errors.New("no room on the disk")
+	ErrNoTrial    = errors.New("no such trial")
+	ErrNoDecision = errors.New("no such decision")
+	ErrStruck     = errors.New("already struck")
 )
 
 // Fault is a logbook's file that cannot be used as asked, with the cure.

@@ -53,7 +53,8 @@ func open(ctx context.Context, path string, wait time.Duration) (*Logbook, error
 }
 
 // OpenReadOnly opens the logbook at path for reading alone. It works on a write-protected file or folder, where a
-// logbook that was closed in an orderly way is read as it stands.
+// logbook that was closed in an orderly way is read as it stands. One of an older schema is read as it is: a migration only
+// adds, and what was not there then reads as none.
 //
 // Errors are of kind ErrMissing, ErrStranger, ErrNewer, ErrDamaged or ErrBusy.
 func OpenReadOnly(ctx context.Context, path string) (*Logbook, error) {
@@ -86,9 +87,8 @@ func openToRead(ctx context.Context, path, mode string) (*Logbook, error) {
 	case err != nil:
 	case version > latest:
 		err = newer(path, version, latest)
-	case version < latest:
-		err = &Fault{Path: path, Kind: ErrReadOnly, What: fmt.Sprintf("its schema is version %d and this ringbook reads %d", version, latest),
-			Cure: "open it once for writing, which brings it up to date"}
+	case version < 1:
+		err = &Fault{Path: path, Kind: ErrStranger, What: "it is marked as a logbook and holds no schema of one", Cure: "name another file; this one was left as it is"}
 	}
 	if err != nil {
 		return nil, errors.Join(err, db.Close())

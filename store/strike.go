@@ -29,14 +29,14 @@ func ShortID(id string) string {
 // Trial gives one trial, struck or not, by its id or by the last 6 or more characters of it. Errors are of kind
 // ErrNoTrial where there is none.
 func (lb *Logbook) Trial(ctx context.Context, id string) (snubber.Trial, error) {
-	seq, _, err := find(ctx, lb.db, id)
+	seq, _, err := aTrial.find(ctx, lb.db, id)
 	if err != nil {
 		return snubber.Trial{}, explain(lb.path, err)
 	}
 	for t, err := range lb.stream(ctx, "SELECT seq, at FROM trial WHERE seq = ?", []any{seq}) {
 		return t, err
 	}
-	return snubber.Trial{}, noTrial(id)
+	return snubber.Trial{}, aTrial.none(id)
 }
 
 // Strike marks a trial as wrong, with the reason. The trial stays readable, and leaves every fit. It is named as for
@@ -52,7 +52,7 @@ func (lb *Logbook) Strike(ctx context.Context, id, because string) error {
 		return fmt.Errorf("strike trial %s: the reason has %d bytes; it may have %d", quote(id), len(because), maxText)
 	}
 	err := lb.write(ctx, func(w *writer) error {
-		seq, full, err := find(ctx, w.conn, id)
+		seq, full, err := aTrial.find(ctx, w.conn, id)
 		if err != nil {
 			return err
 		}
@@ -76,13 +76,25 @@ type querier interface {
 	QueryContext(ctx context.Context, query string, args ...any) (*sql.Rows, error)
 }
 
-// find is the row number and the full id of the trial that id names.
-func find(ctx context.Context, db querier, id string) (seq int64, full string, err error) {
+// entry is a kind of row that a person may name by the end of its id.
+type entry struct {
+	table string // and the word for it
+	kind  error  // where there is none
+	ids   string // where a person finds them
+}
+
+var (
+	aTrial    = entry{"trial", ErrNoTrial, "its history"}
+	aDecision = entry{"decision", ErrNoDecision, "its view decision_table"}
+)
+
+// find is the row number and the full id of the entry that id names.
+func (e entry) find(ctx context.Context, db querier, id string) (seq int64, full string, err error) {
 	end := strings.ToLower(strings.TrimSpace(id))
 	if len(end) < leastID || len(end) > 36 || strings.Trim(end, "0123456789abcdef-") != "" {
-		return 0, "", fmt.Errorf("trial %s: %w: name a trial by its id, or by the last %d or more characters of it", quote(id), ErrNoTrial, leastID)
+		return 0, "", fmt.Errorf("%s %s: %w: name a %s by its id, or by the last %d or more characters of it", e.table, quote(id), e.kind, e.table, leastID)
 	}
-	rows, err := db.QueryContext(ctx, `SELECT seq, id FROM trial WHERE substr(id, ?) = ? ORDER BY id LIMIT 4`, -len(end), end)
+	rows, err := db.QueryContext(ctx, `SELECT seq, id FROM `+e.table+` WHERE substr(id, ?) = ? ORDER BY id LIMIT 4`, -len(end), end)
 	if err != nil {
 		return 0, "", err
 	}
@@ -98,13 +110,13 @@ func find(ctx context.Context, db querier, id string) (seq int64, full string, e
 	case rows.Err() != nil:
 		return 0, "", rows.Err()
 	case len(found) == 0:
-		return 0, "", noTrial(id)
+		return 0, "", e.none(id)
 	case len(found) > 1:
-		return 0, "", fmt.Errorf("trial %s: more than one id ends so: %s; give more of it", quote(id), strings.Join(found, ", "))
+		return 0, "", fmt.Errorf("%s %s: more than one id ends so: %s; give more of it", e.table, quote(id), strings.Join(found, ", "))
 	}
 	return seq, full, nil
 }
 
-func noTrial(id string) error {
-	return fmt.Errorf("trial %s: %w in this logbook; see the ids in its history", quote(id), ErrNoTrial)
+func (e entry) none(id string) error {
+	return fmt.Errorf("%s %s: %w in this logbook; see the ids in %s", e.table, quote(id), e.kind, e.ids)
 }
