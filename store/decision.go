@@ -137,7 +137,7 @@ func checkDecision(d Decision) error {
 		value  float64
 		zero   bool // whether zero means "not stated"
 	}{
-		{"limit_v", d.LimitV, false}, {"peak_v", d.Peak.Value, false}, {"peak_v_u", d.Peak.U, true}, {"peak_v_low", d.Peak.Low, false},
+		{"limit_v", d.LimitV, false}, {"peak_v", d.Peak.Value, false}, {"peak_v_u", d.Peak.U, true},
 		{"damping_ratio", d.Damping, true}, {"loss_w", d.LossW, true}, {"bus_v", d.Excitation.Bus, false},
 		{"excitation_a", d.Excitation.Current, true}, {"switching_hz", d.SwitchingHz, true},
 	} {
@@ -145,8 +145,8 @@ func checkDecision(d Decision) error {
 			return bad(f.column, "%g; it must be a positive, finite number", f.value)
 		}
 	}
-	if !(d.Peak.Low <= d.Peak.Value && d.Peak.Value <= d.Peak.High) || math.IsInf(d.Peak.High, 0) {
-		return bad("peak_v", "%g outside its own interval from %g to %g", d.Peak.Value, d.Peak.Low, d.Peak.High)
+	if !(d.Peak.Low <= d.Peak.High) || !finite(d.Peak.Low) || !finite(d.Peak.High) {
+		return bad("peak_v", "an interval from %g to %g; its ends must be finite numbers in order", d.Peak.Low, d.Peak.High)
 	}
 	if raw, err := hex.DecodeString(d.Digest); err != nil || len(raw) != 32 || d.Digest != hex.EncodeToString(raw) {
 		return bad("digest", "%s is not a SHA-256 in 64 lower-case hexadecimal digits; make it with TrialsDigest", quote(d.Digest))

@@ -172,7 +172,7 @@ func TestWhatIsNoDecision(t *testing.T) {
 		"limit_v: 0":                   func(d *Decision) { d.LimitV = 0 },
 		"peak_v: NaN":                  func(d *Decision) { d.Peak.Value = math.NaN() },
 		"peak_v_u: -1":                 func(d *Decision) { d.Peak.U = -1 },
-		"outside its own interval":     func(d *Decision) { d.Peak.Low = 75 },
+		"from 76 to 75.75":             func(d *Decision) { d.Peak.Low = 76 },
 		"from 73.25 to +Inf":           func(d *Decision) { d.Peak.High = math.Inf(1) },
 		"damping_ratio: +Inf":          func(d *Decision) { d.Damping = math.Inf(1) },
 		"bus_v: 0":                     func(d *Decision) { d.Excitation.Bus = 0 },
@@ -228,8 +228,8 @@ func TestDecisionsStay(t *testing.T) {
 	}
 	// What no program may log.
 	for set, value := range map[string]string{
-		"": "", // as it is
-		"limit_v": "0", "peak_v": "9e999", "peak_v_low": "99", "peak_v_high": "1", "network": "'bare'", "r": "NULL", "c": "-1",
+		"":        "", // as it is
+		"limit_v": "0", "peak_v": "9e999", "peak_v_low": "-9e999", "peak_v_high": "1", "network": "'bare'", "r": "NULL", "c": "-1",
 		"digest": "upper(digest)", "recommendation": "'{'", "at": "'2026-03-01'", "inductance_h": "NULL", "excitation_a": "-1", "revision": "99",
 	} {
 		columns := "revision, at, network, c, r, limit_v, peak_v, peak_v_low, peak_v_high, bus_v, excitation_a, inductance_h, capacitance_f, digest, recommendation"

@@ -14,8 +14,8 @@ CREATE TABLE decision (
   limit_v        REAL NOT NULL CHECK (limit_v > 0 AND limit_v < 9e999),  -- the peak it is to stay under
   peak_v         REAL NOT NULL CHECK (peak_v > 0 AND peak_v < 9e999),    -- the peak predicted
   peak_v_u       REAL CHECK (peak_v_u > 0 AND peak_v_u < 9e999),         -- its standard uncertainty (k = 1)
-  peak_v_low     REAL NOT NULL CHECK (peak_v_low > 0 AND peak_v_low <= peak_v),
-  peak_v_high    REAL NOT NULL CHECK (peak_v_high >= peak_v AND peak_v_high < 9e999),
+  peak_v_low     REAL NOT NULL CHECK (abs(peak_v_low) < 9e999),       -- its 95 % interval
+  peak_v_high    REAL NOT NULL CHECK (peak_v_high >= peak_v_low AND peak_v_high < 9e999),
   damping_ratio  REAL CHECK (damping_ratio > 0 AND damping_ratio < 9e999), -- of the least damped pair
   loss_w         REAL CHECK (loss_w > 0 AND loss_w < 9e999),
   bus_v          REAL NOT NULL CHECK (bus_v > 0 AND bus_v < 9e999),               -- the operating point it was made for
