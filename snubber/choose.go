@@ -35,7 +35,7 @@ func choose(ctx context.Context, obs *observations, start []float64) (*outcome, 
 		var better *outcome
 		var with effect
 		for e := range noEffects {
-			if contains(used, e) || !obs.shows(e) {
+			if contains(used, e) || !obs.shows(e) || !best.misses(e) {
 				continue
 			}
 			m := newModel(obs, append(append([]effect{}, used...), e)...)
@@ -138,6 +138,40 @@ func (o *outcome) criterion() float64 {
 		return math.Inf(1)
 	}
 	return o.fit.Chi2 + 2*k + 2*k*(k+1)/(n-k-1)
+}
+
+// misses says whether the kind of reading that an effect bears on is less than well explained: the frequencies (with the
+// parts' errors that explain them) for the leads, the peaks for the fall time, either for the junction. Where a trial was set
+// aside anything may have done it.
+func (o *outcome) misses(e effect) bool {
+	if len(o.aside) > 0 {
+		return true
+	}
+	var sum, n [3]float64
+	var b leastsq.Block
+	for _, i := range o.kept {
+		x := &o.model.obs.list[i]
+		o.model.eval(x, o.fit.P, o.fit.D, false, &b)
+		row := 0
+		for k, v := range x.value {
+			if !math.IsNaN(v) {
+				sum[k] += b.R[row] * b.R[row]
+				n[k]++
+				row++
+			}
+		}
+	}
+	for _, d := range o.fit.D {
+		sum[ringAt] += d * d
+	}
+	poor := func(k int) bool { return n[k] > 0 && (distuv.ChiSquared{K: n[k]}).Survival(sum[k]) < 0.5 }
+	switch e {
+	case lead:
+		return poor(ringAt)
+	case fallTime:
+		return poor(peakAt)
+	}
+	return poor(ringAt) || poor(peakAt)
 }
 
 // shows says whether the readings can show an effect at all.

@@ -161,10 +161,13 @@ func (p *Prospect) bestResistor(k Kind, c float64, rs []float64, lim Limits) (*c
 	if !k.HasR() {
 		rs = []float64{0}
 	} else if lim.MinDamping == 0 && lim.SettleS == 0 && len(rs) > 5 {
+		// Effects move the peak and hardly the resistor: without them the way to it is short.
+		plain := p.nominal
+		plain[atFall], plain[atLead], plain[atShare] = 0, 0, 0
 		at, low := 0, math.Inf(1)
 		for i, r := range rs {
 			n := lim.network(k, r, c)
-			peak, _, err := p.nominal.look(&n)
+			peak, _, err := plain.look(&n)
 			if err != nil {
 				return nil, err
 			}
