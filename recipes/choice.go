@@ -107,6 +107,7 @@ func ChoicePage(p *page.Page, fit *snubber.FitResult, rec *snubber.Recommendatio
 		choiceRow(t, "alternative", &rec.Alternatives[i])
 	}
 	choiceRow(t, "rule of thumb", rec.RuleOfThumb).Note("R next to Z0 and C three times the loop's: common practice")
+	t.Note("at worst: what the worst corner of the parts' tolerances keeps on 99 %% of the loops that the trials allow")
 	t.Note("loss is that of the ring and the network: in R, in the switch at turn-on, in the loop")
 	p.Table(t)
 	if rec.Met {

@@ -72,7 +72,7 @@ func unlessRead(e *snubber.Estimate, remark string) string {
 
 // choiceRow adds one network to a table made by choiceTable.
 func choiceRow(t *page.Table, what string, c *snubber.Choice) *page.Row {
-	return t.Row(what, orNone(c.R), orNone(c.C), c.Peak.Value, c.Peak, c.Damping.Value, c.LossW, c.ResistorW)
+	return t.Row(what, orNone(c.R), orNone(c.C), c.Peak.Value, c.WorstV, c.Damping.Value, c.LossW, c.ResistorW)
 }
 
 // choiceTable compares networks.
@@ -82,7 +82,7 @@ func choiceTable(title string) *page.Table {
 		page.Part("R", quantity.Resistance, "r_ohm"),
 		page.Part("C", quantity.Capacitance, "c_f"),
 		page.Number("peak", quantity.Voltage, "peak_v"),
-		page.Interval("in tolerance", quantity.Voltage, "peak_v"),
+		page.Number("at worst", quantity.Voltage, "worst_v"),
 		page.Number("damping ratio", quantity.Ratio, "damping_ratio"),
 		page.Number("loss", quantity.Power, "loss_w"),
 		page.Number("in R", quantity.Power, "resistor_w"),
