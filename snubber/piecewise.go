@@ -50,16 +50,18 @@ func (y *expSum) envelope(t float64) float64 {
 	return sum
 }
 
-// Rounding of y against its terms, below which it is zero, and of its derivatives, below which they tell no sign.
+// Parts of the sum of its terms' sizes, below which y is zero, y is zero where a walk starts (at an instant found before, in
+// other terms), and a derivative tells no sign.
 const (
 	roundedZero  = 1e-15
+	roundedStart = 1e-9
 	roundedSlope = 1e-10
 )
 
 // maxSteps bounds the steps to one zero: some ten to a turn of the fastest pole.
 const maxSteps = 1_000_000
 
-// crossing is what nextZero finds.
+// zero is what nextZero finds.
 type zero struct {
 	t     float64
 	found bool
@@ -76,8 +78,7 @@ type zero struct {
 func (y *expSum) nextZero(from, limit float64) zero {
 	t, sign, push := from, 0.0, 0.0
 	for range maxSteps {
-		var f, g, m, size float64
-		f, size = y.c, math.Abs(y.c)
+		f, g, m, size := y.c, 0.0, 0.0, math.Abs(y.c)
 		var e [4]complex128
 		for k := range y.p.n {
 			s := y.p.s[k]
@@ -89,23 +90,22 @@ func (y *expSum) nextZero(from, limit float64) zero {
 			return zero{t: limit, sign: sign}
 		}
 		var step float64
-		switch none := math.Abs(f) <= roundedZero*size; {
-		case sign == 0 && none, push > 0 && none: // at from, or not yet away from it
-			var side float64
-			if side, step = y.p.depart(&e); step == 0 {
+		switch {
+		case sign == 0 && math.Abs(f) <= roundedStart*size, push > 0 && f*sign <= 0: // at from, or not yet away from it
+			side, far := y.p.depart(&e)
+			if far == 0 {
 				return zero{t: limit, sign: sign}
 			}
 			if sign == 0 {
 				sign = side
 			}
-			push = 2 * max(push, step/2)
+			push = max(2*push, far)
 			step = push
-		case sign == 0:
-			sign = math.Copysign(1, f)
-			fallthrough
+		case sign != 0 && f*sign <= roundedZero*size:
+			return zero{t: t, found: true, sign: sign}
 		default:
-			if none || f*sign < 0 {
-				return zero{t: t, found: true, sign: sign}
+			if sign == 0 {
+				sign = math.Copysign(1, f)
 			}
 			push = 0
 			f, g = f*sign, g*sign

@@ -1,0 +1,58 @@
+package snubber
+
+import "math"
+
+// tail is the rest of an edge in which a diode without a drop goes on switching for ever.
+//
+// With no drop the circuit's equations are the same for a state and for any positive multiple of it. The diode then conducts
+// once in every turn of the ring however small that is, and the turns soon come to repeat, each the one before times k < 1 in
+// the same time: what is left is a geometric series, k/(1 - k) of the last turn's charge and k^2/(1 - k^2) of its energies.
+type tail struct {
+	from, period float64 // of the last turn walked; period 0: there is no tail
+	k            float64
+}
+
+// cycle is an edge at an instant at which the diode begins to conduct.
+type cycle struct {
+	at float64
+	x  state
+	sums
+}
+
+// repeating is how nearly a turn must be a multiple of the one before, for all that follow to be taken as such.
+const repeating = 1e-9
+
+// repeats adds the tail where the turn from a to b is one that repeats.
+func (w *walk) repeats(a, b cycle) bool {
+	before, after := w.c.stored(a.x), w.c.stored(b.x)
+	if before == 0 || after >= before {
+		return false
+	}
+	k := math.Sqrt(after / before)
+	var off state
+	for i := range off {
+		off[i] = b.x[i] - k*a.x[i]
+	}
+	if w.c.stored(off) > repeating*repeating*after {
+		return false
+	}
+	w.tail = tail{a.at, b.at - a.at, k}
+	w.ends = math.Inf(1)
+	part := after / (before - after) // k^2/(1-k^2)
+	w.charge += (b.charge - a.charge) * (part + math.Sqrt(part*(1+part)))
+	w.square += (b.square - a.square) * part
+	w.energy.Resistor += (b.energy.Resistor - a.energy.Resistor) * part
+	w.energy.ESR += (b.energy.ESR - a.energy.ESR) * part
+	w.energy.Loop += (b.energy.Loop - a.energy.Loop) * part
+	w.energy.Diode += (b.energy.Diode - a.energy.Diode) * part
+	return true
+}
+
+// back is the instant of the last turn walked that tau repeats, and how much smaller all is at tau.
+func (t tail) back(tau float64) (float64, float64) {
+	if t.period == 0 || tau < t.from+t.period {
+		return tau, 1
+	}
+	n := math.Floor((tau - t.from) / t.period)
+	return tau - n*t.period, math.Pow(t.k, n)
+}
