@@ -105,25 +105,35 @@ func (d *demo) run(ctx context.Context) error {
 	if err != nil {
 		return err
 	}
-	c := rec.Choice
-	if err := d.trial(ctx, snubber.Network{Kind: c.Network, C: c.C, CTol: demoCTol, R: c.R, RTol: demoRTol}); err != nil {
-		return err
-	}
-	trials, err := src.Trials(ctx)
-	if err != nil {
-		return err
-	}
-	proof, err := snubber.Confirm(c, rec.LimitV, trials)
-	if err != nil {
-		return err
+	var proof *recipes.Confirmation
+	if rec.Met {
+		if proof, err = d.prove(ctx, src, fit, rec); err != nil {
+			return err
+		}
 	}
 	if err := d.report(ctx, src, fit, rec, proof); err != nil {
 		return err
 	}
-	if !rec.Met || !proof.Agrees || !proof.Keeps {
+	if proof == nil || !proof.Confirmed {
 		return errNo
 	}
 	return nil
+}
+
+// prove logs the recommendation, fits it on the bench, and holds the peak it then measures against the prediction.
+func (d *demo) prove(ctx context.Context, src recipes.Source, fit *snubber.FitResult, rec *snubber.Recommendation) (*recipes.Confirmation, error) {
+	id, _, err := recipes.Decide(ctx, d.lb, src, fit, rec)
+	if err != nil {
+		return nil, err
+	}
+	decision, err := d.lb.Decision(ctx, id)
+	if err != nil {
+		return nil, err
+	}
+	if err := d.trial(ctx, decision.Network); err != nil {
+		return nil, err
+	}
+	return recipes.Confirm(ctx, src, decision)
 }
 
 // trial fits a network on the bench, reads it and logs it.
@@ -150,7 +160,7 @@ func (d *demo) trial(ctx context.Context, n snubber.Network) error {
 	return nil
 }
 
-func (d *demo) report(ctx context.Context, src recipes.Source, fit *snubber.FitResult, rec *snubber.Recommendation, proof *snubber.Confirmation) error {
+func (d *demo) report(ctx context.Context, src recipes.Source, fit *snubber.FitResult, rec *snubber.Recommendation, proof *recipes.Confirmation) error {
 	hidden := d.bench.Truth()
 	if d.json {
 		return d.printJSON(map[string]any{"fit": fit, "recommendation": rec, "confirmation": proof, "logbook": d.lb.Path(),
@@ -163,7 +173,11 @@ func (d *demo) report(ctx context.Context, src recipes.Source, fit *snubber.FitR
 	choice := page.New("What to fit")
 	recipes.ChoicePage(choice, fit, rec)
 	verdict := page.New("Prediction and measurement")
-	recipes.Proof(verdict, proof)
+	if proof != nil {
+		recipes.Proof(verdict, proof)
+	} else {
+		verdict.Say("Nothing was fitted, so nothing is measured.")
+	}
 	history := page.New("History")
 	if err := recipes.History(ctx, history, src); err != nil {
 		return err

@@ -1,11 +1,15 @@
 package main
 
 import (
+	"context"
+	"fmt"
+
 	"ringbook/recipes"
 	"ringbook/recipes/page"
 	"ringbook/snubber"
 	"ringbook/snubber/preferred"
 	"ringbook/snubber/quantity"
+	"ringbook/store"
 
 	"github.com/spf13/cobra"
 )
@@ -18,12 +22,16 @@ func recommendCommand(a *app) *cobra.Command {
 	var hz quantity.Hertz
 	cSeries, rSeries := preferred.E12, preferred.E24
 	network := "rc"
+	var noRecord bool
 	cmd := &cobra.Command{
 		Use:   "recommend",
 		Short: "R and C, ratings, losses, alternatives",
 		Long: `recommend fits the trials in scope and gives the RC network of least loss whose peak, with the parts anywhere in
 tolerance, stays under the limit: --max-peak, or the board's device rating times --derate. When nothing keeps the
-limits the nearest miss is shown and the exit code is 3.`,
+limits the nearest miss is shown and the exit code is 3.
+
+A network that keeps them is logged as a decision with the trials it rests on, for ringbook confirm to hold what is then
+measured against; asked the same of the same trials, the decision stands. With --no-record the logbook stays as it is.`,
 		Example: `  ringbook recommend --board winch-drive --revision B --max-peak 80V
   ringbook recommend --max-peak 80V --c-tol 5% --r-tol 1% --c-series E6 --json`,
 		Args: words(0, 0),
@@ -59,8 +67,17 @@ limits the nearest miss is shown and the exit code is 3.`,
 			if err != nil {
 				return err
 			}
+			var decision *string
+			if rec.Met && !noRecord {
+				if decision, err = a.decide(ctx, src, fit, rec); err != nil {
+					return err
+				}
+			}
 			if a.json {
-				err = a.printJSON(rec)
+				err = a.printJSON(struct {
+					*snubber.Recommendation
+					Decision *string `json:"decision"` // its id; null where none was logged
+				}{rec, decision})
 			} else {
 				p := page.New("Network for " + src.Scope.Board + " " + src.Scope.Revision)
 				recipes.ChoicePage(p, fit, rec)
@@ -83,7 +100,34 @@ limits the nearest miss is shown and the exit code is 3.`,
 	f.Var(&rTol, "r-tol", "tolerance of the resistor to buy, such as 1%")
 	f.Var(&cSeries, "c-series", "IEC 60063 series of the capacitor")
 	f.Var(&rSeries, "r-series", "IEC 60063 series of the resistor")
+	f.BoolVar(&noRecord, "no-record", false, "log no decision")
 	f.StringVar(&network, "network", network, "`KIND` to recommend: rc, or any")
 	completes(cmd, "network", "rc", "any")
 	return cmd
+}
+
+// decide logs the recommendation as a decision and says so. The answer does not depend on the log: where it cannot be
+// written, that is one more warning, and the id is nil.
+func (a *app) decide(ctx context.Context, src recipes.Source, fit *snubber.FitResult, rec *snubber.Recommendation) (id *string, err error) {
+	logged, fresh, err := func() (id string, fresh bool, err error) {
+		lb, err := a.open(ctx)
+		if err != nil {
+			return "", false, err
+		}
+		defer closing(lb, &err)
+		return recipes.Decide(ctx, lb, src, fit, rec)
+	}()
+	switch {
+	case err != nil && ctx.Err() != nil:
+		return nil, err
+	case err != nil:
+		rec.Warnings = append(rec.Warnings, fmt.Sprintf("the decision is not logged, so that nothing can confirm it: %v", err))
+		return nil, nil
+	case a.json: // its own field says it
+	case fresh:
+		a.progress("decision %s is logged; fit it, take a trial, and hold that against it with `ringbook confirm`", store.ShortID(logged))
+	default:
+		a.progress("decision %s stands; hold a trial against it with `ringbook confirm`", store.ShortID(logged))
+	}
+	return &logged, nil
 }
