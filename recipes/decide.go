@@ -13,13 +13,13 @@ import (
 
 // Decide logs a recommendation that meets its limits as a decision, with the trials it rests on, and gives the decision's
 // id. Where the revision's last decision rests on the same trials and says the same, that one stands: fresh is false, and
-// nothing is logged. The logbook it is logged in is open for writing; src may be open for reading alone.
-func Decide(ctx context.Context, to *store.Logbook, src Source, fit *snubber.FitResult, rec *snubber.Recommendation) (id string, fresh bool, err error) {
+// nothing is logged. The logbook must be open for writing.
+func Decide(ctx context.Context, src Source, fit *snubber.FitResult, rec *snubber.Recommendation) (id string, fresh bool, err error) {
 	d, err := decision(ctx, src, fit, rec)
 	if err != nil {
 		return "", false, fmt.Errorf("log the decision: %w", err)
 	}
-	for last, err := range to.Decisions(ctx, store.Scope{Board: d.Board, Revision: d.Revision, Limit: 1}) {
+	for last, err := range src.Logbook.Decisions(ctx, store.Scope{Board: d.Board, Revision: d.Revision, Limit: 1}) {
 		if err != nil {
 			return "", false, err
 		}
@@ -27,7 +27,7 @@ func Decide(ctx context.Context, to *store.Logbook, src Source, fit *snubber.Fit
 			return last.ID, false, nil
 		}
 	}
-	id, err = to.AddDecision(ctx, d)
+	id, err = src.Logbook.AddDecision(ctx, d)
 	return id, err == nil, err
 }
 

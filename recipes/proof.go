@@ -124,7 +124,7 @@ func (c *Confirmation) verdict() string {
 	case c.Agrees && c.Keeps:
 		return "The peak measured agrees with the prediction and stays under the limit."
 	case c.Agrees:
-		return fmt.Sprintf("The peak measured agrees with the prediction and exceeds the limit by %s: the prediction's interval reaches over the limit. Recommend again with this trial among the others, or with more margin.", over)
+		return fmt.Sprintf("The peak measured agrees with the prediction and exceeds the limit by %s: the two are not known well enough to tell them apart, and the limit lies between. Recommend again with this trial among the others, or with more margin.", over)
 	}
 	side, cause := "higher", "a longer path to the capacitor or a capacitor below its value"
 	if off < 0 {

@@ -122,7 +122,7 @@ func (d *demo) run(ctx context.Context) error {
 
 // prove logs the recommendation, fits it on the bench, and holds the peak it then measures against the prediction.
 func (d *demo) prove(ctx context.Context, src recipes.Source, fit *snubber.FitResult, rec *snubber.Recommendation) (*recipes.Confirmation, error) {
-	id, _, err := recipes.Decide(ctx, d.lb, src, fit, rec)
+	id, _, err := recipes.Decide(ctx, src, fit, rec)
 	if err != nil {
 		return nil, err
 	}

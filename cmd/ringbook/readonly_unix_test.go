@@ -32,6 +32,10 @@ func TestReadOnlyLogbook(t *testing.T) {
 		t.Fatal(err)
 	}
 	answer(t, nil, enter...)
+	for _, x := range [][]string{{"bare", "98.77", "87.77e6"}, {"c", "94.68", "74.18e6", "--c", "100p"}, {"c", "88.14", "51.8e6", "--c", "470p"}, {"c", "77.92", "27.35e6", "--c", "2n2"}} {
+		answer(t, nil, append([]string{"trial", "enter", "--board", "winch-drive", "--revision", "B", "--network", x[0], "--peak-v", x[1], "--ring-hz", x[2],
+			"--bus-v", "48V", "--switching-hz", "400k", "--logbook", logbook}, x[3:]...)...)
+	}
 	for path, mode := range map[string]os.FileMode{logbook: 0o444, folder: 0o555, dir: 0o755} {
 		if err := os.Chmod(path, mode); err != nil {
 			t.Fatal(err)
@@ -65,6 +69,14 @@ func TestReadOnlyLogbook(t *testing.T) {
 	}
 	if code, told := call("history", "--logbook", logbook); code != 0 || !strings.Contains(told, "winch-drive") {
 		t.Errorf("reading it: exit code %d: %s", code, told)
+	}
+	// A recommendation needs no writing: it answers, and warns that nothing holds it.
+	code, told := call("recommend", "--max-peak", "80V", "--json", "--logbook", logbook)
+	if code != 0 || !strings.Contains(told, `"met": true`) || !strings.Contains(told, `"decision": null`) || !strings.Contains(told, "the decision is not logged") {
+		t.Errorf("recommending from it: exit code %d: %s", code, told)
+	}
+	if code, told := call("confirm", "--logbook", logbook); code != 1 || !strings.Contains(told, "no decision is logged for winch-drive B") {
+		t.Errorf("confirming from it: exit code %d: %s", code, told)
 	}
 	after, err := os.ReadFile(logbook)
 	if err != nil {

@@ -110,12 +110,15 @@ measured against; asked the same of the same trials, the decision stands. With -
 // written, that is one more warning, and the id is nil.
 func (a *app) decide(ctx context.Context, src recipes.Source, fit *snubber.FitResult, rec *snubber.Recommendation) (id *string, err error) {
 	logged, fresh, err := func() (id string, fresh bool, err error) {
-		lb, err := a.open(ctx)
-		if err != nil {
+		// The last to close the file moves the write-ahead log into it, which one that reads alone cannot do.
+		if err := src.Logbook.Close(); err != nil {
 			return "", false, err
 		}
-		defer closing(lb, &err)
-		return recipes.Decide(ctx, lb, src, fit, rec)
+		if src.Logbook, err = a.open(ctx); err != nil {
+			return "", false, err
+		}
+		defer closing(src.Logbook, &err)
+		return recipes.Decide(ctx, src, fit, rec)
 	}()
 	switch {
 	case err != nil && ctx.Err() != nil:
