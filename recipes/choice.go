@@ -92,7 +92,7 @@ func Choice(ctx context.Context, p *page.Page, src Source) error {
 func ChoicePage(p *page.Page, fit *snubber.FitResult, rec *snubber.Recommendation) {
 	c := rec.Choice
 	if rec.Met {
-		p.Say("Fit **%s in series with %s** across the switch.", quantity.Code(c.R, quantity.Resistance), quantity.Code(c.C, quantity.Capacitance))
+		p.Say("Fit **%s** across the switch.", c.InWords())
 	} else {
 		p.Say("**No network of these series keeps the limits.** The nearest miss is shown.")
 	}

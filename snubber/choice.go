@@ -25,6 +25,8 @@ type Limits struct {
 	OnHandR     []float64        // ohm: choose among these resistors alone; nil: the series
 	CTol        float64          // bound of the capacitor's error, fraction; 0: parts taken as nominal
 	RTol        float64          // bound of the resistor's error, fraction; 0: parts taken as nominal
+	DiodeDrop   float64          // V: forward drop of the diode of an rcd network; 0: 0.8
+	DiodeOhm    float64          // ohm: its on-resistance; 0: 0.1
 }
 
 // Choice is one network with what it is predicted to do.
@@ -72,6 +74,8 @@ func (lim Limits) check(e Excitation) error {
 		return fmt.Errorf("settling within %g s to %g of the bus: the time is positive and the band a fraction, such as 0.05", lim.SettleS, lim.SettleBand)
 	case !(lim.MaxLoss >= 0):
 		return fmt.Errorf("loss limit %g W: it must be zero (no limit) or positive", lim.MaxLoss)
+	case !(lim.DiodeDrop >= 0 && lim.DiodeOhm >= 0) || math.IsInf(lim.DiodeDrop+lim.DiodeOhm, 0):
+		return fmt.Errorf("diode of %g V and %g ohm: both must be zero (the usual) or positive", lim.DiodeDrop, lim.DiodeOhm)
 	case !(lim.CTol >= 0 && lim.CTol < 1) || !(lim.RTol >= 0 && lim.RTol < 1):
 		return fmt.Errorf("part tolerances %g and %g: each is a fraction from 0 to 1, such as 0.05", lim.CTol, lim.RTol)
 	}
@@ -101,6 +105,12 @@ func (lim Limits) filled() Limits {
 	if lim.Kinds == nil {
 		lim.Kinds = []Kind{RC}
 	}
+	if lim.DiodeDrop == 0 {
+		lim.DiodeDrop = 0.8
+	}
+	if lim.DiodeOhm == 0 {
+		lim.DiodeOhm = 0.1
+	}
 	return lim
 }
 
@@ -108,6 +118,9 @@ func (lim Limits) network(k Kind, r, c float64) Network {
 	n := Network{Kind: k, C: c, CTol: lim.CTol}
 	if k.HasR() {
 		n.R, n.RTol = r, lim.RTol
+	}
+	if k == RCD {
+		n.DiodeDrop, n.DiodeOhm = lim.DiodeDrop, lim.DiodeOhm
 	}
 	return n
 }
@@ -129,8 +142,8 @@ func (x *Choice) misses(lim Limits) float64 {
 
 func (x *Choice) keeps(lim Limits) bool { return x.misses(lim) == 0 }
 
-// inWords names a network by its parts.
-func (x *Choice) inWords() string {
+// InWords names a network by its parts.
+func (x *Choice) InWords() string {
 	c, r := quantity.Code(x.C, quantity.Capacitance), quantity.Code(x.R, quantity.Resistance)
 	switch x.Network {
 	case Bare:
@@ -138,14 +151,14 @@ func (x *Choice) inWords() string {
 	case C:
 		return c + " alone"
 	case RCD:
-		return r + " with " + c + " and a diode across the resistor"
+		return r + " in series with " + c + " and a diode across the resistor"
 	}
-	return r + " with " + c
+	return r + " in series with " + c
 }
 
 // cure says what the nearest miss lacks.
 func (lim Limits) cure(x *Choice) string {
-	s := fmt.Sprintf("no network of these parts keeps the limits; the nearest, %s,", x.inWords())
+	s := fmt.Sprintf("no network of these parts keeps the limits; the nearest, %s,", x.InWords())
 	var lacks []string
 	if x.WorstV > lim.MaxPeak {
 		lacks = append(lacks, fmt.Sprintf("peaks at up to %s (allow that much, lower the bus or the current, or shorten the loop)", quantity.Format(x.WorstV, quantity.Voltage, 4)))
@@ -168,5 +181,5 @@ func firstSpike(x *Choice, e Excitation, limit float64) string {
 		return ""
 	}
 	return fmt.Sprintf("the rule of thumb (%s) stops the ring (damping ratio %.2g) and still peaks at %s: that first spike is no ring but the loop current of %s forced through the resistor (%s) while the capacitor charges; a larger capacitor with a smaller resistor lowers it, more resistance does not",
-		x.inWords(), x.Damping.Value, quantity.Format(x.Peak.Value, quantity.Voltage, 4), quantity.Format(e.Current, quantity.Current, 3), quantity.Format(e.Current*x.R, quantity.Voltage, 3))
+		x.InWords(), x.Damping.Value, quantity.Format(x.Peak.Value, quantity.Voltage, 4), quantity.Format(e.Current, quantity.Current, 3), quantity.Format(e.Current*x.R, quantity.Voltage, 3))
 }

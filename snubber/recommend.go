@@ -115,6 +115,7 @@ type candidate struct {
 	network Network
 	loss    float64 // W
 	high    float64 // V: the peak to first order of all uncertainties
+	damping float64 // likewise, at least
 	miss    float64 // how far outside the limits
 }
 
@@ -160,7 +161,7 @@ func (p *Prospect) screen(ctx context.Context, lim Limits) ([]candidate, error) 
 func (p *Prospect) bestResistor(k Kind, c float64, rs []float64, lim Limits) (*candidate, error) {
 	if !k.HasR() {
 		rs = []float64{0}
-	} else if lim.MinDamping == 0 && lim.SettleS == 0 && len(rs) > 5 {
+	} else if k == RC && lim.MinDamping == 0 && lim.SettleS == 0 && len(rs) > 5 {
 		// Effects move the peak and hardly the resistor: without them the way to it is short.
 		plain := p.nominal
 		plain[atFall], plain[atLead], plain[atShare] = 0, 0, 0
@@ -183,11 +184,20 @@ func (p *Prospect) bestResistor(k Kind, c float64, rs []float64, lim Limits) (*c
 		if err != nil {
 			return nil, err
 		}
-		if best == nil || x.miss < best.miss || x.miss == best.miss && x.high < best.high {
+		if best == nil || x.miss < best.miss || x.miss == best.miss && x.better(best) {
 			best = x
 		}
 	}
 	return best, nil
+}
+
+// better says whether, of two networks with the same capacitor that miss the limits alike, x is to be preferred: for its
+// lower peak, or with a diode, which makes the peak the same whatever the resistor, for its damping.
+func (x *candidate) better(y *candidate) bool {
+	if x.network.Kind == RCD {
+		return x.damping > y.damping
+	}
+	return x.high < y.high
 }
 
 // screened is one network to first order.
@@ -226,7 +236,7 @@ func (p *Prospect) screened(n Network, lim Limits) (*candidate, error) {
 	if lim.SettleS > 0 {
 		x.settles = p.settling(n, lim.SettleBand)
 	}
-	return &candidate{network: n, loss: loss.Total, high: x.WorstV, miss: x.misses(lim)}, nil
+	return &candidate{network: n, loss: loss.Total, high: x.WorstV, damping: x.leastDamping, miss: x.misses(lim)}, nil
 }
 
 // some is a quarter of the draws: enough for a network that is shown beside the choice.
@@ -430,12 +440,22 @@ func corners(n Network) []Network {
 }
 
 // look is the peak and the damping ratio of a network.
+//
+// Of a network with a diode across its resistor the peak is the charging diode's: where the node stands highest its slope
+// is zero, so that all the loop's current flows on into the network, forward through the diode. Up to there the circuit is an
+// RC whose resistance is R beside the diode's, with the diode's drop against it; the drop added to that RC's peak bounds it
+// from above (TurnOff has it exactly). Its ring is damped by R once the diode has let go.
 func (v *circuitValues) look(n *Network) (peak, damping float64, err error) {
-	if n.Kind == RCD {
-		return 0, 0, fmt.Errorf("network rcd: %w", ErrNetwork)
+	if n.Kind != RCD {
+		peak, damping = v.predict(n)
+		return peak, damping, nil
 	}
-	peak, damping = v.predict(n)
-	return peak, damping, nil
+	on, off := *n, *n
+	on.Kind, off.Kind = RC, RC
+	on.R = n.R * n.DiodeOhm / (n.R + n.DiodeOhm)
+	peak, _ = v.predict(&on)
+	_, damping = v.predict(&off)
+	return peak + n.DiodeDrop, damping, nil
 }
 
 // settling is the time after which the node stays within band of the bus, with the nominal loop, s: where the envelope of

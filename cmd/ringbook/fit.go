@@ -23,13 +23,9 @@ is set aside, with the reason. At the end it says which capacitor would tell mos
 		Args: words(0, 0),
 		RunE: func(cmd *cobra.Command, args []string) (err error) {
 			ctx := cmd.Context()
-			var caps []float64
-			for _, text := range onHand {
-				var c quantity.Farad
-				if err := c.Set(text); err != nil {
-					return usagef("--on-hand: %w", err)
-				}
-				caps = append(caps, float64(c))
+			caps, err := partsOnHand("on-hand", onHand, func() flagValue { return new(quantity.Farad) })
+			if err != nil {
+				return err
 			}
 			src, err := a.source(ctx, &scope)
 			if err != nil {

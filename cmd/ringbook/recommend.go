@@ -22,26 +22,38 @@ func recommendCommand(a *app) *cobra.Command {
 	var hz quantity.Hertz
 	cSeries, rSeries := preferred.E12, preferred.E24
 	network := "rc"
+	var cOnHand, rOnHand []string
+	var settle quantity.Second
+	var band quantity.Fraction
+	var drop quantity.Volt
+	var diodeOhm quantity.Ohm
 	var noRecord bool
 	cmd := &cobra.Command{
 		Use:   "recommend",
 		Short: "R and C, ratings, losses, alternatives",
-		Long: `recommend fits the trials in scope and gives the RC network of least loss whose peak, with the parts anywhere in
-tolerance, stays under the limit: --max-peak, or the board's device rating times --derate. When nothing keeps the
-limits the nearest miss is shown and the exit code is 3.
+		Long: `recommend fits the trials in scope and gives the network of least loss whose peak, with the parts anywhere in
+tolerance and the loop anywhere the trials allow, stays under the limit: --max-peak, or the board's device rating times
+--derate. When nothing keeps the limits the nearest miss is shown and the exit code is 3.
 
 A network that keeps them is logged as a decision with the trials it rests on, for ringbook confirm to hold what is then
 measured against; asked the same of the same trials, the decision stands. With --no-record the logbook stays as it is.`,
 		Example: `  ringbook recommend --board winch-drive --revision B --max-peak 80V
-  ringbook recommend --max-peak 80V --c-tol 5% --r-tol 1% --c-series E6 --json`,
+  ringbook recommend --max-peak 80V --c-tol 5% --r-tol 1% --c-series E6 --json
+  ringbook recommend --network any --min-damping 30% --c-on-hand 270p,470p,1n0`,
 		Args: words(0, 0),
 		RunE: func(cmd *cobra.Command, args []string) (err error) {
 			ctx := cmd.Context()
-			if network != "rc" && network != "any" {
-				if _, err := snubber.ParseKind(network); err != nil || network == string(snubber.Bare) {
-					return usagef("--network %q: it must be one of rc, c, rcd, any", network)
-				}
-				return usagef("--network %s: this version recommends RC networks only; leave the flag out", network)
+			kinds, ok := map[string][]snubber.Kind{"rc": {snubber.RC}, "c": {snubber.C}, "rcd": {snubber.RCD}, "any": {snubber.C, snubber.RC, snubber.RCD}}[network]
+			if !ok {
+				return usagef("--network %q: it must be one of rc, c, rcd, any", network)
+			}
+			cs, err := partsOnHand("c-on-hand", cOnHand, func() flagValue { return new(quantity.Farad) })
+			if err != nil {
+				return err
+			}
+			rs, err := partsOnHand("r-on-hand", rOnHand, func() flagValue { return new(quantity.Ohm) })
+			if err != nil {
+				return err
 			}
 			for _, tol := range []struct {
 				flag  string
@@ -60,6 +72,8 @@ measured against; asked the same of the same trials, the decision stands. With -
 				Limits: snubber.Limits{
 					MaxPeak: float64(maxPeak), MinDamping: float64(minDamping), MaxLoss: float64(maxLoss),
 					SwitchingHz: float64(hz), CSeries: cSeries, RSeries: rSeries, CTol: float64(cTol), RTol: float64(rTol),
+					Kinds: kinds, OnHandC: cs, OnHandR: rs, SettleS: float64(settle), SettleBand: float64(band),
+					DiodeDrop: float64(drop), DiodeOhm: float64(diodeOhm),
 				},
 				Derate: float64(derate),
 			}
@@ -101,9 +115,37 @@ measured against; asked the same of the same trials, the decision stands. With -
 	f.Var(&cSeries, "c-series", "IEC 60063 series of the capacitor")
 	f.Var(&rSeries, "r-series", "IEC 60063 series of the resistor")
 	f.BoolVar(&noRecord, "no-record", false, "log no decision")
-	f.StringVar(&network, "network", network, "`KIND` to recommend: rc, or any")
-	completes(cmd, "network", "rc", "any")
+	f.StringVar(&network, "network", network, "`KIND` to recommend: rc, c, rcd, or any of them")
+	f.StringSliceVar(&cOnHand, "c-on-hand", nil, "choose among these `CAPACITORS` alone, such as 270p,330p")
+	f.StringSliceVar(&rOnHand, "r-on-hand", nil, "choose among these `RESISTORS` alone, such as 4R7,10R")
+	f.Var(&settle, "settle-s", "time from which the node must stay near the bus")
+	f.Var(&band, "settle-band", "how near, as a share of the bus (5%)")
+	f.Var(&drop, "diode-drop", "forward drop of the diode of an rcd network (0.8V)")
+	f.Var(&diodeOhm, "diode-ohm", "its on-resistance (100m)")
+	completes(cmd, "network", "rc", "c", "rcd", "any")
 	return cmd
+}
+
+type flagValue interface {
+	Set(string) error
+}
+
+// partsOnHand reads the values of the parts on hand; nil where none is named.
+func partsOnHand(flag string, texts []string, make func() flagValue) ([]float64, error) {
+	var values []float64
+	for _, text := range texts {
+		v := make()
+		if err := v.Set(text); err != nil {
+			return nil, usagef("--%s: %w", flag, err)
+		}
+		switch v := v.(type) {
+		case *quantity.Farad:
+			values = append(values, float64(*v))
+		case *quantity.Ohm:
+			values = append(values, float64(*v))
+		}
+	}
+	return values, nil
 }
 
 // decide logs the recommendation as a decision and says so. The answer does not depend on the log: where it cannot be
