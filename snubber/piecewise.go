@@ -56,6 +56,7 @@ const (
 	roundedZero  = 1e-15
 	roundedStart = 1e-9
 	roundedSlope = 1e-10
+	roundedWrong = 1e-6 // the same two where the sign to come is known
 )
 
 // maxSteps bounds the steps to one zero: some ten to a turn of the fastest pole.
@@ -69,14 +70,19 @@ type zero struct {
 	lost  bool    // maxSteps were not enough
 }
 
-// nextZero is the first zero of y after from and not after limit, a zero at from itself not counted.
+// nextZero is the first zero of y after from and not after limit, a zero at from itself not counted. want is
+// the sign that y is known to take after a zero at from; 0: not known.
 //
 // No zero is missed. Where y is v > 0 with slope g, and m bounds |y”| from there on, y stays above v + g x - m x^2/2, which is
 // positive up to its root: a step to there cannot pass a zero. Near a zero the step becomes Newton's, so that the walk arrives
 // as fast. A step away from a zero takes the same bound from the first derivative that is not zero there. The rule is Taylor's
 // theorem; the walk is derived here.
-func (y *expSum) nextZero(from, limit float64) zero {
+func (y *expSum) nextZero(from, limit, want float64) zero {
 	t, sign, push := from, 0.0, 0.0
+	start := roundedStart
+	if want != 0 {
+		start = roundedWrong
+	}
 	for range maxSteps {
 		f, g, m, size := y.c, 0.0, 0.0, math.Abs(y.c)
 		var e [4]complex128
@@ -89,35 +95,35 @@ func (y *expSum) nextZero(from, limit float64) zero {
 		if size == 0 {
 			return zero{t: limit, sign: sign}
 		}
-		var step float64
-		switch {
-		case sign == 0 && math.Abs(f) <= roundedStart*size, push > 0 && f*sign <= 0: // at from, or not yet away from it
-			side, far := y.p.depart(&e)
-			if far == 0 {
-				return zero{t: limit, sign: sign}
-			}
-			if sign == 0 {
-				sign = side
-			}
-			push = max(2*push, far)
-			step = push
-		case sign != 0 && f*sign <= roundedZero*size:
-			return zero{t: t, found: true, sign: sign}
-		default:
-			if sign == 0 {
-				sign = math.Copysign(1, f)
-			}
-			push = 0
-			f, g = f*sign, g*sign
+		step := 0.0
+		if sign == 0 && math.Abs(f) > start*size {
+			sign = math.Copysign(1, f)
+		}
+		if push > 0 && f*sign > 4*roundedZero*size {
+			push = 0 // well away
+		}
+		if sign != 0 && f*sign > 0 {
+			f, g := f*sign, g*sign
 			root := math.Sqrt(g*g + 2*m*f)
 			if g <= 0 {
 				step = 2 * f / (root - g)
 			} else {
 				step = (g + root) / m
 			}
-			if t > from && step <= 1e-15*t {
-				return zero{t: t, found: true, sign: sign}
+		}
+		switch near := push > 0 || f*sign <= roundedZero*size || step <= 1e-15*t; {
+		case near && t > from && push == 0:
+			return zero{t: t, found: true, sign: sign}
+		case near: // at from, or not yet away from it
+			side, far := y.p.depart(&e, want)
+			if far == 0 {
+				return zero{t: limit, sign: sign}
 			}
+			if push == 0 {
+				sign = side
+			}
+			push = max(2*push, far)
+			step = push
 		}
 		if t += step; !(t <= limit) {
 			return zero{t: limit, sign: sign}
@@ -127,7 +133,7 @@ func (y *expSum) nextZero(from, limit float64) zero {
 }
 
 // depart is the sign that a sum of terms e takes just after a zero, and a step in which it cannot come back to it.
-func (p *poles) depart(e *[4]complex128) (sign, step float64) {
+func (p *poles) depart(e *[4]complex128, want float64) (sign, step float64) {
 	d := *e
 	for j := 1; j <= 5; j++ {
 		f, size, next := 0.0, 0.0, 0.0
@@ -136,7 +142,11 @@ func (p *poles) depart(e *[4]complex128) (sign, step float64) {
 			a := cmplx.Abs(d[k])
 			f, size, next = f+real(d[k]), size+a, next+a*cmplx.Abs(p.s[k])
 		}
-		if math.Abs(f) > roundedSlope*size {
+		least := roundedSlope
+		if f*want < 0 {
+			least = roundedWrong
+		}
+		if math.Abs(f) > least*size {
 			return math.Copysign(1, f), float64(j+1) / 2 * math.Abs(f) / next
 		}
 	}
@@ -156,7 +166,7 @@ func (y *expSum) visit(T float64, enough func(least, most float64) bool, offer f
 	offer(0, y.at(0))
 	slope := y.derivative()
 	for t := 0.0; !done(t); {
-		z := slope.nextZero(t, T)
+		z := slope.nextZero(t, T, 0)
 		if z.lost {
 			return false
 		}

@@ -42,7 +42,7 @@ var ErrNeverSettles = errors.New("the ring does not die away")
 
 const (
 	stillLeft   = 1e-15  // of the energy of the edge: below this all has settled, and charge to the root of it
-	maxSegments = 30_000 // of a diode's switchings
+	maxSegments = 10_000 // of a diode's switchings
 	maxGrowth   = 3e4    // of the parts of a response over the whole: its square is what an energy loses of 1e-16
 )
 
@@ -166,7 +166,7 @@ func (w *walk) run() error {
 		on = 1
 	}
 	x, now, turned := c.start, 0.0, 0
-	var last cycle
+	var last [turnsOn]cycle // the latest first
 	for c.stored(x) > stillLeft*whole {
 		if len(w.segments) >= maxSegments {
 			return fmt.Errorf("%w within %d switchings of the diode", ErrNeverSettles, maxSegments)
@@ -202,10 +202,11 @@ func (w *walk) run() error {
 		x = s.state(end)
 		if on = 1 - on; on == 1 && c.drop == 0 {
 			this := cycle{now, x, w.sums}
-			if w.repeats(last, this) {
+			if w.repeat(last[:], this) {
 				break
 			}
-			last = this
+			copy(last[1:], last[:])
+			last[0] = this
 		}
 	}
 	return nil
@@ -222,11 +223,11 @@ func (w *walk) end(s *solution, on bool, whole float64) (end float64, last bool,
 		limit = math.Log(2*math.Max(w.growth, 1)*math.Sqrt(1/stillLeft)) / rate
 	}
 	y := s.of(s.m.watch)
-	z := y.nextZero(0, limit)
 	want := -1.0
 	if on {
 		want = 1
 	}
+	z := y.nextZero(0, limit, want)
 	switch {
 	case z.lost:
 		return 0, false, fmt.Errorf("%w within %d steps", ErrNeverSettles, maxSteps)

@@ -1,6 +1,9 @@
 package snubber
 
-import "math"
+import (
+	"math"
+	"math/cmplx"
+)
 
 // state is the circuit's in volts, measured from where it settles: z = i Z0 of the loop, d = v - E of the node, g = u - E of
 // the network's capacitor, y = Z0 times the current of a resistor that has inductance.
@@ -187,7 +190,7 @@ func (c *normal) from(m *mode, x state) (s solution, growth float64) {
 		for i := range v {
 			v[i] = complex(x[i]-m.rest[i], 0)
 		}
-		less := func(other complex128) {
+		for _, other := range others(&m.p, k) {
 			var next [4]complex128
 			for i := range next {
 				for j, a := range m.a[i] {
@@ -196,14 +199,6 @@ func (c *normal) from(m *mode, x state) (s solution, growth float64) {
 				next[i] = (next[i] - other*v[i]) / (m.p.s[k] - other)
 			}
 			v = next
-		}
-		for j, other := range m.p.s[:m.p.n] {
-			if j != k {
-				less(other)
-			}
-			if imag(other) != 0 {
-				less(complex(real(other), -imag(other)))
-			}
 		}
 		size := 0.0
 		for i := range v {
@@ -228,6 +223,27 @@ func (c *normal) from(m *mode, x state) (s solution, growth float64) {
 		growth = math.Inf(1)
 	}
 	return s, growth
+}
+
+// others are the poles, conjugates too, but for number k; the smallest first, because what rounding leaves along a fast pole is
+// taken off by that pole's own factor, and would grow under any that came after it.
+func others(p *poles, k int) []complex128 {
+	list := make([]complex128, 0, 4)
+	add := func(s complex128) {
+		list = append(list, s)
+		for i := len(list) - 1; i > 0 && cmplx.Abs(list[i]) < cmplx.Abs(list[i-1]); i-- {
+			list[i], list[i-1] = list[i-1], list[i]
+		}
+	}
+	for j, s := range p.s[:p.n] {
+		if j != k {
+			add(s)
+		}
+		if imag(s) != 0 {
+			add(cmplx.Conj(s))
+		}
+	}
+	return list
 }
 
 // of is a quantity of the circuit as a function of time. Of the network's own w = v - u it is exact also where w is small

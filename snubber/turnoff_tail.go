@@ -22,6 +22,19 @@ type cycle struct {
 // repeating is how nearly a turn must be a multiple of the one before, for all that follow to be taken as such.
 const repeating = 1e-9
 
+// turnsOn is how often the diode may begin to conduct within one turn.
+const turnsOn = 4
+
+// repeat adds the tail where a turn that ends at b repeats.
+func (w *walk) repeat(last []cycle, b cycle) bool {
+	for _, a := range last {
+		if w.repeats(a, b) {
+			return true
+		}
+	}
+	return false
+}
+
 // repeats adds the tail where the turn from a to b is one that repeats.
 func (w *walk) repeats(a, b cycle) bool {
 	before, after := w.c.stored(a.x), w.c.stored(b.x)
