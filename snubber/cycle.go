@@ -60,13 +60,17 @@ type CycleEnergy struct {
 // turn-on the node's capacitance discharges through the switch, and the network's through its resistance and the
 // switch's in series. With Cycle's times the states at either edge are those of the cycle that repeats itself.
 // All is exact for the circuit of the package comment: energies are integrals of squares of transforms (see
-// square3), the states closed forms.
+// square3), the states closed forms. A network with a diode, or with inductance in its resistor, goes through TurnOff,
+// which starts from an empty capacitor: times too short for that are an error that says so.
 func EnergyOf(l Loop, n Network, e Excitation, c Cycle) (CycleEnergy, error) {
-	r, err := Respond(l, n, e)
-	if err != nil {
+	if err := c.check(); err != nil {
 		return CycleEnergy{}, err
 	}
-	if err := c.check(); err != nil {
+	if n.Kind == RCD || n.RInductance > 0 {
+		return settledEnergy(l, n, e, c)
+	}
+	r, err := Respond(l, n, e)
+	if err != nil {
 		return CycleEnergy{}, err
 	}
 	off, on := newRinging(r, l, n), newDischarge(l, n, c)
@@ -89,14 +93,53 @@ func EnergyOf(l Loop, n Network, e Excitation, c Cycle) (CycleEnergy, error) {
 		rs, w.On.Switch = rs-restRs, w.On.Switch-restSwitch
 	}
 	w.On.Resistor, w.On.ESR = n.split(rs)
+	w.Saved = saved(l, n, e, c)
 
 	i1 := x1[0] / off.z0
 	w.Added = e.Bus * n.C * (w.high[1] - w.low[1])
 	w.Anyway = e.Bus*l.Capacitance*(w.high[0]-w.low[0]) + l.Inductance*(e.Current*e.Current-i1*i1)/2
-	if n.Kind == C || n.Kind == RCD {
-		w.Saved = overlap(l.Capacitance, e, c.FallS) - overlap(l.Capacitance+n.C, e, c.FallS)
-	}
 	return w, nil
+}
+
+// settlingTimes is how many time constants of a network's capacitor a time must hold for it to count as long: what is left
+// in voltage is 0.7 %, in energy 5e-5.
+const settlingTimes = 5
+
+// settledEnergy is EnergyOf from TurnOff, each edge settled before the next.
+func settledEnergy(l Loop, n Network, e Excitation, c Cycle) (CycleEnergy, error) {
+	turn, err := TurnOff(l, n, e)
+	if err != nil {
+		return CycleEnergy{}, err
+	}
+	least := settlingTimes * (n.SeriesOhm() + c.SwitchOhm) * n.C
+	if t := math.Min(orLong(c.OnS), orLong(c.OffS)); t < least {
+		return CycleEnergy{}, fmt.Errorf("network %s with an on or off time of %.3g s: its capacitor takes %.3g s (five times R C) to settle; take a smaller resistor or capacitor, or a longer time", n.Kind, t, least)
+	}
+	w := CycleEnergy{high: [2]float64{e.Bus, e.Bus}, Saved: saved(l, n, e, c)}
+	w.Off = EdgeEnergy{Resistor: turn.Energy.Resistor, ESR: turn.Energy.ESR, Diode: turn.Energy.Diode, Loop: turn.Energy.Loop}
+	rs, sw := newDischarge(l, n, c).energies(w.high)
+	w.On.Switch = sw
+	w.On.Resistor, w.On.ESR = n.split(rs)
+	w.Added = n.C * e.Bus * e.Bus
+	w.Anyway = l.Capacitance*e.Bus*e.Bus + l.Inductance*e.Current*e.Current/2
+	return w, nil
+}
+
+// orLong is a time of Cycle as it counts: zero stands for long.
+func orLong(t float64) float64 {
+	if t == 0 {
+		return math.Inf(1)
+	}
+	return t
+}
+
+// saved is what the network's capacitor, beside the node's own, spares the switch at turn-off. A resistor in series
+// without a diode is in its way, and nothing is claimed for it.
+func saved(l Loop, n Network, e Excitation, c Cycle) float64 {
+	if c.FallS == 0 || n.Kind != C && n.Kind != RCD {
+		return 0
+	}
+	return overlap(l.Capacitance, e, c.FallS) - overlap(l.Capacitance+n.C, e, c.FallS)
 }
 
 // split shares an energy between the network's resistor and its capacitor's ESR: one current, so as the resistances.

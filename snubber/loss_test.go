@@ -299,3 +299,34 @@ func BenchmarkSwitchingLoss(b *testing.B) {
 		})
 	}
 }
+
+// With a diode the edges take what the source gives, too; with one that hardly drops, the resistor is spared the
+// charging and takes the discharge.
+func TestLossWithDiode(t *testing.T) {
+	l := snubber.Loop{Inductance: 20e-9, Capacitance: 200e-12, Resistance: 0.4}
+	n := snubber.Network{Kind: snubber.RCD, R: 10, C: 1e-9, ESR: 0.05}
+	e := snubber.Excitation{Bus: 100, Current: 6}
+	p, err := snubber.SwitchingLoss(l, n, e, 2e5)
+	if err != nil {
+		t.Fatal(err)
+	}
+	near(t, "added", p.Added, 2e5*n.C*1e4, 1e-12)
+	near(t, "total", p.Total, p.Added+p.Anyway, 1e-6)
+	w, err := snubber.EnergyOf(l, n, e, snubber.Cycle{OnS: 1e-6, OffS: 1e-6})
+	if err != nil {
+		t.Fatal(err)
+	}
+	near(t, "discharge", w.On.Resistor+w.On.ESR, n.C*1e4/2, 1e-12)
+	n.Kind = snubber.RC
+	rc, err := snubber.EnergyOf(l, n, e, snubber.Cycle{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if w.Off.Resistor > 0.8*rc.Off.Resistor {
+		t.Errorf("with a diode the resistor takes %g J at turn-off, without %g J", w.Off.Resistor, rc.Off.Resistor)
+	}
+	n.Kind = snubber.RCD
+	if _, err := snubber.EnergyOf(l, n, e, snubber.Cycle{OnS: 10e-9}); err == nil || !strings.Contains(err.Error(), "longer time") {
+		t.Errorf("an on time of one time constant: %v", err)
+	}
+}
