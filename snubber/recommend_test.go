@@ -3,6 +3,7 @@ package snubber_test
 import (
 	"context"
 	"errors"
+	"fmt"
 	"math"
 	"reflect"
 	"strings"
@@ -217,9 +218,17 @@ func TestExtremes(t *testing.T) {
 	}
 }
 
+// A whole recommendation with its draws; the parts of both series over three decades and two, then a quarter of them.
 func BenchmarkRecommend(b *testing.B) {
 	f := fit(b, series(7, 6, 0, 2))
-	for b.Loop() {
-		recommendation(b, ahead(b, f, demoPoint, 2000), snubber.Limits{MaxPeak: 76, SwitchingHz: 300e3, CTol: 0.05, RTol: 0.01})
+	for _, c := range []struct {
+		draws  int
+		cs, rs preferred.Series
+	}{{2000, preferred.E12, preferred.E24}, {8000, preferred.E12, preferred.E24}, {2000, preferred.E48, preferred.E96}} {
+		b.Run(fmt.Sprintf("%d-draws-%vx%v", c.draws, c.cs, c.rs), func(b *testing.B) {
+			for b.Loop() {
+				recommendation(b, ahead(b, f, demoPoint, c.draws), snubber.Limits{MaxPeak: 76, SwitchingHz: 300e3, CTol: 0.05, RTol: 0.01, CSeries: c.cs, RSeries: c.rs})
+			}
+		})
 	}
 }
