@@ -115,6 +115,10 @@ func ChoicePage(p *page.Page, fit *snubber.FitResult, rec *snubber.Recommendatio
 			page.Figure{Name: "resistor to buy", CSV: "rating_resistor_w", Unit: quantity.Power, Value: c.Ratings.ResistorW, Remark: "non-inductive; at least twice the loss; the data sheet's derating line decides"},
 			page.Figure{Name: "capacitor sees", CSV: "rating_capacitor_v", Unit: quantity.Voltage, Value: c.Ratings.CapacitorV, Remark: "C0G or film; rate it above this"},
 		)
+		p.Say("Of its %s the network adds %s; %s the loop loses anyway, now mostly in the resistor.", quantity.Format(c.LossW, quantity.Power, 3), quantity.Format(c.AddedW, quantity.Power, 3), quantity.Format(c.AnywayW, quantity.Power, 3))
+		if c.RingDB != nil {
+			p.Say("In the spectrum the ring stands %.0f dB below the bare node's.", -*c.RingDB)
+		}
 		p.Say("The resistor runs hot and the node stays live: switch off, discharge and measure before touching. Local codes and licensed practice decide.")
 	}
 	for _, w := range rec.Warnings {

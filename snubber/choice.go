@@ -41,6 +41,9 @@ type Choice struct {
 	ResistorW float64   `json:"resistor_w"`
 	SwitchW   float64   `json:"switch_w"`
 	LoopW     float64   `json:"loop_w"`
+	AddedW    float64   `json:"added_w"`  // because the network is there
+	AnywayW   float64   `json:"anyway_w"` // lost with or without it, now mostly in the resistor
+	RingDB    *float64  `json:"ring_db"`  // dB: the ring in the spectrum relative to the bare node's; null where it has no such figure
 	Ratings   Ratings   `json:"ratings"`
 
 	leastDamping float64 // as WorstV, of the damping ratio

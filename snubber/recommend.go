@@ -249,7 +249,11 @@ func (p *Prospect) prove(n Network, lim Limits, drawn []circuitValues) (*Choice,
 	if err != nil {
 		return nil, err
 	}
-	x := &Choice{Network: n.Kind, R: n.R, C: n.C, LossW: loss.Total, ResistorW: loss.Resistor, SwitchW: loss.Switch, LoopW: loss.Loop}
+	x := &Choice{Network: n.Kind, R: n.R, C: n.C, LossW: loss.Total, ResistorW: loss.Resistor, SwitchW: loss.Switch, LoopW: loss.Loop,
+		AddedW: loss.Added, AnywayW: loss.Anyway}
+	if db, err := RingLevel(p.Loop, n, p.Excitation); err == nil && p.Loop.Resistance > 0 {
+		x.RingDB = &db
+	}
 	x.settles = p.settling(n, lim.SettleBand)
 	peak, damping, err := p.nominal.look(&n)
 	if err != nil {
