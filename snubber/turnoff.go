@@ -94,9 +94,6 @@ func TurnOff(l Loop, n Network, e Excitation) (Turn, error) {
 			break
 		}
 	}
-	if n.RInductance == 0 && n.Kind != RCD {
-		t.Peak = respond(l, n, e).Peak() // the same, and good to the last digits where poles meet
-	}
 	return t, nil
 }
 
