@@ -10,8 +10,9 @@ import (
 
 // drawn is a sum of up to four terms of very different speeds, growing slower than nothing.
 func drawn(t *rapid.T) (*expSum, float64) {
+	part := func(name string) float64 { return float64(rapid.IntRange(-1000, 1000).Draw(t, name)) / 1000 }
 	p := &poles{n: rapid.IntRange(1, 4).Draw(t, "terms")}
-	y := &expSum{p: p, c: rapid.Float64Range(-1, 1).Draw(t, "c")}
+	y := &expSum{p: p, c: part("c")}
 	fast := 0.0
 	for k := range p.n {
 		s := math.Exp(rapid.Float64Range(-2, 3).Draw(t, "s"))
@@ -19,9 +20,9 @@ func drawn(t *rapid.T) (*expSum, float64) {
 		if rapid.Bool().Draw(t, "rings") {
 			p.s[k] = cmplx.Rect(s, math.Pi/2+rapid.Float64Range(0.001, 1.4).Draw(t, "angle"))
 		}
-		y.a[k] = complex(rapid.Float64Range(-1, 1).Draw(t, "re"), 0)
+		y.a[k] = complex(part("re"), 0)
 		if imag(p.s[k]) != 0 {
-			y.a[k] += complex(0, rapid.Float64Range(-1, 1).Draw(t, "im"))
+			y.a[k] += complex(0, part("im"))
 		}
 		fast = math.Max(fast, s)
 	}

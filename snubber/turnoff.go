@@ -44,6 +44,7 @@ const (
 	stillLeft   = 1e-15  // of the energy of the edge: below this all has settled, and charge to the root of it
 	maxSegments = 10_000 // of a diode's switchings
 	maxGrowth   = 3e4    // of the parts of a response over the whole: its square is what an energy loses of 1e-16
+	noAnswer    = 1e12   // the growth beyond which not even a peak is to be had
 )
 
 // nudges are what the loop's inductance is moved by, as a part of itself, where poles meet too closely for a sum over them:
@@ -81,18 +82,22 @@ func TurnOff(l Loop, n Network, e Excitation) (Turn, error) {
 			"give the loop the resistance that its decay shows", ErrNeverSettles)
 	}
 	var t Turn
-	for _, nudge := range nudges {
+	for i, nudge := range nudges {
 		moved := l
 		moved.Inductance *= 1 + nudge
 		w := walk{c: newNormal(moved, n, e)}
 		err := w.run()
+		if err == nil && w.growth > noAnswer {
+			err = errors.New("its poles meet so closely that no digits are left; change a value by a part in a million")
+		}
+		if w.growth > maxGrowth && i < len(nudges)-1 {
+			continue
+		}
 		if err != nil {
 			return Turn{}, fmt.Errorf("turn-off of network %s: %w", n.Kind, err)
 		}
 		t = w.turn(moved)
-		if w.growth <= maxGrowth {
-			break
-		}
+		break
 	}
 	return t, nil
 }
@@ -171,7 +176,7 @@ func (w *walk) run() error {
 		m := &w.modes[on]
 		s, growth := c.from(m, x)
 		w.growth = math.Max(w.growth, growth)
-		if w.growth > 1e12 {
+		if w.growth > noAnswer {
 			return nil // digits enough for no answer: the next nudge's
 		}
 		end, final, err := w.end(&s, on == 1, whole)
@@ -224,7 +229,11 @@ func (w *walk) end(s *solution, on bool, whole float64) (end float64, last bool,
 	if on {
 		want = 1
 	}
-	z := y.nextZero(0, limit, want)
+	known := want
+	if len(w.segments) == 0 && w.c.drop > 0 {
+		known = 0 // the edge does not begin at a switching
+	}
+	z := y.nextZero(0, limit, known)
 	switch {
 	case z.lost:
 		return 0, false, fmt.Errorf("%w within %d steps", ErrNeverSettles, maxSteps)

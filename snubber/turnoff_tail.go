@@ -19,8 +19,12 @@ type cycle struct {
 	sums
 }
 
-// repeating is how nearly a turn must be a multiple of the one before, for all that follow to be taken as such.
-const repeating = 1e-9
+// How nearly a turn must be a multiple k of the one before, for all that follow to be taken as such: by repeating of what a
+// turn loses, 1 - k, which all the turns to come rest on, but no closer than rounding lets it be.
+const (
+	repeating   = 1e-7
+	leastRepeat = 1e-12
+)
 
 // turnsOn is how often the diode may begin to conduct within one turn.
 const turnsOn = 4
@@ -46,7 +50,8 @@ func (w *walk) repeats(a, b cycle) bool {
 	for i := range off {
 		off[i] = b.x[i] - k*a.x[i]
 	}
-	if w.c.stored(off) > repeating*repeating*after {
+	near := math.Max(repeating*(1-k), leastRepeat)
+	if w.c.stored(off) > near*near*after {
 		return false
 	}
 	w.tail = tail{a.at, b.at - a.at, k}

@@ -76,7 +76,7 @@ func TestTurnOffObeysKirchhoff(t *testing.T) {
 		l, n, e := edge(t)
 		u, err := snubber.TurnOff(l, n, e)
 		if err != nil {
-			t.Fatal(err)
+			t.Fatalf("%+v %+v %+v: %v", l, n, e, err)
 		}
 		unit := math.Sqrt(l.Inductance * l.Capacitance)
 		volts := u.Peak.Volts + e.Current*l.Impedance()
