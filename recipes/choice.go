@@ -111,17 +111,42 @@ func ChoicePage(p *page.Page, fit *snubber.FitResult, rec *snubber.Recommendatio
 	t.Note("loss is that of the ring and the network: in R, in the switch at turn-on, in the loop")
 	p.Table(t)
 	if rec.Met {
-		p.Figures(
-			page.Figure{Name: "resistor to buy", CSV: "rating_resistor_w", Unit: quantity.Power, Value: c.Ratings.ResistorW, Remark: "non-inductive; at least twice the loss; the data sheet's derating line decides"},
-			page.Figure{Name: "capacitor sees", CSV: "rating_capacitor_v", Unit: quantity.Voltage, Value: c.Ratings.CapacitorV, Remark: "C0G or film; rate it above this"},
-		)
+		p.Figures(ratingFigures(c.Ratings)...)
 		p.Say("Of its %s the network adds %s; %s the loop loses anyway, now mostly in the resistor.", quantity.Format(c.LossW, quantity.Power, 3), quantity.Format(c.AddedW, quantity.Power, 3), quantity.Format(c.AnywayW, quantity.Power, 3))
 		if c.RingDB != nil {
 			p.Say("In the spectrum the ring stands %.0f dB below the bare node's.", -*c.RingDB)
 		}
-		p.Say("The resistor runs hot and the node stays live: switch off, discharge and measure before touching. Local codes and licensed practice decide.")
+		for _, advice := range c.Ratings.Advice {
+			p.Say("%s", advice)
+		}
 	}
 	for _, w := range rec.Warnings {
 		p.Warn("%s.", w)
 	}
+}
+
+// ratingFigures are what the parts to buy must stand; what the network does not have is left out.
+func ratingFigures(r snubber.Ratings) []page.Figure {
+	var list []page.Figure
+	for _, x := range []struct {
+		name, csv, remark string
+		unit              quantity.Unit
+		value             float64
+	}{
+		{"resistor to buy", "resistor_w", "twice its loss, next rating above", quantity.Power, r.ResistorW},
+		{"its pulse, each edge", "pulse_j", "", quantity.Energy, r.PulseJ},
+		{"its peak current", "resistor_peak_a", "", quantity.Current, r.ResistorPeakA},
+		{"capacitor to buy", "capacitor_buy_v", "half as much again as it sees, next rating above", quantity.Voltage, r.CapacitorBuyV},
+		{"it sees", "capacitor_v", "at worst", quantity.Voltage, r.CapacitorV},
+		{"its RMS current", "capacitor_rms_a", "", quantity.Current, r.CapacitorRMSA},
+		{"its peak current", "capacitor_peak_a", "", quantity.Current, r.CapacitorPeakA},
+		{"its dv/dt, in a microsecond", "capacitor_v_per_us", "", quantity.Voltage, r.CapacitorVPerS * 1e-6},
+		{"diode's peak current", "diode_peak_a", "", quantity.Current, r.DiodePeakA},
+		{"diode's recovery, at most", "diode_recovery_s", "", quantity.Time, r.DiodeRecoveryS},
+	} {
+		if x.value > 0 {
+			list = append(list, page.Figure{Name: x.name, CSV: x.csv, Unit: x.unit, Value: x.value, Remark: x.remark})
+		}
+	}
+	return list
 }

@@ -27,6 +27,7 @@ type Limits struct {
 	RTol        float64          // bound of the resistor's error, fraction; 0: parts taken as nominal
 	DiodeDrop   float64          // V: forward drop of the diode of an rcd network; 0: 0.8
 	DiodeOhm    float64          // ohm: its on-resistance; 0: 0.1
+	AmbientC    float64          // degrees Celsius where the parts are; 0: 25
 }
 
 // Choice is one network with what it is predicted to do.
@@ -107,6 +108,9 @@ func (lim Limits) filled() Limits {
 	}
 	if lim.Kinds == nil {
 		lim.Kinds = []Kind{RC}
+	}
+	if lim.AmbientC == 0 {
+		lim.AmbientC = 25
 	}
 	if lim.DiodeDrop == 0 {
 		lim.DiodeDrop = 0.8

@@ -13,11 +13,13 @@ import (
 //	G = integral from 0 to tau of S(x) exp(p (tau - x)) dx
 //
 // which are the divided differences of the exponential at the poles; cosh and sinh stand for cos and sin
-// where q < 0.
+// where q < 0. Where p stands apart from the pair (apart), G is the plain exp(p tau) instead: the same combinations, with
+// nothing to cancel.
 type modes struct {
 	sigma, q float64
 	p        float64
 	third    bool
+	apart    bool
 }
 
 func (m modes) wn2() float64 { return m.sigma*m.sigma + m.q }
@@ -36,6 +38,11 @@ func (m modes) from(y0, y1, y2 float64) series {
 	s := series{alpha: y0, beta: y1 + m.sigma*y0, y0: y0, y1: y1, y2: y2}
 	if m.third {
 		s.gamma = y2 + 2*m.sigma*y1 + m.wn2()*y0
+	}
+	if m.apart { // G = (exp(p tau) - C - (p + sigma) S)/det
+		s.gamma /= m.det()
+		s.alpha -= s.gamma
+		s.beta -= s.gamma * (m.p + m.sigma)
 	}
 	return s
 }
@@ -65,26 +72,24 @@ func (m modes) basis(tau float64) basis {
 		e := math.Exp(-m.sigma * tau)
 		b.c, b.s = e, e*tau
 	}
-	if m.third {
-		b.g = m.third3(tau, b)
+	switch {
+	case m.apart:
+		b.g = math.Exp(m.p * tau)
+	case m.third:
+		b.g = m.meeting(tau)
 	}
 	return b
 }
 
-// meeting is how near the three poles must be, as det/p^2, for G to be summed as a series: the closed form
-// loses eps/meeting there, the series nothing.
-const meeting = 1e-4
+// near is how near the three poles must be, as det/p^2, for G to be summed as a series: told apart they lose eps/near,
+// the series nothing.
+const near = 1e-4
 
-// third3 is G.
-func (m modes) third3(tau float64, b basis) float64 {
-	e := math.Exp(m.p * tau)
-	d := m.det()
-	if math.Abs(d) > meeting*m.p*m.p {
-		return (e - b.c - (m.p+m.sigma)*b.s) / d
-	}
+// meeting is G where the poles nearly meet.
+func (m modes) meeting(tau float64) float64 {
 	// exp(p tau) sum of h_k tau^(k+2)/(k+2)!, with h_k the complete homogeneous symmetric polynomials of the
 	// pair's distances from p: h_k = e1 h_(k-1) - e2 h_(k-2).
-	e1, e2 := -2*(m.p+m.sigma), d
+	e1, e2 := -2*(m.p+m.sigma), m.det()
 	h, hPrev := 1.0, 0.0
 	term := tau * tau / 2
 	sum := term
@@ -97,7 +102,7 @@ func (m modes) third3(tau float64, b basis) float64 {
 			break
 		}
 	}
-	return e * sum
+	return math.Exp(m.p*tau) * sum
 }
 
 func (s series) at(b basis) float64 { return s.alpha*b.c + s.beta*b.s + s.gamma*b.g }
@@ -105,7 +110,10 @@ func (s series) at(b basis) float64 { return s.alpha*b.c + s.beta*b.s + s.gamma*
 // slope is the derivative of s with respect to tau: C' = -sigma C - q S, S' = C - sigma S, G' = S + p G.
 func (m modes) slope(s series, b basis) float64 {
 	d := s.alpha*(-m.sigma*b.c-m.q*b.s) + s.beta*(b.c-m.sigma*b.s)
-	if m.third {
+	switch {
+	case m.apart:
+		d += s.gamma * m.p * b.g
+	case m.third:
 		d += s.gamma * (b.s + m.p*b.g)
 	}
 	return d
@@ -123,6 +131,7 @@ func cubic(b, c, d float64) modes {
 	p := polish(realRoot(b, c, d), b, c, d)
 	bq, cq := deflate(p, b, c, d)
 	m := modes{sigma: bq / 2, q: cq - bq*bq/4, p: p, third: true}
+	m.apart = math.Abs(m.det()) > near*p*p
 	if m.q >= 0 {
 		return m
 	}
@@ -139,6 +148,7 @@ func cubic(b, c, d float64) modes {
 		p = polish(want, b, c, d)
 		bq, cq = deflate(p, b, c, d)
 		m = modes{sigma: bq / 2, q: cq - bq*bq/4, p: p, third: true}
+		m.apart = math.Abs(m.det()) > near*p*p
 	}
 	return m
 }

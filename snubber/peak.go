@@ -43,9 +43,9 @@ const maxTurns = 1000
 // higher can follow.
 func (r Response) turns(offer func(tau float64), done func(tau float64) bool) {
 	m, s := r.modes, r.node
+	// g and its slope at 0; the slope from the characteristic polynomial, which leaves what does not cancel.
 	g0 := s.y2 - m.p*s.y1
-	y3 := m.third0(s)
-	tau, ok := m.firstZero(g0, y3-m.p*s.y2)
+	tau, ok := m.firstZero(g0, -2*m.sigma*g0-m.wn2()*(s.y1-m.p*s.y0))
 	slow := math.Min(-m.p, m.slowest())
 	from := 0.0
 	before := s.y1 // the slope where the stretch begins; E > 0 or I0 > 0, so that the node starts upwards
@@ -108,7 +108,10 @@ func (m modes) turn(s series, lo, hi, a, b float64) float64 {
 func (m modes) bend(s series, b basis) float64 {
 	c1, s1 := -m.sigma*b.c-m.q*b.s, b.c-m.sigma*b.s
 	d := s.alpha*(-m.sigma*c1-m.q*s1) + s.beta*(c1-m.sigma*s1)
-	if m.third {
+	switch {
+	case m.apart:
+		d += s.gamma * m.p * m.p * b.g
+	case m.third:
 		d += s.gamma * (s1 + m.p*(b.s+m.p*b.g))
 	}
 	return d
@@ -116,12 +119,6 @@ func (m modes) bend(s series, b basis) float64 {
 
 // slope0 is the second derivative of s at 0 in second order: y” = -2 sigma y' - wn^2 y.
 func (m modes) slope0(s series) float64 { return -2*m.sigma*s.y1 - m.wn2()*s.y0 }
-
-// third0 is the third derivative of s at 0 in third order, from the characteristic polynomial
-// (s - p)(s^2 + 2 sigma s + wn^2).
-func (m modes) third0(s series) float64 {
-	return (m.p-2*m.sigma)*s.y2 + (2*m.sigma*m.p-m.wn2())*s.y1 + m.p*m.wn2()*s.y0
-}
 
 // firstZero is the first tau > 0 at which g(0) (C + sigma S) + g'(0) S vanishes.
 func (m modes) firstZero(g0, g1 float64) (tau float64, ok bool) {
@@ -160,11 +157,8 @@ func (m modes) slowest() float64 {
 // envelope bounds d from tau on. Where the poles meet it is +Inf: no bound is at hand, and few turns are left.
 func (r Response) envelope(tau float64) float64 {
 	m, s := r.modes, r.node
-	d := m.det()
-	if m.q <= 0 || math.Abs(d) <= meeting*m.p*m.p {
+	if m.q <= 0 || !m.apart {
 		return math.Inf(1)
 	}
-	k := s.gamma / d
-	ring := math.Hypot(s.alpha-k, (s.beta-k*(m.p+m.sigma))/math.Sqrt(m.q))
-	return math.Max(k, 0)*math.Exp(m.p*tau) + ring*math.Exp(-m.sigma*tau)
+	return math.Max(s.gamma, 0)*math.Exp(m.p*tau) + math.Hypot(s.alpha, s.beta/math.Sqrt(m.q))*math.Exp(-m.sigma*tau)
 }

@@ -88,7 +88,26 @@ func recommend(ctx context.Context, p *Prospect, lim Limits) (*Recommendation, e
 		}
 		rec.Warnings = append(rec.Warnings, lim.cure(rec.Choice))
 	}
+	if err := p.rate(rec.Choice, lim); err != nil {
+		return nil, err
+	}
 	return rec, p.thumb(rec, lim)
+}
+
+// rate gives the whole ratings of a choice, with its capacitor at the worst peak.
+func (p *Prospect) rate(x *Choice, lim Limits) error {
+	r, err := RatingsOf(p.Loop, lim.network(x.Network, x.R, x.C), p.Excitation, Cycle{Hz: lim.SwitchingHz}, lim.AmbientC)
+	if errors.Is(err, ErrNeverSettles) {
+		return nil // a loop without any loss: what prove gave stands
+	} else if err != nil {
+		return err
+	}
+	if x.WorstV > r.CapacitorV {
+		r.CapacitorV, r.CapacitorBuyV = x.WorstV, voltageRating(capMargin*x.WorstV)
+		r.StoredJ = x.C * x.WorstV * x.WorstV / 2
+	}
+	x.Ratings = r
+	return nil
 }
 
 // thumb adds the rule of thumb.

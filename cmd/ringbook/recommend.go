@@ -27,6 +27,7 @@ func recommendCommand(a *app) *cobra.Command {
 	var band quantity.Fraction
 	var drop quantity.Volt
 	var diodeOhm quantity.Ohm
+	var ambient float64
 	var noRecord bool
 	cmd := &cobra.Command{
 		Use:   "recommend",
@@ -73,7 +74,7 @@ measured against; asked the same of the same trials, the decision stands. With -
 					MaxPeak: float64(maxPeak), MinDamping: float64(minDamping), MaxLoss: float64(maxLoss),
 					SwitchingHz: float64(hz), CSeries: cSeries, RSeries: rSeries, CTol: float64(cTol), RTol: float64(rTol),
 					Kinds: kinds, OnHandC: cs, OnHandR: rs, SettleS: float64(settle), SettleBand: float64(band),
-					DiodeDrop: float64(drop), DiodeOhm: float64(diodeOhm),
+					DiodeDrop: float64(drop), DiodeOhm: float64(diodeOhm), AmbientC: ambient,
 				},
 				Derate: float64(derate),
 			}
@@ -122,6 +123,7 @@ measured against; asked the same of the same trials, the decision stands. With -
 	f.Var(&band, "settle-band", "how near, as a share of the bus (5%)")
 	f.Var(&drop, "diode-drop", "forward drop of the diode of an rcd network (0.8V)")
 	f.Var(&diodeOhm, "diode-ohm", "its on-resistance (100m)")
+	f.Float64Var(&ambient, "ambient-c", 25, "temperature where the resistor is, degrees Celsius")
 	completes(cmd, "network", "rc", "c", "rcd", "any")
 	return cmd
 }
