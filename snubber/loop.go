@@ -40,7 +40,8 @@ func (l Loop) Check() error {
 	return nil
 }
 
-// Excitation is what sets the loop ringing.
+// Excitation is what sets the loop ringing: a switch that lets go of the load's current, or a diode that lets go of its
+// reverse-recovery current after a step of the bus (see TurnOff).
 type Excitation struct {
 	Bus     float64 // E, V: the voltage the node settles at
 	Current float64 // I0, A: the loop current at the instant the switch lets go

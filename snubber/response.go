@@ -6,8 +6,8 @@ import (
 	"math"
 )
 
-// ErrNetwork is wrapped by the error for a network whose response is not computed.
-var ErrNetwork = errors.New("the response of this network is not computed")
+// ErrNetwork is wrapped by the error for a network that has no single closed form.
+var ErrNetwork = errors.New("its response has no single closed form")
 
 // Response is the closed-form answer of a loop with a network fitted to a switch that lets go.
 //
@@ -47,8 +47,8 @@ func Respond(l Loop, n Network, e Excitation) (Response, error) {
 	if !(e.Current >= 0) || math.IsInf(e.Current, 0) {
 		return Response{}, fmt.Errorf("loop current %g A: it must be zero or a positive, finite number", e.Current)
 	}
-	if n.Kind == RCD {
-		return Response{}, fmt.Errorf("network rcd: %w", ErrNetwork)
+	if n.Kind == RCD || n.RInductance > 0 {
+		return Response{}, fmt.Errorf("network %s with a diode or an inductive resistor: %w; TurnOff has its edge", n.Kind, ErrNetwork)
 	}
 	return respond(l, n, e), nil
 }
