@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"math"
 	"sort"
+	"sync"
 )
 
 // candidate is a network as screened.
@@ -31,19 +32,30 @@ func (p *Prospect) screen(ctx context.Context, lim Limits) ([]candidate, error) 
 			return nil, fmt.Errorf("resistors near the loop's impedance: %w", err)
 		}
 	}
+	// Two workers share the capacitors between them; each writes its own places, so that the order is always the same.
+	found := make([]*candidate, len(lim.Kinds)*len(cs))
+	var errs [2]error
+	var wait sync.WaitGroup
+	for worker := range errs {
+		wait.Go(func() {
+			for i := worker; i < len(found); i += len(errs) {
+				if errs[worker] = ctx.Err(); errs[worker] != nil {
+					return
+				}
+				if found[i], errs[worker] = p.bestResistor(lim.Kinds[i/len(cs)], cs[i%len(cs)], rs, lim); errs[worker] != nil {
+					return
+				}
+			}
+		})
+	}
+	wait.Wait()
+	if err := errors.Join(errs[:]...); err != nil {
+		return nil, err
+	}
 	var out []candidate
-	for _, k := range lim.Kinds {
-		for _, c := range cs {
-			if err := ctx.Err(); err != nil {
-				return nil, err
-			}
-			best, err := p.bestResistor(k, c, rs, lim)
-			if err != nil {
-				return nil, err
-			}
-			if best != nil {
-				out = append(out, *best)
-			}
+	for _, x := range found {
+		if x != nil {
+			out = append(out, *x)
 		}
 	}
 	if len(out) == 0 {
