@@ -12,7 +12,7 @@ import (
 // demanded is the probability of a chi-square as large as the plain model's below which the effects are tried, and worth
 // is by how much one must lower the criterion to be added.
 const (
-	demanded = 0.1
+	demanded = 0.05
 	worth    = 0
 )
 
