@@ -20,8 +20,8 @@
 //	    Quart. Appl. Math. 2, 164 (1944)
 //	Marquardt, "An algorithm for least-squares estimation of nonlinear parameters",
 //	    J. SIAM 11, 431 (1963)
-//	More, "The Levenberg-Marquardt algorithm: implementation and theory", Lecture Notes in
-//	    Mathematics 630, 105 (1978): the scaling of the parameters
+//	More, "The Levenberg-Marquardt algorithm: implementation and theory", Numerical
+//	    Analysis (ed. Watson), Springer, 105 (1978): the scaling of the parameters
 //	Nielsen, "Damping parameter in Marquardt's method", report IMM-REP-1999-05, Technical University
 //	    of Denmark (1999): the damping from the gain ratio
 //	Transtrum and Sethna, "Improvements to the Levenberg-Marquardt algorithm for nonlinear
