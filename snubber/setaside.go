@@ -221,7 +221,11 @@ func (o *outcome) because(a aside) string {
 			text += fmt.Sprintf("; that would take %s where %s is written", farads(c), farads(x.trial.Network.C))
 		}
 	}
-	return text + fmt.Sprintf(" (chi-square falls by %.1f without it, chance %.1g)", a.fall, a.chance)
+	chance := fmt.Sprintf("%.1g", a.chance)
+	if a.chance < 1e-12 { // beyond what the distributions are good for
+		chance = "below 1e-12"
+	}
+	return text + fmt.Sprintf(" (chi-square falls by %.1f without it, chance %s)", a.fall, chance)
 }
 
 // capacitorFor is the capacitor that would explain the ring a trial with a capacitor alone read; 0 where none would.
