@@ -232,3 +232,29 @@ func BenchmarkRecommend(b *testing.B) {
 		})
 	}
 }
+
+// The worst peak is that of the worst corner, whichever it is, and what the fit leaves open is on top of it.
+func TestWorstPeak(t *testing.T) {
+	loop, e := snubber.Loop{Inductance: 12e-9, Capacitance: 180e-12, Resistance: 0.6}, snubber.Excitation{Bus: 48, Current: 4}
+	p, err := snubber.Exactly(loop, e)
+	if err != nil {
+		t.Fatal(err)
+	}
+	r := recommendation(t, p, snubber.Limits{MaxPeak: 76, SwitchingHz: 300e3, CTol: 0.1, RTol: 0.05})
+	want := 0.0
+	for _, dc := range []float64{0.9, 1.1} {
+		for _, dr := range []float64{0.95, 1.05} {
+			x, err := snubber.Respond(loop, snubber.Network{Kind: snubber.RC, C: r.Choice.C * dc, R: r.Choice.R * dr}, e)
+			if err != nil {
+				t.Fatal(err)
+			}
+			want = math.Max(want, x.Peak().Volts)
+		}
+	}
+	near(t, "worst peak", r.Choice.WorstV, want, 1e-12)
+
+	c := recommendation(t, ahead(t, fit(t, series(7, 6, 0, 2)), demoPoint, 2000), snubber.Limits{MaxPeak: 76, SwitchingHz: 300e3}).Choice
+	if c.Peak.U < 0.05 || c.WorstV < c.Peak.Value+1.8*c.Peak.U || c.WorstV > c.Peak.Value+3*c.Peak.U {
+		t.Errorf("peak %+v, worst %g V: the 99th percentile of draws lies some 2.3 standard uncertainties up", *c.Peak, c.WorstV)
+	}
+}
