@@ -2,7 +2,9 @@ package snubber
 
 import (
 	"context"
+	"errors"
 	"math"
+	"sync"
 
 	"ringbook/snubber/leastsq"
 
@@ -32,32 +34,24 @@ func choose(ctx context.Context, obs *observations, start []float64) (*outcome, 
 	}
 	var used []effect
 	for len(used) < int(noEffects) && best.wanting() {
+		// The effects are tried beside each other; the choice between them is made in their order.
+		var tried [noEffects]*outcome
+		var errs [noEffects]error
+		var wait sync.WaitGroup
+		for e := range noEffects {
+			if !contains(used, e) && obs.shows(e) && best.misses(e) {
+				wait.Go(func() { tried[e], errs[e] = best.with(ctx, used, e) })
+			}
+		}
+		wait.Wait()
+		if err := errors.Join(errs[:]...); err != nil {
+			return nil, nil, err
+		}
 		var better *outcome
 		var with effect
-		for e := range noEffects {
-			if contains(used, e) || !obs.shows(e) || !best.misses(e) {
-				continue
-			}
-			m := newModel(obs, append(append([]effect{}, used...), e)...)
-			from := append(append([]float64{}, best.fit.P...), m.startOf(e, best.fit.P))
-			if promising, err := m.promises(ctx, best, from); err != nil {
-				return nil, nil, err
-			} else if !promising {
-				continue
-			}
-			out, err := m.settle(ctx, from)
-			if err != nil {
-				return nil, nil, err
-			}
-			if out.fit.Cov == nil || out.fit.Status != leastsq.Converged {
-				continue
-			}
-			limit := best.criterion() - worth
-			if better != nil {
-				limit = better.criterion()
-			}
-			if out.criterion() < limit {
-				better, with = out, e
+		for e, out := range tried {
+			if out != nil && out.criterion() < best.criterion()-worth && (better == nil || out.criterion() < better.criterion()) {
+				better, with = out, effect(e)
 			}
 		}
 		if better == nil {
@@ -66,6 +60,20 @@ func choose(ctx context.Context, obs *observations, start []float64) (*outcome, 
 		best, used = better, append(used, with)
 	}
 	return best, used, nil
+}
+
+// with is the outcome with one effect more; nil where it promises nothing or does not converge.
+func (o *outcome) with(ctx context.Context, used []effect, e effect) (*outcome, error) {
+	m := newModel(o.model.obs, append(append([]effect{}, used...), e)...)
+	from := append(append([]float64{}, o.fit.P...), m.startOf(e, o.fit.P))
+	if promising, err := m.promises(ctx, o, from); err != nil || !promising {
+		return nil, err
+	}
+	out, err := m.settle(ctx, from)
+	if err != nil || out.fit.Cov == nil || out.fit.Status != leastsq.Converged {
+		return nil, err
+	}
+	return out, nil
 }
 
 // screened is on how many trials at most an effect is tried before it is fitted to all of them.

@@ -274,18 +274,22 @@ func (p *poleSum) peak() (when, volts float64) {
 	step := math.Max(2*math.Pi/p.fast/16, end/4000)
 	var ex, turn [4]complex128
 	for k := range p.n {
-		ex[k], turn[k] = p.s[k], cmplx.Exp(p.s[k]*complex(step, 0))
+		ex[k], turn[k] = 1, cmplx.Exp(p.s[k]*complex(step, 0))
 	}
 	b := p.slope(0)
+	v := p.at(0)
 	for hi := step; hi <= end+step; hi += step {
-		a := b
+		a, from := b, v
 		x := p.amplitudes(hi)
-		b = 0
+		b, v = 0, x.settled
 		for k := range p.n {
 			ex[k] *= turn[k]
-			b += real(x.a[k] * ex[k])
+			y := x.a[k] * ex[k]
+			b += real(p.s[k] * y)
+			v += real(y)
 		}
-		if a <= 0 || b > 0 {
+		// Between two grid points the slope hardly grows beyond what it is at their ends.
+		if a <= 0 || b > 0 || from+2*a*step < volts {
 			continue
 		}
 		if t := crossing(hi-step, hi, a, b, p.slope); p.at(t) > volts {

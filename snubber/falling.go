@@ -95,7 +95,11 @@ func crossing(lo, hi, a, b float64, f func(float64) float64) (t float64) {
 		if b == a || hi-lo <= 1e-13*hi {
 			break
 		}
+		last := t
 		t = (lo*b - hi*a) / (b - a)
+		if math.Abs(t-last) <= 1e-9*hi { // at a top the voltage is off by the square of that
+			break
+		}
 		s := f(t)
 		switch {
 		case s == 0:

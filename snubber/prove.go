@@ -28,7 +28,7 @@ func (p *Prospect) prove(n Network, lim Limits, drawn []circuitValues) (*Choice,
 		return nil, err
 	}
 	x.Peak, x.Damping = &Estimate{Value: peak}, &Estimate{Value: damping}
-	if err := p.spread(x, n, drawn); err != nil {
+	if err := p.spread(x, n, lim, drawn); err != nil {
 		return nil, err
 	}
 	x.Ratings = Ratings{ResistorW: powerRating(loss.Resistor), CapacitorV: x.WorstV}
@@ -36,8 +36,8 @@ func (p *Prospect) prove(n Network, lim Limits, drawn []circuitValues) (*Choice,
 }
 
 // spread fills what the draws say of a choice.
-func (p *Prospect) spread(x *Choice, n Network, drawn []circuitValues) error {
-	edge, err := p.edges(n)
+func (p *Prospect) spread(x *Choice, n Network, lim Limits, drawn []circuitValues) error {
+	edge, err := p.edges(n, lim.MinDamping > 0)
 	if err != nil {
 		return err
 	}
@@ -95,10 +95,10 @@ func (p *Prospect) spread(x *Choice, n Network, drawn []circuitValues) error {
 	return nil
 }
 
-// edges are the corners of a network's tolerances at which the peak is highest or the damping least, for the nominal loop
-// or for one moved by two standard uncertainties along any of the fit's directions: the others need not be looked at in every
+// edges are the corners of a network's tolerances at which the peak is highest or, where it counts, the damping least, for
+// the nominal loop or for one moved by two standard uncertainties along any of the fit's directions: the others need not be looked at in every
 // draw.
-func (p *Prospect) edges(n Network) ([]Network, error) {
+func (p *Prospect) edges(n Network, damped bool) ([]Network, error) {
 	all := corners(n)
 	if len(all) == 1 {
 		return all, nil
@@ -118,7 +118,8 @@ func (p *Prospect) edges(n Network) ([]Network, error) {
 				low, least = damping, i
 			}
 		}
-		extreme[worst], extreme[least] = true, true
+		extreme[worst] = true
+		extreme[least] = extreme[least] || damped
 		return nil
 	}
 	if err := look(&p.nominal); err != nil {
