@@ -73,8 +73,8 @@ func Confirm(ctx context.Context, src Source, d store.Decision) (*Confirmation, 
 	for _, e := range elsewhere {
 		out.Warnings = append(out.Warnings, e+", so it was left out")
 	}
-	choice := &snubber.Choice{Network: d.Network.Kind, R: d.Network.R, C: d.Network.C, Peak: &d.Peak}
-	if out.Confirmation, err = snubber.Confirm(choice, d.LimitV, out.trials); err != nil {
+	said := snubber.Prediction{Network: d.Network, Loop: d.Loop, Excitation: d.Excitation, Peak: d.Peak, LimitV: d.LimitV}
+	if out.Confirmation, err = said.Confirm(out.trials); err != nil {
 		return nil, err
 	}
 	out.Confirmed = out.Agrees && out.Keeps
@@ -117,9 +117,8 @@ func (c *Confirmation) unproven(elsewhere []string) error {
 
 // verdict is what the measurement says of the prediction and the limit, and where it does not agree, of the loop.
 func (c *Confirmation) verdict() string {
-	off := c.Measured.Value - c.Predicted.Value
-	by := quantity.Format(math.Abs(off), quantity.Voltage, 2)
-	over := quantity.Format(c.Measured.Value-c.LimitV, quantity.Voltage, 2)
+	by := quantity.Format(math.Abs(c.OffV), quantity.Voltage, 2)
+	over := quantity.Format(c.Measured.Value-c.ProbeV-c.LimitV, quantity.Voltage, 2)
 	switch {
 	case c.Agrees && c.Keeps:
 		return "The peak measured agrees with the prediction and stays under the limit."
@@ -127,15 +126,15 @@ func (c *Confirmation) verdict() string {
 		return fmt.Sprintf("The peak measured agrees with the prediction and exceeds the limit by %s: the two are not known well enough to tell them apart, and the limit lies between. Recommend again with this trial among the others, or with more margin.", over)
 	}
 	side, cause := "higher", "a longer path to the capacitor or a capacitor below its value"
-	if off < 0 {
+	if c.OffV < 0 {
 		side, cause = "lower", "a probe too slow for the peak or a lighter load"
 	}
 	what := "stays under the limit but"
 	if !c.Keeps {
 		what = "exceeds the limit by " + over + " and"
 	}
-	s := fmt.Sprintf("The peak measured %s does not agree with the prediction: it is %s (%.0f %%) %s. ", what, by, 100*math.Abs(off)/c.Predicted.Value, side)
-	if why := explain(c.decision, off); why != "" {
+	s := fmt.Sprintf("The peak measured %s does not agree with the prediction: it is %s (%.0f %%) %s. ", what, by, 100*math.Abs(c.OffV)/c.Predicted.Value, side)
+	if why := c.explain(); why != "" {
 		s += why + "; so would " + cause + ". "
 	} else {
 		s += "The loop is not what the trials said, or a part is not what it says: look for " + cause + ". "
@@ -165,9 +164,13 @@ func apart(a, b float64) bool { return math.Abs(a-b) > otherPoint*math.Max(math.
 
 // Proof puts a prediction beside what was then measured.
 func Proof(p *page.Page, c *Confirmation) {
+	remark := ""
+	if u := math.Hypot(c.Measured.U, c.Predicted.U); math.Abs(c.ProbeV) > 0.3*u {
+		remark = fmt.Sprintf("the probe's capacitance makes %+.1g V of it", c.ProbeV)
+	}
 	p.Figures(
 		page.Figure{Name: "peak predicted", CSV: "predicted_v", Unit: quantity.Voltage, Value: c.Predicted},
-		page.Figure{Name: "peak measured", CSV: "measured_v", Unit: quantity.Voltage, Value: c.Measured},
+		page.Figure{Name: "peak measured", CSV: "measured_v", Unit: quantity.Voltage, Value: c.Measured, Remark: remark},
 		page.Figure{Name: "limit", CSV: "limit_v", Unit: quantity.Voltage, Value: c.LimitV},
 	)
 	if c.Confirmed {

@@ -68,8 +68,6 @@ func (lim Limits) check(e Excitation) error {
 		return fmt.Errorf("peak limit %g V: it must be positive; give the board's rating or a limit", lim.MaxPeak)
 	case !(e.Bus > 0):
 		return errors.New("the bus voltage is not known; read it or state it with the trials")
-	case lim.MaxPeak <= e.Bus:
-		return fmt.Errorf("peak limit %g V is not above the bus of %g V: the node settles at the bus, so no network can keep it; raise the limit or the device's rating, or lower the bus", lim.MaxPeak, e.Bus)
 	case !(lim.SwitchingHz > 0) || math.IsInf(lim.SwitchingHz, 0):
 		return fmt.Errorf("switching frequency %g Hz: the loss needs it; state it with the trials or the request", lim.SwitchingHz)
 	case !(lim.MinDamping >= 0 && lim.MinDamping <= 1):

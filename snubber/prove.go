@@ -27,12 +27,44 @@ func (p *Prospect) prove(n Network, lim Limits, drawn []circuitValues) (*Choice,
 	if err != nil {
 		return nil, err
 	}
+	excess, least, err := p.excess(n)
+	if err != nil {
+		return nil, err
+	}
 	x.Peak, x.Damping = &Estimate{Value: peak}, &Estimate{Value: damping}
 	if err := p.spread(x, n, lim, drawn); err != nil {
 		return nil, err
 	}
+	x.Peak.Value, x.Peak.Low, x.Peak.High = x.Peak.Value-excess, x.Peak.Low-excess, x.Peak.High-excess
+	x.WorstV -= least
 	x.Ratings = Ratings{ResistorW: powerRating(loss.Resistor), CapacitorV: x.WorstV}
 	return x, nil
+}
+
+// excess is by how much look overstates the peak of a network with a diode, V: for the network itself, and the least of its
+// corners. TurnOff, which knows neither the effects nor the draws, is asked with the nominal loop; what it says of the diode
+// holds for the others.
+func (p *Prospect) excess(n Network) (own, least float64, err error) {
+	if n.Kind != RCD {
+		return 0, 0, nil
+	}
+	plain := p.nominal
+	plain[atFall], plain[atLead], plain[atShare] = 0, 0, 0
+	least = math.Inf(1)
+	for i, corner := range corners(n) {
+		bound, _, err := plain.look(&corner)
+		if err != nil {
+			return 0, 0, err
+		}
+		turn, err := TurnOff(p.Loop, corner, p.Excitation)
+		if err != nil {
+			return 0, 0, err
+		}
+		if least = math.Min(least, bound-turn.Peak.Volts); i == 0 {
+			own = least
+		}
+	}
+	return own, least, nil
 }
 
 // spread fills what the draws say of a choice.

@@ -84,6 +84,9 @@ func recommend(ctx context.Context, p *Prospect, lim Limits) (*Recommendation, e
 		if rec.Choice, err = p.prove(nearest.network, lim, p.drawn); err != nil {
 			return nil, err
 		}
+		if e := p.Excitation; lim.MaxPeak <= e.Bus {
+			rec.Warnings = append(rec.Warnings, fmt.Sprintf("the peak limit of %g V is not above the bus of %g V, where the node settles, so no network can keep it; raise the limit or the device's rating, or lower the bus", lim.MaxPeak, e.Bus))
+		}
 		rec.Warnings = append(rec.Warnings, lim.cure(rec.Choice))
 	}
 	if err := p.rate(rec.Choice, lim); err != nil {

@@ -130,6 +130,11 @@ func TestLimitsAreKept(t *testing.T) {
 	if r := recommendation(t, p, cheap); r.Met || !strings.Contains(strings.Join(r.Warnings, " "), "loses") && !strings.Contains(strings.Join(r.Warnings, " "), "peaks") {
 		t.Errorf("met %v: %v", r.Met, r.Warnings)
 	}
+	below := base
+	below.MaxPeak = 40
+	if r := recommendation(t, p, below); r.Met || !strings.Contains(r.Warnings[0], "not above the bus") || r.Choice.WorstV < 48 || r.Choice.WorstV > 50 {
+		t.Errorf("a limit below the bus: met %v, nearest %+v: %v", r.Met, *r.Choice, r.Warnings)
+	}
 	hand := base
 	hand.OnHandC, hand.OnHandR = []float64{330e-12, 1e-9}, []float64{4.7, 10, 47}
 	if r := recommendation(t, p, hand); !r.Met || (r.Choice.C != 330e-12 && r.Choice.C != 1e-9) || (r.Choice.R != 4.7 && r.Choice.R != 10 && r.Choice.R != 47) {
@@ -169,7 +174,6 @@ func TestRecommendRefuses(t *testing.T) {
 		want string
 	}{
 		"no limit":        {snubber.Limits{SwitchingHz: 1e5}, "peak limit"},
-		"below the bus":   {snubber.Limits{MaxPeak: 40, SwitchingHz: 1e5}, "not above the bus"},
 		"no frequency":    {snubber.Limits{MaxPeak: 80}, "switching frequency"},
 		"damping of two":  {snubber.Limits{MaxPeak: 80, SwitchingHz: 1e5, MinDamping: 2}, "damping"},
 		"tolerance of 1":  {snubber.Limits{MaxPeak: 80, SwitchingHz: 1e5, CTol: 1}, "tolerances"},
@@ -256,5 +260,34 @@ func TestWorstPeak(t *testing.T) {
 	c := recommendation(t, ahead(t, fit(t, series(7, 6, 0, 2)), demoPoint, 2000), snubber.Limits{MaxPeak: 76, SwitchingHz: 300e3}).Choice
 	if c.Peak.U < 0.05 || c.WorstV < c.Peak.Value+1.8*c.Peak.U || c.WorstV > c.Peak.Value+3*c.Peak.U {
 		t.Errorf("peak %+v, worst %g V: the 99th percentile of draws lies some 2.3 standard uncertainties up", *c.Peak, c.WorstV)
+	}
+}
+
+// The peak of a network with a diode is TurnOff's, and its worst that of the worst corner.
+func TestDiodePeakIsExact(t *testing.T) {
+	loop, e := snubber.Loop{Inductance: 12e-9, Capacitance: 180e-12, Resistance: 0.6}, snubber.Excitation{Bus: 24, Current: 2}
+	p, err := snubber.Exactly(loop, e)
+	if err != nil {
+		t.Fatal(err)
+	}
+	c := recommendation(t, p, snubber.Limits{MaxPeak: 36, SwitchingHz: 300e3, CTol: 0.1, RTol: 0.05, Kinds: []snubber.Kind{snubber.RCD}}).Choice
+	peak := func(dc, dr float64) float64 {
+		n := snubber.Network{Kind: snubber.RCD, C: c.C * dc, R: c.R * dr, DiodeDrop: 0.8, DiodeOhm: 0.1}
+		turn, err := snubber.TurnOff(loop, n, e)
+		if err != nil {
+			t.Fatal(err)
+		}
+		return turn.Peak.Volts
+	}
+	near(t, "peak", c.Peak.Value, peak(1, 1), 1e-9)
+	want := 0.0
+	for _, dc := range []float64{0.9, 1.1} {
+		for _, dr := range []float64{0.95, 1.05} {
+			want = math.Max(want, peak(dc, dr))
+		}
+	}
+	near(t, "worst peak", c.WorstV, want, 2e-3)
+	if c.WorstV < want*(1-1e-9) {
+		t.Errorf("worst %g V, a corner reaches %g V", c.WorstV, want)
 	}
 }

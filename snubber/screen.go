@@ -158,7 +158,7 @@ func (p *Prospect) screened(n Network, lim Limits) (*candidate, error) {
 // Of a network with a diode across its resistor the peak is the charging diode's: where the node stands highest its slope
 // is zero, so that all the loop's current flows on into the network, forward through the diode. Up to there the circuit is an
 // RC whose resistance is R beside the diode's, with the diode's drop against it; the drop added to that RC's peak bounds it
-// from above (TurnOff has it exactly). Its ring is damped by R once the diode has let go.
+// from above, and prove takes off by how much. Its ring is damped by R once the diode has let go.
 func (v *circuitValues) look(n *Network) (peak, damping float64, err error) {
 	if n.Kind != RCD {
 		peak, damping = v.predict(n)

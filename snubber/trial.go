@@ -24,11 +24,12 @@ func Quantities() []Quantity {
 
 // Reading is one quantity as read: its value in the unit of its name, and how well it is known.
 type Reading struct {
-	Quantity   Quantity
-	Value      float64   // in the unit the quantity's name ends with
-	U          float64   // standard uncertainty (k = 1), same unit; 0: not stated
-	Repeats    []float64 // the single values behind Value, in the order read; nil for one value typed in
-	Instrument string    // the *IDN? answer of what read it; "" when a person typed it
+	Quantity     Quantity
+	Value        float64   // in the unit the quantity's name ends with
+	U            float64   // standard uncertainty (k = 1), same unit; 0: not stated
+	Repeats      []float64 // the single values behind Value, in the order read; nil for one value typed in
+	Instrument   string    // the *IDN? answer of what read it; "" when a person typed it
+	FromWaveform bool      // computed from captured samples, not by the instrument's own measurement
 }
 
 // OperatingPoint is what the converter was doing while a trial was read. Zero means not stated.
