@@ -39,11 +39,6 @@ func decision(ctx context.Context, src Source, fit *snubber.FitResult, rec *snub
 	if len(trials) != fit.Trials {
 		return store.Decision{}, errors.New("a trial was logged or struck while it was computed; recommend again")
 	}
-	at := fit.Hardest(trials)
-	ahead, _, err := fit.Ahead(at, 0, 0)
-	if err != nil {
-		return store.Decision{}, err
-	}
 	whole, err := json.Marshal(rec)
 	if err != nil {
 		return store.Decision{}, err
@@ -53,7 +48,7 @@ func decision(ctx context.Context, src Source, fit *snubber.FitResult, rec *snub
 		Board: fit.Board, Revision: fit.Revision,
 		Network: snubber.Network{Kind: c.Network, C: c.C, CTol: lim.CTol},
 		LimitV:  rec.LimitV, Peak: *c.Peak, LossW: c.LossW,
-		Loop: ahead.Loop, Excitation: ahead.Excitation, SwitchingHz: at.SwitchingHz,
+		Loop: rec.Loop, Excitation: rec.Excitation, SwitchingHz: rec.SwitchingHz,
 		Digest: store.TrialsDigest(trials), Recommendation: whole,
 	}
 	if c.Network.HasR() {
@@ -61,9 +56,6 @@ func decision(ctx context.Context, src Source, fit *snubber.FitResult, rec *snub
 	}
 	if c.Damping != nil {
 		d.Damping = c.Damping.Value
-	}
-	if lim.SwitchingHz > 0 {
-		d.SwitchingHz = lim.SwitchingHz
 	}
 	for _, t := range trials {
 		d.Trials = append(d.Trials, t.ID)

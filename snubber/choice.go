@@ -60,6 +60,11 @@ type Recommendation struct {
 	RuleOfThumb  *Choice  `json:"rule_of_thumb"` // R = Z0 and C three times the loop's, nearest in series
 	Bare         *Choice  `json:"bare"`          // what the loop does with nothing fitted
 	Warnings     []string `json:"warnings"`
+
+	// What it was computed for.
+	Loop        Loop       `json:"-"`
+	Excitation  Excitation `json:"-"`
+	SwitchingHz float64    `json:"-"` // Hz
 }
 
 func (lim Limits) check(e Excitation) error {

@@ -45,7 +45,8 @@ func recommend(ctx context.Context, p *Prospect, lim Limits) (*Recommendation, e
 	if err != nil {
 		return nil, err
 	}
-	rec := &Recommendation{LimitV: lim.MaxPeak, Alternatives: []Choice{}, Warnings: []string{}}
+	rec := &Recommendation{LimitV: lim.MaxPeak, Alternatives: []Choice{}, Warnings: []string{},
+		Loop: p.Loop, Excitation: p.Excitation, SwitchingHz: lim.SwitchingHz}
 	if rec.Bare, err = p.prove(Network{Kind: Bare}, lim, p.some()); err != nil {
 		return nil, err
 	}
