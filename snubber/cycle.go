@@ -61,7 +61,7 @@ type CycleEnergy struct {
 // switch's in series. With Cycle's times the states at either edge are those of the cycle that repeats itself.
 // All is exact for the circuit of the package comment: energies are integrals of squares of transforms (see
 // square3), the states closed forms. A network with a diode, or with inductance in its resistor, goes through TurnOff,
-// which starts from an empty capacitor: times too short for that are an error that says so.
+// which follows it until all has settled: an off time too short for that is an error that says so.
 func EnergyOf(l Loop, n Network, e Excitation, c Cycle) (CycleEnergy, error) {
 	if err := c.check(); err != nil {
 		return CycleEnergy{}, err
@@ -105,22 +105,31 @@ func EnergyOf(l Loop, n Network, e Excitation, c Cycle) (CycleEnergy, error) {
 // in voltage is 0.7 %, in energy 5e-5.
 const settlingTimes = 5
 
-// settledEnergy is EnergyOf from TurnOff, each edge settled before the next.
+// settledEnergy is EnergyOf from TurnOff: all settles while the switch blocks. A network with a diode may still hold a
+// charge from the cycle before when the switch has conducted, which the next turn-off starts from.
 func settledEnergy(l Loop, n Network, e Excitation, c Cycle) (CycleEnergy, error) {
-	turn, err := TurnOff(l, n, e)
+	on := newDischarge(l, n, c)
+	least := settlingTimes * (n.SeriesOhm() + c.SwitchOhm) * n.C
+	w := CycleEnergy{high: [2]float64{e.Bus, e.Bus}, Saved: saved(l, n, e, c)}
+	switch t := orLong(c.OnS); {
+	case orLong(c.OffS) < least:
+		return CycleEnergy{}, fmt.Errorf("network %s with an off time of %.3g s: its capacitor takes %.3g s (five times R C) to settle; take a smaller resistor or capacitor, or a longer time", n.Kind, c.OffS, least)
+	case t >= least:
+	case n.RInductance > 0 || c.SwitchOhm > 0:
+		return CycleEnergy{}, fmt.Errorf("network %s with an on time of %.3g s: its capacitor takes %.3g s (five times R C) to discharge, and what is left is only known without inductance in R and resistance in the switch; leave these out, or take a longer time", n.Kind, c.OnS, least)
+	default:
+		w.low = on.after(w.high, t)
+	}
+	turn, err := turnOff(l, n, e, w.low[1])
 	if err != nil {
 		return CycleEnergy{}, err
 	}
-	least := settlingTimes * (n.SeriesOhm() + c.SwitchOhm) * n.C
-	if t := math.Min(orLong(c.OnS), orLong(c.OffS)); t < least {
-		return CycleEnergy{}, fmt.Errorf("network %s with an on or off time of %.3g s: its capacitor takes %.3g s (five times R C) to settle; take a smaller resistor or capacitor, or a longer time", n.Kind, t, least)
-	}
-	w := CycleEnergy{high: [2]float64{e.Bus, e.Bus}, Saved: saved(l, n, e, c)}
 	w.Off = EdgeEnergy{Resistor: turn.Energy.Resistor, ESR: turn.Energy.ESR, Diode: turn.Energy.Diode, Loop: turn.Energy.Loop}
-	rs, sw := newDischarge(l, n, c).energies(w.high)
-	w.On.Switch = sw
-	w.On.Resistor, w.On.ESR = n.split(rs)
-	w.Added = n.C * e.Bus * e.Bus
+	rs, sw := on.energies(w.high)
+	restRs, restSwitch := on.energies(w.low)
+	w.On.Switch = sw - restSwitch
+	w.On.Resistor, w.On.ESR = n.split(rs - restRs)
+	w.Added = n.C * e.Bus * (e.Bus - w.low[1])
 	w.Anyway = l.Capacitance*e.Bus*e.Bus + l.Inductance*e.Current*e.Current/2
 	return w, nil
 }

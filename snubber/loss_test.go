@@ -326,7 +326,42 @@ func TestLossWithDiode(t *testing.T) {
 		t.Errorf("with a diode the resistor takes %g J at turn-off, without %g J", w.Off.Resistor, rc.Off.Resistor)
 	}
 	n.Kind = snubber.RCD
-	if _, err := snubber.EnergyOf(l, n, e, snubber.Cycle{OnS: 10e-9}); err == nil || !strings.Contains(err.Error(), "longer time") {
-		t.Errorf("an on time of one time constant: %v", err)
+	if _, err := snubber.EnergyOf(l, n, e, snubber.Cycle{OffS: 10e-9}); err == nil || !strings.Contains(err.Error(), "longer time") {
+		t.Errorf("an off time of one time constant: %v", err)
+	}
+}
+
+// A network with a diode that has not discharged when the switch opens. With a diode that never conducts it is an rc
+// network, whose cycle is known otherwise; with one that does, the energies add up to what the source gave.
+func TestDiodeNetworkHalfDischarged(t *testing.T) {
+	l, e := snubber.Loop{Inductance: 12e-9, Capacitance: 180e-12, Resistance: 0.6}, snubber.Excitation{Bus: 48, Current: 4}
+	for _, on := range []float64{2e-9, 10e-9, 30e-9} {
+		c := snubber.Cycle{OnS: on, OffS: 2e-6}
+		never := snubber.Network{Kind: snubber.RCD, R: 22, C: 680e-12, DiodeDrop: 1e4, DiodeOhm: 0.1}
+		got, err := snubber.EnergyOf(l, never, e, c)
+		if err != nil {
+			t.Fatal(err)
+		}
+		want, err := snubber.EnergyOf(l, snubber.Network{Kind: snubber.RC, R: 22, C: 680e-12}, e, c)
+		if err != nil {
+			t.Fatal(err)
+		}
+		for what, x := range map[string][2]float64{
+			"resistor, off": {got.Off.Resistor, want.Off.Resistor}, "loop": {got.Off.Loop, want.Off.Loop},
+			"resistor, on": {got.On.Resistor, want.On.Resistor}, "added": {got.Added, want.Added},
+		} {
+			near(t, what, x[0], x[1], 1e-6)
+		}
+		for _, drop := range []float64{0, 0.8} {
+			n := snubber.Network{Kind: snubber.RCD, R: 22, C: 680e-12, DiodeDrop: drop, DiodeOhm: 0.1}
+			w, err := snubber.EnergyOf(l, n, e, c)
+			if err != nil {
+				t.Fatal(err)
+			}
+			near(t, "balance", w.Off.Total()+w.On.Total(), w.Added+w.Anyway, 1e-6)
+			if w.Off.Diode <= 0 || w.Added >= n.C*e.Bus*e.Bus {
+				t.Errorf("on for %g s: %+v", on, w)
+			}
+		}
 	}
 }

@@ -67,7 +67,10 @@ var nudges = [...]float64{0, 1e-9, 1e-8, 1e-7}
 // time is stepped, nothing sampled. Where poles meet, the inductance is moved by up to 1e-7 of itself to part them.
 //
 // The edge ends when less than 1e-15 of its energy is left. A circuit in which nothing damps wraps ErrNeverSettles.
-func TurnOff(l Loop, n Network, e Excitation) (Turn, error) {
+func TurnOff(l Loop, n Network, e Excitation) (Turn, error) { return turnOff(l, n, e, 0) }
+
+// turnOff is TurnOff with left volts on the network's capacitor from the edge before.
+func turnOff(l Loop, n Network, e Excitation, left float64) (Turn, error) {
 	if err := l.Check(); err != nil {
 		return Turn{}, err
 	}
@@ -85,7 +88,7 @@ func TurnOff(l Loop, n Network, e Excitation) (Turn, error) {
 	for i, nudge := range nudges {
 		moved := l
 		moved.Inductance *= 1 + nudge
-		w := walk{c: newNormal(moved, n, e)}
+		w := walk{c: newNormal(moved, n, e, left)}
 		err := w.run()
 		if err == nil && w.growth > noAnswer {
 			err = errors.New("its poles meet so closely that no digits are left; change a value by a part in a million")
@@ -164,7 +167,7 @@ func (w *walk) run() error {
 		}
 	}
 	on := 0
-	if c.kind == RCD && c.drop == 0 {
+	if c.kind == RCD && c.drop == 0 && c.left == 0 {
 		on = 1
 	}
 	x, now, turned := c.start, 0.0, 0
@@ -230,7 +233,7 @@ func (w *walk) end(s *solution, on bool, whole float64) (end float64, last bool,
 		want = 1
 	}
 	known := want
-	if len(w.segments) == 0 && w.c.drop > 0 {
+	if len(w.segments) == 0 && w.c.drop+w.c.left > 0 {
 		known = 0 // the edge does not begin at a switching
 	}
 	z := y.nextZero(0, limit, known)

@@ -51,20 +51,20 @@ type normal struct {
 	loss, rho, esr, diode float64 // r, R, ESR and the diode's resistance over Z0
 	lambda                float64 // the resistor's inductance over the loop's
 	a                     float64 // Cs/C
-	drop, bus             float64 // V
+	drop, bus, left       float64 // V
 	kind                  Kind
 	start                 state
 }
 
-func newNormal(l Loop, n Network, e Excitation) *normal {
+func newNormal(l Loop, n Network, e Excitation, left float64) *normal {
 	z0 := l.Impedance()
 	c := &normal{
 		w0: 1 / math.Sqrt(l.Inductance*l.Capacitance), z0: z0,
 		loss: l.Resistance / z0, rho: n.R / z0, esr: n.ESR / z0, diode: n.DiodeOhm / z0,
 		lambda: n.RInductance / l.Inductance, a: n.C / l.Capacitance,
-		drop: n.DiodeDrop, bus: e.Bus, kind: n.Kind,
+		drop: n.DiodeDrop, bus: e.Bus, left: left, kind: n.Kind,
 	}
-	c.start = state{e.Current * z0, -e.Bus, -e.Bus, 0}
+	c.start = state{e.Current * z0, -e.Bus, left - e.Bus, 0}
 	if c.a == 0 {
 		c.start[2] = 0
 	}
