@@ -18,17 +18,7 @@ import (
 // A trial without a time is dated at its logging. A trial with Struck set is logged as struck. The trial must pass
 // Check, and must not have an id: one that has is in a logbook already.
 func (lb *Logbook) Add(ctx context.Context, t snubber.Trial) (id string, err error) {
-	if err := checkNew(t); err != nil {
-		return "", fmt.Errorf("log the trial: %w", err)
-	}
-	err = lb.write(ctx, func(w *writer) error {
-		id, err = w.add(context.WithoutCancel(ctx), t)
-		return err
-	})
-	if err != nil {
-		return "", fmt.Errorf("log the trial: %w", err)
-	}
-	return id, nil
+	return lb.AddWithWaveforms(ctx, t, nil)
 }
 
 // AddAll logs every trial of trials in one transaction, or none: the first error of the sequence, or of a trial that
@@ -49,7 +39,7 @@ func (lb *Logbook) AddAll(ctx context.Context, trials iter.Seq2[snubber.Trial, e
 			if err := checkNew(t); err != nil {
 				return fmt.Errorf("trial %d of board %s: %w", n+1, quote(t.Board), err)
 			}
-			if _, err := w.add(unwatched, t); err != nil {
+			if _, err := w.add(unwatched, t, nil); err != nil {
 				return err
 			}
 			if n++; progress != nil && n%1000 == 0 {
@@ -73,12 +63,12 @@ const (
 	insertTrial = `INSERT INTO trial (id, revision, session, operating_point, at, logged_at, network,
   c, c_tol, r, r_tol, esr, measured_c, measured_c_u, probe_c, part, note)
   VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?)`
-	insertReading = `INSERT INTO reading (trial, quantity, value, u, instrument) VALUES (?, ?, ?, ?, ?)`
+	insertReading = `INSERT INTO reading (trial, quantity, value, u, instrument, from_waveform) VALUES (?, ?, ?, ?, ?, ?)`
 	insertRepeat  = `INSERT INTO reading_repeat (trial, quantity, n, value) VALUES (?, ?, ?, ?)`
 	insertStrike  = `INSERT INTO strike (id, trial, at, because) VALUES (?, ?, ?, ?)`
 )
 
-func (w *writer) add(ctx context.Context, t snubber.Trial) (string, error) {
+func (w *writer) add(ctx context.Context, t snubber.Trial, waveforms []packed) (string, error) {
 	id, err := uuid.NewV7()
 	if err != nil {
 		return "", fmt.Errorf("make an id: %w", err)
@@ -106,6 +96,11 @@ func (w *writer) add(ctx context.Context, t snubber.Trial) (string, error) {
 	if err != nil {
 		return "", err
 	}
+	for _, p := range waveforms {
+		if err := w.addWaveform(ctx, seq, p); err != nil {
+			return "", err
+		}
+	}
 	for _, r := range t.Readings {
 		if err := w.addReading(ctx, seq, r); err != nil {
 			return "", err
@@ -124,7 +119,7 @@ func (w *writer) addReading(ctx context.Context, seq int64, r snubber.Reading) e
 	if err != nil {
 		return err
 	}
-	if _, err := w.insert(ctx, insertReading, seq, string(r.Quantity), r.Value, orNull(r.U), device); err != nil {
+	if _, err := w.insert(ctx, insertReading, seq, string(r.Quantity), r.Value, orNull(r.U), device, orNull(r.FromWaveform)); err != nil {
 		return err
 	}
 	for i, v := range r.Repeats {

@@ -58,7 +58,7 @@ func (x *bare) exec(b *testing.B, script string) {
 	}
 }
 
-func (x *bare) add(b *testing.B, t *snubber.Trial, at string) {
+func (x *bare) add(b *testing.B, t *snubber.Trial, at string) int64 {
 	ctx := context.Background()
 	n := &t.Network
 	result, err := x.trial.ExecContext(ctx, uuid.Must(uuid.NewV7()).String(), 1, nil, nil, at, at, string(n.Kind),
@@ -71,10 +71,11 @@ func (x *bare) add(b *testing.B, t *snubber.Trial, at string) {
 		b.Fatal(err)
 	}
 	for _, r := range t.Readings {
-		if _, err := x.reading.ExecContext(ctx, seq, string(r.Quantity), r.Value, r.U+1, nil); err != nil {
+		if _, err := x.reading.ExecContext(ctx, seq, string(r.Quantity), r.Value, r.U+1, nil, nil); err != nil {
 			b.Fatal(err)
 		}
 	}
+	return seq
 }
 
 // benchTrial has five readings, and nothing that bare does not write.

@@ -7,7 +7,10 @@ import (
 	"os"
 	"os/exec"
 	"strconv"
+	"strings"
 	"testing"
+
+	"ringbook/snubber/waveform"
 )
 
 // The test binary runs itself again as another program that logs trials until it is killed: these name its file and what
@@ -30,7 +33,7 @@ func TestMain(m *testing.M) {
 	os.Exit(m.Run())
 }
 
-// child prints each id once Add has acknowledged it, or "imported" and a count once AddAll has.
+// child prints each id once Add or AddWithWaveforms has acknowledged it, or "imported" and a count once AddAll has.
 func child(path, work string) error {
 	ctx := context.Background()
 	if work == "read" {
@@ -54,12 +57,17 @@ func child(path, work string) error {
 			fmt.Println("imported", n)
 		}
 	}
-	n, err := strconv.Atoi(work)
+	number, with := strings.CutSuffix(work, " with waveforms")
+	n, err := strconv.Atoi(number)
 	if err != nil {
 		return err
 	}
+	trial, records := example(), []waveform.Record(nil)
+	if with {
+		trial, records = withWaveforms()
+	}
 	for range n {
-		id, err := lb.Add(ctx, example())
+		id, err := lb.AddWithWaveforms(ctx, trial, records)
 		if err != nil {
 			return err
 		}

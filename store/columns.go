@@ -4,6 +4,7 @@ import (
 	"errors"
 	"fmt"
 	"math"
+	"slices"
 	"strconv"
 	"strings"
 	"time"
@@ -55,6 +56,7 @@ func columns() []column {
 		uncertainty(snubber.TempC, quantity.Temperature),
 		text("session", func(t *snubber.Trial) *string { return &t.Session }),
 		text("struck", func(t *snubber.Trial) *string { return &t.Struck }),
+		column{"from_waveform", setFromWaveform, getFromWaveform},
 	)
 }
 
@@ -127,6 +129,29 @@ func uncertainty(q snubber.Quantity, unit quantity.Unit) column {
 			r, _ := t.Reading(q)
 			return formatNumber(r.U)
 		}}
+}
+
+func setFromWaveform(t *snubber.Trial, cell string) error {
+	for _, name := range strings.Fields(cell) {
+		i := slices.IndexFunc(t.Readings, func(r snubber.Reading) bool { return string(r.Quantity) == name })
+		if i < 0 {
+			return fmt.Errorf("%s has no reading in this row; name readings of the row with spaces between them, such as ring_hz decay_s", quote(name))
+		}
+		t.Readings[i].FromWaveform = true
+	}
+	return nil
+}
+
+func getFromWaveform(t *snubber.Trial) string {
+	var names []string
+	for _, r := range t.Readings {
+		// Those of the operating point come out as the point.
+		if r.FromWaveform && r.Quantity != snubber.BusV && r.Quantity != snubber.CurrentA && r.Quantity != snubber.SwitchingHz {
+			names = append(names, string(r.Quantity))
+		}
+	}
+	slices.Sort(names) // as trial_table has them
+	return strings.Join(names, " ")
 }
 
 func setNetwork(t *snubber.Trial, cell string) (err error) {

@@ -6,6 +6,7 @@ import (
 	"os"
 	"os/exec"
 	"path/filepath"
+	"slices"
 	"strconv"
 	"testing"
 	"time"
@@ -73,6 +74,62 @@ func TestKilledWhileLogging(t *testing.T) {
 		t.Error("no trial was acknowledged in any round: nothing was tested")
 	}
 	t.Logf("%d rounds, %d trials acknowledged", n, len(acknowledged))
+}
+
+// TestKilledWhileLoggingWaveforms finds each trial with all of its waveforms and readings, and none that was acknowledged
+// lost. It looks at the file by OpenReadOnly, which leaves nothing beside it.
+func TestKilledWhileLoggingWaveforms(t *testing.T) {
+	dir := t.TempDir()
+	path := filepath.Join(dir, "ringbook.db")
+	acknowledged := map[string]bool{}
+	_, want := withWaveforms()
+	for range rounds(t, 20) {
+		cmd, lines := startChild(t, path, "1000000 with waveforms")
+		killSoon(cmd, lines)
+		for lines.Scan() {
+			acknowledged[lines.Text()] = true
+		}
+		cmd.Wait()
+		lb, err := OpenReadOnly(t.Context(), path)
+		if err != nil {
+			t.Fatal(err)
+		}
+		found := map[string]bool{}
+		for trial, err := range lb.Trials(t.Context(), Scope{}) {
+			if err != nil {
+				t.Fatal(err)
+			}
+			found[trial.ID] = true
+			got := waveforms(t, lb, trial.ID)
+			if len(trial.Readings) != 5 || !trial.Readings[0].FromWaveform || len(got) != len(want) {
+				t.Fatalf("trial %s is not whole: %d waveforms, %v", trial.ID, len(got), trial.Readings)
+			}
+			for i := range want {
+				if !slices.Equal(want[i].Volts, got[i].Volts) {
+					t.Fatalf("waveform %s of trial %s is another", got[i].ID, trial.ID)
+				}
+			}
+		}
+		var loose int
+		if err := lb.db.QueryRowContext(t.Context(), "SELECT count(*) FROM waveform WHERE trial NOT IN (SELECT seq FROM trial)").Scan(&loose); err != nil || loose != 0 {
+			t.Fatalf("%d waveforms without a trial, %v", loose, err)
+		}
+		for id := range acknowledged {
+			if !found[id] {
+				t.Errorf("trial %s was acknowledged and is not there", id)
+			}
+		}
+		if err := lb.Close(); err != nil {
+			t.Fatal(err)
+		}
+		if names, _ := filepath.Glob(filepath.Join(dir, "*")); len(names) != 1 {
+			t.Errorf("left beside the logbook: %v", names)
+		}
+	}
+	if len(acknowledged) == 0 {
+		t.Error("no trial was acknowledged in any round: nothing was tested")
+	}
+	t.Logf("%d trials acknowledged", len(acknowledged))
 }
 
 // TestKilledWhileImporting finds whole imports alone.

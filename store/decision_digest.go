@@ -23,7 +23,8 @@ import (
 //	part note
 //
 // in this order, where it is stated. Then, in the order of the quantities' names, each reading: "reading QUANTITY VALUE",
-// and where there are any, "u VALUE", "instrument TEXT", and "repeat VALUE" for each single value in the order read.
+// and where there are any, "u VALUE", "instrument TEXT", "from waveform" where it was computed from one, and "repeat VALUE"
+// for each single value in the order read. The samples of waveforms are not part of it: the readings are what was used.
 //
 // Numbers are unscaled SI in the shortest decimal form that reads back as the same float64, as in the CSV, and a negative
 // zero is 0; at is RFC 3339 in UTC with nine decimals; in texts \ is written \\ and a line feed \n.
@@ -87,6 +88,9 @@ func canonical(t *snubber.Trial) string {
 		line("reading", string(r.Quantity)+" "+decimal(r.Value))
 		number("u", r.U)
 		text("instrument", r.Instrument)
+		if r.FromWaveform {
+			line("from", "waveform")
+		}
 		for _, v := range r.Repeats {
 			line("repeat", decimal(v))
 		}

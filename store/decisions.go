@@ -29,9 +29,9 @@ func (lb *Logbook) Decisions(ctx context.Context, s Scope) iter.Seq2[Decision, e
 // Decision gives one decision by its id or by the last 6 or more characters of it. Errors are of kind ErrNoDecision where
 // there is none.
 func (lb *Logbook) Decision(ctx context.Context, id string) (Decision, error) {
-	if old, err := lb.beforeDecisions(ctx, lb.db); err != nil {
+	if schema, err := schemaOf(ctx, lb.db); err != nil {
 		return Decision{}, explain(lb.path, err)
-	} else if old {
+	} else if schema < 2 {
 		return Decision{}, aDecision.none(id)
 	}
 	seq, _, err := aDecision.find(ctx, lb.db, id)
@@ -50,22 +50,6 @@ func (lb *Logbook) DecisionTrials(ctx context.Context, id string) iter.Seq2[snub
   JOIN decision_trial x ON x.decision = d.seq JOIN trial t ON t.seq = x.trial WHERE d.id = ?`, []any{id})
 }
 
-// beforeDecisions says whether the file's schema is older than decisions: a file that cannot be written stays so.
-func (lb *Logbook) beforeDecisions(ctx context.Context, db querier) (old bool, err error) {
-	rows, err := db.QueryContext(ctx, "PRAGMA user_version")
-	if err != nil {
-		return false, err
-	}
-	defer rows.Close()
-	version := 0
-	for rows.Next() {
-		if err := rows.Scan(&version); err != nil {
-			return false, err
-		}
-	}
-	return version < 2, rows.Err()
-}
-
 func (lb *Logbook) decisions(ctx context.Context, picked string, args []any) iter.Seq2[Decision, error] {
 	return func(yield func(Decision, error) bool) {
 		fail := func(err error) { yield(Decision{}, fmt.Errorf("read decisions: %w", explain(lb.path, err))) }
@@ -75,10 +59,10 @@ func (lb *Logbook) decisions(ctx context.Context, picked string, args []any) ite
 			return
 		}
 		defer tx.Rollback() // it only read
-		if old, err := lb.beforeDecisions(ctx, tx); err != nil {
+		if schema, err := schemaOf(ctx, tx); err != nil {
 			fail(err)
 			return
-		} else if old {
+		} else if schema < 2 {
 			return
 		}
 		rows, err := tx.QueryContext(ctx, fmt.Sprintf(selectDecisions, picked), args...)

@@ -9,8 +9,9 @@
 // It is not a database layer for other programs: it knows this one schema, and it refuses a file that is not its own
 // without touching it.
 //
-// Open makes or opens a logbook; Add logs one trial, AddAll many or none; Trials streams those in a Scope, Trial finds one
-// by its id or the end of it, Strike marks one as wrong. AddDecision logs what was recommended with the trials it rests on
+// Open makes or opens a logbook; Add logs one trial, AddWithWaveforms one with the captures behind its readings, AddAll many
+// or none; Trials streams those in a Scope, Trial finds one by its id or the end of it, Waveforms gives its captures, Strike
+// marks one as wrong. AddDecision logs what was recommended with the trials it rests on
 // and their TrialsDigest, Decisions and Decision give it back, DecisionTrials its trials. ReadCSV and WriteCSV carry trials in and out as CSV. What a person
 // has to know of a file that cannot be used is a Fault: the path, what is wrong, and the cure.
 //
@@ -47,11 +48,23 @@
 //	part          what was fitted, in words
 //	note          whatever was noted
 //	struck        why the trial was marked as wrong; NULL while it stands
+//	waveforms     how many captures are kept with it (since schema 3, as the next)
+//	from_waveform which of its readings were computed from samples: their names, with spaces between; NULL for none
 //
 // NULL is "not read" or "not stated". A trial logged without a time has that of its logging: its at is then the logged_at of
 // table trial. For example, the fastest bare ring of each revision:
 //
 //	SELECT board, revision, max(ring_hz) FROM trial_table WHERE struck IS NULL AND network = 'bare' GROUP BY 1, 2;
+//
+// # Waveforms
+//
+// A captured edge is kept in table waveform with its trial: the samples in volts, bit for bit, packed as its encoding says,
+// and the SHA-256 (FIPS 180-4) of the packed bytes, which every reading looks at. A reading that was computed from samples
+// rather than by the instrument says so (from_waveform; the digests of trials without one are what they were).
+//
+// A better estimator reads the same samples again, and what it finds is shown beside what was logged. It is not stored:
+// there is nothing that could go stale, and what a decision rested on stays. Where it is to count from now on, log
+// a new trial with the same waveforms, and strike the old one with the reason.
 //
 // # The view decision_table
 //

@@ -42,6 +42,22 @@ func latestVersion() (int, error) {
 	return len(names), err
 }
 
+// schemaOf is the schema db has now: an older file that is open for reading alone stays what it was, until another
+// program brings it up to date.
+func schemaOf(ctx context.Context, db querier) (version int, err error) {
+	rows, err := db.QueryContext(ctx, "PRAGMA user_version")
+	if err != nil {
+		return 0, err
+	}
+	defer rows.Close()
+	for rows.Next() {
+		if err := rows.Scan(&version); err != nil {
+			return 0, err
+		}
+	}
+	return version, rows.Err()
+}
+
 // migrate brings the schema up to date. Each migration is one transaction that also sets user_version, and the version
 // is read again inside it: of two programs that open an old file at once, one migrates and the other finds it done.
 func migrate(ctx context.Context, conn *sql.Conn, path string) error {

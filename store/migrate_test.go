@@ -2,19 +2,24 @@ package store
 
 import (
 	"bytes"
+	"fmt"
 	"os"
 	"path/filepath"
 	"strings"
 	"testing"
 
+	"github.com/google/go-cmp/cmp"
+
 	"ringbook/snubber"
 )
 
-// version1 is a copy of a logbook that the program of schema 1 wrote: a board with two revisions, five trials of one, the
-// last of them struck. testdata/version1.sqlite is never made again.
-func version1(t *testing.T) string {
+// version is a copy of a logbook that the program of an older schema wrote; the files in testdata are never made again.
+//
+//	1  a board with two revisions, five trials of one, the last of them struck
+//	2  three trials with five readings each, a decision that rests on them, and the last struck since
+func version(t *testing.T, schema int) string {
 	t.Helper()
-	data, err := os.ReadFile("testdata/version1.sqlite")
+	data, err := os.ReadFile(fmt.Sprintf("testdata/version%d.sqlite", schema))
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -24,15 +29,14 @@ func version1(t *testing.T) string {
 }
 
 func TestVersion1MovesForward(t *testing.T) {
-	path := version1(t)
+	path := version(t, 1)
 	lb, err := Open(t.Context(), path)
 	if err != nil {
 		t.Fatal(err)
 	}
 	defer lb.Close()
-	var version int
-	if err := lb.db.QueryRowContext(t.Context(), "PRAGMA user_version").Scan(&version); err != nil || version != 2 {
-		t.Errorf("schema %d, %v; want 2", version, err)
+	if schema, err := schemaOf(t.Context(), lb.db); err != nil || schema != 3 {
+		t.Errorf("schema %d, %v; want 3", schema, err)
 	}
 	trials := checkVersion1(t, lb)
 	if n := len(decisions(t, lb, Scope{})); n != 0 {
@@ -60,7 +64,7 @@ func TestVersion1MovesForward(t *testing.T) {
 
 // Read alone it stays a file of schema 1, and has no decisions.
 func TestVersion1IsRead(t *testing.T) {
-	path := version1(t)
+	path := version(t, 1)
 	before, err := os.ReadFile(path)
 	if err != nil {
 		t.Fatal(err)
@@ -107,4 +111,80 @@ func checkVersion1(t *testing.T, lb *Logbook) []snubber.Trial {
 		t.Errorf("boards %+v, %v", boards, err)
 	}
 	return all[:4]
+}
+
+func TestVersion2MovesForward(t *testing.T) {
+	path := version(t, 2)
+	lb, err := Open(t.Context(), path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer lb.Close()
+	checkVersion2(t, lb)
+	var n int
+	err = lb.db.QueryRowContext(t.Context(), "SELECT count(*) FROM trial_table WHERE waveforms = 0 AND from_waveform IS NULL AND ring_hz = 1.8e6").Scan(&n)
+	if err != nil || n != 3 {
+		t.Errorf("%d trials in the view, %v; want 3", n, err)
+	}
+	id, want := mustAddWithWaveforms(t, lb)
+	if got := waveforms(t, lb, id); len(got) != 2 || got[0].StepV != want[0].StepV {
+		t.Errorf("%d waveforms", len(got))
+	}
+	if trial, err := lb.Trial(t.Context(), id); err != nil || !trial.Readings[0].FromWaveform {
+		t.Errorf("%+v, %v", trial, err)
+	}
+}
+
+// Read alone it stays a file of schema 2, whose waveforms have no step.
+func TestVersion2IsRead(t *testing.T) {
+	path := version(t, 2)
+	p, err := packRecord(captured(100))
+	if err != nil {
+		t.Fatal(err)
+	}
+	err = execOn(t, path, fmt.Sprintf(`INSERT INTO waveform (id, trial, start_s, interval_s, samples, encoding, sha256)
+  VALUES ('01900000-0000-7000-8000-00000012cafe', 1, %g, %g, x'%x', '%s', x'%x')`, p.Start, p.Interval, p.samples, p.encoding, p.digest))
+	if err != nil {
+		t.Fatal(err)
+	}
+	before, err := os.ReadFile(path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	lb, err := OpenReadOnly(t.Context(), path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	trials := checkVersion2(t, lb)
+	want := captured(100)
+	want.StepV, want.Origin = 0, ""
+	got := waveforms(t, lb, trials[0].ID)
+	if len(got) != 1 || !cmp.Equal(want, got[0].Record) {
+		t.Errorf("waveforms %+v", got)
+	}
+	if err := lb.Close(); err != nil {
+		t.Fatal(err)
+	}
+	after, err := os.ReadFile(path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if !bytes.Equal(before, after) {
+		t.Error("the file has changed")
+	}
+}
+
+// checkVersion2 finds the digest that its decision was logged with in its trials as they are read now.
+func checkVersion2(t *testing.T, lb *Logbook) []snubber.Trial {
+	t.Helper()
+	all := collect(t, lb, Scope{IncludeStruck: true})
+	if len(all) != 3 || all[2].Struck != "the clip slipped" || len(all[2].Readings) != 5 || all[2].Readings[2].Value != 72 {
+		t.Fatalf("trials %+v", all)
+	}
+	const digest = "2b0ab8d99ea13be5abdfe8ca1b64261af74eb410ba430ecec4d0563e8483639b"
+	d := decisions(t, lb, Scope{})
+	if len(d) != 1 || len(d[0].Trials) != 3 || d[0].Digest != digest || TrialsDigest(all) != digest {
+		t.Errorf("decisions %+v; digest of the trials %s, want %s", d, TrialsDigest(all), digest)
+	}
+	return all
 }

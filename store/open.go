@@ -56,6 +56,9 @@ func open(ctx context.Context, path string, wait time.Duration) (*Logbook, error
 // logbook that was closed in an orderly way is read as it stands. One of an older schema is read as it is: a migration only
 // adds, and what was not there then reads as none.
 //
+// Where the file and its folder can be written, the last to close it clears away SQLite's files beside it (-wal and -shm),
+// and so finishes what a killed program had committed and left in them; nothing else is written.
+//
 // Errors are of kind ErrMissing, ErrStranger, ErrNewer, ErrDamaged or ErrBusy.
 func OpenReadOnly(ctx context.Context, path string) (*Logbook, error) {
 	path, err := locate(path)
@@ -65,7 +68,9 @@ func OpenReadOnly(ctx context.Context, path string) (*Logbook, error) {
 	if err := inspect(ctx, path, false); err != nil {
 		return nil, err
 	}
-	lb, err := openToRead(ctx, path, "mode=ro")
+	// Opened with mode=ro, SQLite makes its files beside a logbook and may not remove them again. So the file is opened as
+	// for writing, which SQLite takes for reading where the file is write-protected, and every statement that writes is refused.
+	lb, err := openToRead(ctx, path, "mode=rw&_pragma=query_only(1)")
 	if errors.Is(err, ErrReadOnly) && !exists(path+"-wal") && !exists(path+"-journal") {
 		// No room for the files that let readers and writers share; with no writes pending, none are needed.
 		lb, err = openToRead(ctx, path, "mode=ro&immutable=1")

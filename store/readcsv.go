@@ -19,7 +19,8 @@ import (
 // a time as RFC 3339 writes it.
 //
 // The columns are those of trial_table without id, and besides them esr (ohm), measured_c and measured_c_u (F), supply_a,
-// supply_a_u (A), temp_c, temp_c_u (degree Celsius), session, and struck (the reason, of a trial already marked as wrong).
+// supply_a_u (A), temp_c, temp_c_u (degree Celsius), session, struck (the reason, of a trial already marked as wrong), and
+// from_waveform (which of the readings were computed from a waveform, their names with spaces between them).
 //
 // Every bad row is looked for: the sequence yields trials up to the first, and ends with one BadRows error that names the
 // lines, columns and cells of the first twenty. Given to Logbook.AddAll, a file with a bad row logs nothing. Where r has a

@@ -5,14 +5,16 @@ import (
 	"database/sql"
 	"errors"
 	"fmt"
+	"strings"
 
 	"ringbook/snubber"
 )
 
 // The same order as selectTrials: the cursors are merged by the trial's seq.
 const (
+	fromWaveform   = `ifnull(r.from_waveform, 0)` // since schema 3
 	selectReadings = `
-SELECT r.trial, r.quantity, r.value, ifnull(r.u, 0), ifnull(i.idn, '')
+SELECT r.trial, r.quantity, r.value, ifnull(r.u, 0), ifnull(i.idn, ''), ` + fromWaveform + `
 FROM (%s) picked CROSS JOIN reading r ON r.trial = picked.seq LEFT JOIN instrument i ON i.id = r.instrument
 ORDER BY picked.at, picked.seq, r.quantity`
 	selectRepeats = `
@@ -27,8 +29,14 @@ type readings struct {
 }
 
 func openReadings(ctx context.Context, tx *sql.Tx, picked string, args []any) (*readings, error) {
-	values, err := openCursor(ctx, tx, selectReadings, picked, args, func(rows *sql.Rows, seq *int64, r *snubber.Reading) error {
-		return rows.Scan(seq, &r.Quantity, &r.Value, &r.U, &r.Instrument)
+	query := selectReadings
+	if schema, err := schemaOf(ctx, tx); err != nil {
+		return nil, err
+	} else if schema < 3 {
+		query = strings.Replace(query, fromWaveform, "0", 1)
+	}
+	values, err := openCursor(ctx, tx, query, picked, args, func(rows *sql.Rows, seq *int64, r *snubber.Reading) error {
+		return rows.Scan(seq, &r.Quantity, &r.Value, &r.U, &r.Instrument, &r.FromWaveform)
 	})
 	if err != nil {
 		return nil, err

@@ -46,7 +46,7 @@ func drawTrial(rt *rapid.T) snubber.Trial {
 	}
 	for _, q := range []snubber.Quantity{snubber.RingHz, snubber.DecayS, snubber.PeakV, snubber.SupplyA, snubber.TempC} {
 		if rapid.Bool().Draw(rt, string(q)) {
-			t.Readings = append(t.Readings, snubber.Reading{Quantity: q, Value: positive.Draw(rt, "value"), U: maybe(positive)})
+			t.Readings = append(t.Readings, snubber.Reading{Quantity: q, Value: positive.Draw(rt, "value"), U: maybe(positive), FromWaveform: rapid.Bool().Draw(rt, "from_waveform")})
 		}
 	}
 	return t
@@ -108,6 +108,7 @@ func FuzzReadCSV(f *testing.F) {
 	f.Add("\ufeffnote,network,revision,board\r\n\"a\nb\",bare,1,\"A \"\"x\"\"\"\r\n")
 	f.Add("board;revision;network\n")
 	f.Add("board,revision,network,temp_c,temp_c_u,peak_v,struck,session\nA,1,bare,-4,1,1e-320,wrong,monday\n,,,,,,,\n")
+	f.Add("from_waveform,board,revision,network,ring_hz,peak_v,temp_c\nring_hz  temp_c,A,1,bare,1M,2,3\n")
 	f.Add("board,revision,network,note\nA,1,bare,\"open")
 	f.Fuzz(func(t *testing.T, file string) {
 		got, err := readAll(ReadCSV(strings.NewReader(file)))

@@ -5,6 +5,7 @@ import (
 	"database/sql"
 	"errors"
 	"path/filepath"
+	"slices"
 	"strconv"
 	"strings"
 	"sync"
@@ -147,5 +148,87 @@ func TestTwoProgramsAtOnce(t *testing.T) {
 	}
 	if n := len(collect(t, lb, Scope{})); n != 4*each || len(ids) != 0 {
 		t.Errorf("%d trials, want %d; lost: %v", n, 4*each, ids)
+	}
+}
+
+// TestWaveformsFromTwoProgramsAtOnce has another process log waveforms while this one does, and each sees its own.
+func TestWaveformsFromTwoProgramsAtOnce(t *testing.T) {
+	lb := openTemp(t)
+	const each = 20
+	var ids []string
+	cmd, lines := startChild(t, lb.Path(), strconv.Itoa(each)+" with waveforms")
+	lines.Scan() // ready
+	for range each {
+		id, _ := mustAddWithWaveforms(t, lb)
+		ids = append(ids, id)
+	}
+	for lines.Scan() {
+		ids = append(ids, lines.Text())
+	}
+	if err := cmd.Wait(); err != nil {
+		t.Fatal("the child failed:", err)
+	}
+	_, want := withWaveforms()
+	seen := map[string]bool{}
+	for _, id := range ids {
+		for i, w := range waveforms(t, lb, id) {
+			if w.TrialID != id || !slices.Equal(w.Volts, want[i].Volts) {
+				t.Errorf("waveform %s of trial %s is another", w.ID, id)
+			}
+			seen[w.ID] = true
+		}
+	}
+	if len(ids) != 2*each || len(seen) != 4*each {
+		t.Errorf("%d trials with %d waveforms, want %d with %d", len(ids), len(seen), 2*each, 4*each)
+	}
+}
+
+// TestReadersLeaveNothing has readers come and go beside each other and beside a writer.
+func TestReadersLeaveNothing(t *testing.T) {
+	dir := t.TempDir()
+	path := filepath.Join(dir, "ringbook.db")
+	lb, err := Open(t.Context(), path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	mustAdd(t, lb, example())
+	var readers sync.WaitGroup
+	for range 4 {
+		readers.Go(func() {
+			for range 25 {
+				r, err := OpenReadOnly(t.Context(), path)
+				if err != nil {
+					t.Error(err)
+					return
+				}
+				if _, err := r.db.ExecContext(t.Context(), "INSERT INTO board (name) VALUES ('x')"); err == nil {
+					t.Error("a logbook open for reading alone was written to")
+				}
+				if n := len(collect(t, r, Scope{})); n == 0 {
+					t.Error("no trials")
+				}
+				if err := r.Close(); err != nil {
+					t.Error(err)
+				}
+			}
+		})
+	}
+	for range 50 {
+		mustAdd(t, lb, example())
+	}
+	if err := lb.Close(); err != nil {
+		t.Error(err)
+	}
+	readers.Wait()
+	if names, _ := filepath.Glob(filepath.Join(dir, "*")); len(names) != 1 {
+		t.Errorf("left beside the logbook: %v", names)
+	}
+	r, err := OpenReadOnly(t.Context(), path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer r.Close()
+	if n := len(collect(t, r, Scope{})); n != 51 {
+		t.Errorf("%d trials, want 51", n)
 	}
 }

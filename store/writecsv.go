@@ -11,7 +11,7 @@ import (
 
 // WriteCSV writes trials as CSV with the columns ReadCSV reads, and says how many it wrote. What was read from CSV is
 // written without loss: numbers are unscaled SI in the shortest form that reads back as the same float64. Ids, the
-// instruments, single repeats, and the uncertainty of an operating point's readings have no column.
+// instruments, single repeats, waveforms, and the uncertainty of an operating point's readings have no column.
 func WriteCSV(w io.Writer, trials iter.Seq2[snubber.Trial, error]) (n int, err error) {
 	all := columns()
 	row := make([]string, len(all))
