@@ -3,6 +3,7 @@ package store
 import (
 	"context"
 	"errors"
+	"iter"
 	"math"
 	"slices"
 	"strings"
@@ -59,6 +60,15 @@ func waveforms(t testing.TB, lb *Logbook, trial string) (all []Waveform) {
 	return all
 }
 
+func firstError(all iter.Seq2[Waveform, error]) error {
+	for _, err := range all {
+		if err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
 func TestWaveformsAreKept(t *testing.T) {
 	lb := openTemp(t)
 	other := mustAdd(t, lb, example())
@@ -99,10 +109,16 @@ func TestWaveformsAreKept(t *testing.T) {
 	if got := waveforms(t, again, other); len(got) != 0 {
 		t.Errorf("%d waveforms of a trial without", len(got))
 	}
-	for _, err := range again.Waveforms(t.Context(), "0123456789ab") {
-		if !errors.Is(err, ErrNoTrial) {
-			t.Errorf("waveforms of no trial: %v", err)
-		}
+	if err := firstError(again.Waveforms(t.Context(), "0123456789ab")); !errors.Is(err, ErrNoTrial) {
+		t.Errorf("waveforms of no trial: %v", err)
+	}
+	ended, cancel := context.WithCancel(t.Context())
+	cancel()
+	if err := firstError(again.Waveforms(ended, id)); !errors.Is(err, context.Canceled) {
+		t.Errorf("after the end of the context: %v", err)
+	}
+	if err := firstError(lb.Waveforms(t.Context(), id)); err == nil || !strings.Contains(err.Error(), "closed") {
+		t.Errorf("of a closed logbook: %v", err)
 	}
 	trialWith, records := withWaveforms()
 	if _, err := again.AddWithWaveforms(t.Context(), trialWith, records); !errors.Is(err, ErrReadOnly) {
