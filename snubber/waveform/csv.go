@@ -7,7 +7,6 @@ import (
 	"errors"
 	"fmt"
 	"io"
-	"strconv"
 
 	"ringbook/snubber/quantity"
 )
@@ -31,7 +30,7 @@ const maxCSVLine = 64 << 10
 // step. The start is the first time as printed; the interval is last less first over the number of steps, at the fewest
 // digits that this rounding of the two leaves open.
 //
-// An error names line and column. Memory is the samples', at most 2.25 times while they come in; the text is not held.
+// An error names line and column. Memory is the samples', twice while they come in; the text is not held.
 func ReadCSV(r io.Reader, name string) (Record, error) {
 	file := name
 	if file == "" {
@@ -81,10 +80,11 @@ type csvFile struct {
 	cells   [][]byte
 	unquote []byte // where the cells of a quoted row stand
 	times   timeline
+	volts   pile
 }
 
 func (c *csvFile) read(rec *Record) error {
-	header := 0
+	header, n := 0, 0
 	for {
 		err := c.row()
 		if err == io.EOF {
@@ -93,7 +93,7 @@ func (c *csvFile) read(rec *Record) error {
 		if err != nil {
 			return err
 		}
-		if rec.Volts == nil && header == 0 && isHeader(c.cells) {
+		if n == 0 && header == 0 && isHeader(c.cells) {
 			if err := c.checkHeader(); err != nil {
 				return err
 			}
@@ -106,59 +106,59 @@ func (c *csvFile) read(rec *Record) error {
 		t, digits, errT := csvNumber(c.cells[0], quantity.Time)
 		v, _, errV := csvNumber(c.cells[1], quantity.Voltage)
 		switch {
-		case errT != nil && errV != nil && header > 0 && rec.Volts == nil:
+		case errT != nil && errV != nil && header > 0 && n == 0:
 			return fmt.Errorf("line %d: a second row of text above the samples (%q): delete it, or begin it with #", c.line, cutText(c.cells[0]))
 		case errT != nil:
 			return c.fault(1, errT)
 		case errV != nil:
 			return c.fault(2, errV)
-		case len(rec.Volts) == MaxSamples:
+		case n == MaxSamples:
 			return fmt.Errorf("line %d: more than %d samples: cut the record to the part around the edge", c.line, MaxSamples)
 		}
 		if err := c.times.add(t, digits, c.line); err != nil {
 			return err
 		}
-		rec.Volts = append(rec.Volts, v)
+		c.volts.add(v)
+		n++
 	}
 	switch {
 	case c.line == 0:
 		return errors.New("is empty: it needs two columns, time in seconds and volts")
-	case len(rec.Volts) == 0:
+	case n == 0:
 		return fmt.Errorf("has no samples in its %d lines: it needs two columns, time in seconds and volts", c.line)
-	case len(rec.Volts) == 1:
+	case n == 1:
 		return fmt.Errorf("has one sample, on line %d: an interval needs two, and a ring many more", c.line)
 	}
 	var err error
-	rec.Start = c.times.first
+	rec.Start, rec.Volts = c.times.first, c.volts.all(n)
 	rec.Interval, err = c.times.interval()
 	return err
-}
-
-// csvNumber reads a cell. digits counts the significant digits it is written with.
-func csvNumber(cell []byte, unit quantity.Unit) (v float64, digits int, err error) {
-	plain, mantissa := true, true
-	for _, b := range cell {
-		switch {
-		case b >= '0' && b <= '9':
-			if mantissa && (digits > 0 || b != '0') {
-				digits++
-			}
-		case b == '.', b == '-', b == '+':
-		default:
-			mantissa = false
-			plain = plain && (b == 'e' || b == 'E')
-		}
-	}
-	if plain {
-		if v, err := strconv.ParseFloat(string(cell), 64); err == nil {
-			return v, digits, nil
-		}
-	}
-	v, err = quantity.Parse(string(cell), unit)
-	return v, digits, err
 }
 
 func (c *csvFile) fault(column int, err error) error {
 	name := [...]string{"time", "volts"}[column-1]
 	return fmt.Errorf("line %d, column %d (%s): %w", c.line, column, name, err)
+}
+
+// pile holds samples until their number is known: one slice that grows would hold them 2.25 times while it is copied, and
+// leave the most of that behind as garbage.
+type pile struct {
+	full [][]float64
+	top  []float64
+}
+
+func (p *pile) add(v float64) {
+	if len(p.top) == cap(p.top) {
+		p.full = append(p.full, p.top)
+		p.top = make([]float64, 0, min(max(512, 2*cap(p.top)), 1<<18))
+	}
+	p.top = append(p.top, v)
+}
+
+func (p *pile) all(n int) []float64 {
+	volts := make([]float64, 0, n)
+	for _, part := range p.full {
+		volts = append(volts, part...)
+	}
+	return append(volts, p.top...)
 }
