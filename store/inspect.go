@@ -43,9 +43,9 @@ func inspect(ctx context.Context, path string, mayMake bool) error {
 	id, version, err := header(ctx, path)
 	var lite *sqlite.Error
 	switch {
-	case errors.As(err, &lite) && lite.Code()&0xff == sqlite3.SQLITE_CORRUPT && (exists(path+"-wal") || exists(path+"-journal")):
-		// A program was killed while it wrote, and left the log or journal by which SQLite makes the file whole when it
-		// is opened. What it then holds, migrate looks at.
+	case errors.As(err, &lite) && lite.Code()&0xff == sqlite3.SQLITE_CORRUPT:
+		// No lock is held, so that another program may have been writing just then; or one was killed while it wrote, and
+		// left the log or journal by which SQLite makes the file whole. Who opens it next, under locks, finds out.
 		return nil
 	case err != nil:
 		return explain(path, err)

@@ -83,13 +83,17 @@ func openToRead(ctx context.Context, path, mode string) (*Logbook, error) {
 	if err != nil {
 		return nil, explain(path, err)
 	}
+	var id int32
 	var version int
-	if err := db.QueryRowContext(ctx, "PRAGMA user_version").Scan(&version); err != nil {
+	err = db.QueryRowContext(ctx, "SELECT application_id, user_version FROM pragma_application_id, pragma_user_version").Scan(&id, &version)
+	if err != nil {
 		return nil, errors.Join(explain(path, err), db.Close())
 	}
 	latest, err := latestVersion()
 	switch {
 	case err != nil:
+	case id != applicationID:
+		err = stranger(path, uint32(id))
 	case version > latest:
 		err = newer(path, version, latest)
 	case version < 1:

@@ -124,6 +124,21 @@ func TestOpenRefusesAndLeavesAlone(t *testing.T) {
 	}
 }
 
+// A file whose header could not be read while another program wrote is looked at again once it is open.
+func TestStrangerSeenOnceOpen(t *testing.T) {
+	path := filepath.Join(t.TempDir(), "mine.db")
+	if err := execOn(t, path, "PRAGMA application_id=0x1234; PRAGMA user_version=2; CREATE TABLE trial (id)"); err != nil {
+		t.Fatal(err)
+	}
+	lb, err := openToRead(t.Context(), path, "mode=rw")
+	if err == nil {
+		lb.Close()
+	}
+	if !errors.Is(err, ErrStranger) || !strings.Contains(err.Error(), "0x1234") {
+		t.Errorf("another program's file, opened to read: %v", err)
+	}
+}
+
 func put(t *testing.T, path string, data []byte) {
 	t.Helper()
 	if err := os.WriteFile(path, data, 0o644); err != nil {

@@ -232,3 +232,35 @@ func TestReadersLeaveNothing(t *testing.T) {
 		t.Errorf("%d trials, want 51", n)
 	}
 }
+
+// TestProgramsComeAndGo has processes open, read or write, and close again beside each other: none finds fault with a file
+// that another is just changing, and nothing stays beside it.
+func TestProgramsComeAndGo(t *testing.T) {
+	dir := t.TempDir()
+	path := filepath.Join(dir, "ringbook.db")
+	lb, err := Open(t.Context(), path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	mustAdd(t, lb, example())
+	if err := lb.Close(); err != nil {
+		t.Fatal(err)
+	}
+	var programs sync.WaitGroup
+	for _, work := range []string{"read", "read", "read", "3 with waveforms"} {
+		programs.Go(func() {
+			for range rounds(t, 40) {
+				cmd, lines := startChild(t, path, work)
+				for lines.Scan() {
+				}
+				if err := cmd.Wait(); err != nil {
+					t.Errorf("%s: %v", work, err)
+				}
+			}
+		})
+	}
+	programs.Wait()
+	if names, _ := filepath.Glob(filepath.Join(dir, "*")); len(names) != 1 {
+		t.Errorf("left beside the logbook: %v", names)
+	}
+}
