@@ -5,7 +5,6 @@ import (
 	"fmt"
 	"math"
 	"math/rand/v2"
-	"sort"
 	"testing"
 	"time"
 
@@ -200,93 +199,117 @@ func fitStudy(b *testing.B, kind studyKind) {
 // times larger the capacitor is than the smallest of the series with which any resistor would have kept it on that board;
 // and the time from trials to choice.
 func BenchmarkChoiceStudy(b *testing.B) {
-	for _, kind := range []studyKind{
-		{name: "linear"},
-		{name: "junction-and-fall", junction: 0.5, fall: 0.3},
-	} {
+	for _, kind := range choiceKinds {
 		b.Run(kind.name, func(b *testing.B) { choiceStudy(b, kind) })
 	}
 }
 
+var choiceKinds = []studyKind{
+	{name: "linear"},
+	{name: "junction-and-fall", junction: 0.5, fall: 0.3},
+}
+
 const (
-	studyCTol = 0.05
-	studyRTol = 0.01
+	studyCTol  = 0.05
+	studyRTol  = 0.01
+	studyDraws = 2000
 )
 
-func choiceStudy(b *testing.B, kind studyKind) {
+// choiceCase is a board with the limit its peak must keep.
+type choiceCase struct {
+	seed  uint64
+	s     *studyBoard
+	board *simbench.Model // without a probe, with parts that are what they say
+	limit float64         // V
+}
+
+func makeChoiceCase(b *testing.B, kind studyKind, seed uint64) *choiceCase {
+	s, err := makeStudyBoard(kind, seed)
+	if err != nil {
+		b.Fatal(err)
+	}
+	cfg := s.cfg
+	cfg.ProbeF, cfg.Parts.CTol, cfg.Parts.RTol = 0, 0, 0
+	board, err := simbench.New(cfg)
+	if err != nil {
+		b.Fatal(err)
+	}
+	bare, err := board.Respond(context.Background(), simbench.Network{Kind: simbench.Bare})
+	if err != nil {
+		b.Fatal(err)
+	}
+	rng := rand.New(rand.NewPCG(seed, 23))
+	return &choiceCase{seed: seed, s: s, board: board, limit: cfg.BusV + (0.4+0.4*rng.Float64())*(bare.Peak-cfg.BusV)}
+}
+
+// choose goes from the trials to the choice, and says how long it took.
+func (x *choiceCase) choose(b *testing.B) (*snubber.Recommendation, time.Duration) {
 	ctx := context.Background()
+	began := time.Now()
+	fit, err := snubber.Fit(ctx, x.s.trials)
+	if err != nil {
+		b.Fatal(err)
+	}
+	ahead, _, err := fit.Ahead(fit.Hardest(x.s.trials), studyDraws, 1)
+	if err != nil {
+		b.Fatal(err)
+	}
+	rec, err := snubber.Recommend(ctx, ahead, snubber.Limits{MaxPeak: x.limit, SwitchingHz: 100e3, CTol: studyCTol, RTol: studyRTol})
+	if err != nil {
+		b.Fatal(err)
+	}
+	return rec, time.Since(began)
+}
+
+// keeps says whether the board itself keeps the limit with the parts at every corner of their tolerances.
+func (x *choiceCase) keeps(b *testing.B) func(c, r float64) bool {
+	return func(c, r float64) bool {
+		for _, dc := range []float64{1 - studyCTol, 1 + studyCTol} {
+			for _, dr := range []float64{1 - studyRTol, 1 + studyRTol} {
+				y, err := x.board.Respond(context.Background(), simbench.Network{Kind: simbench.RC, C: c * dc, R: r * dr})
+				if err != nil {
+					b.Fatal(err)
+				}
+				if y.Peak > x.limit {
+					return false
+				}
+			}
+		}
+		return true
+	}
+}
+
+func choiceStudy(b *testing.B, kind studyKind) {
 	var boards, unmet, held, thumb, thumbLarger float64
 	var ratios []float64
 	var spent time.Duration
 	for b.Loop() {
 		boards++
-		seed := uint64(boards)
-		s, err := makeStudyBoard(kind, seed)
-		if err != nil {
-			b.Fatal(err)
-		}
-		cfg := s.cfg
-		cfg.ProbeF, cfg.Parts.CTol, cfg.Parts.RTol = 0, 0, 0
-		board, err := simbench.New(cfg)
-		if err != nil {
-			b.Fatal(err)
-		}
-		bare, err := board.Respond(ctx, simbench.Network{Kind: simbench.Bare})
-		if err != nil {
-			b.Fatal(err)
-		}
-		rng := rand.New(rand.NewPCG(seed, 23))
-		limit := cfg.BusV + (0.4+0.4*rng.Float64())*(bare.Peak-cfg.BusV)
-		began := time.Now()
-		fit, err := snubber.Fit(ctx, s.trials)
-		if err != nil {
-			b.Fatal(err)
-		}
-		ahead, _, err := fit.Ahead(fit.Hardest(s.trials), 2000, 1)
-		if err != nil {
-			b.Fatal(err)
-		}
-		rec, err := snubber.Recommend(ctx, ahead, snubber.Limits{MaxPeak: limit, SwitchingHz: 100e3, CTol: studyCTol, RTol: studyRTol})
-		if err != nil {
-			b.Fatal(err)
-		}
-		spent += time.Since(began)
-		keeps := func(c, r float64) bool {
-			for _, dc := range []float64{1 - studyCTol, 1 + studyCTol} {
-				for _, dr := range []float64{1 - studyRTol, 1 + studyRTol} {
-					x, err := board.Respond(ctx, simbench.Network{Kind: simbench.RC, C: c * dc, R: r * dr})
-					if err != nil {
-						b.Fatal(err)
-					}
-					if x.Peak > limit {
-						return false
-					}
-				}
-			}
-			return true
-		}
+		x := makeChoiceCase(b, kind, uint64(boards))
+		rec, took := x.choose(b)
+		spent += took
 		if !rec.Met {
 			unmet++
 			continue
 		}
+		keeps := x.keeps(b)
 		if keeps(rec.Choice.C, rec.Choice.R) {
 			held++
 		} else {
-			b.Logf("board %d: limit %.4g V, chosen %.3g ohm %.3g F, predicted %+v worst %.4g", seed, limit, rec.Choice.R, rec.Choice.C, *rec.Choice.Peak, rec.Choice.WorstV)
+			b.Logf("board %d: limit %.4g V, chosen %.3g ohm %.3g F, predicted %+v worst %.4g", x.seed, x.limit, rec.Choice.R, rec.Choice.C, *rec.Choice.Peak, rec.Choice.WorstV)
 		}
 		if keeps(rec.RuleOfThumb.C, rec.RuleOfThumb.R) {
 			thumb++
 		}
-		smallest := smallestThatKeeps(b, rec.Choice, keeps)
+		smallest := smallestThatKeeps(b, rec.Choice.C, rec.Choice.R, keeps)
 		ratios = append(ratios, rec.Choice.C/smallest)
 		thumbLarger += rec.RuleOfThumb.C / smallest
 	}
-	sort.Float64s(ratios)
 	met := boards - unmet
 	b.ReportMetric(100*held/met, "held-%")
 	b.ReportMetric(100*thumb/met, "thumb-held-%")
-	b.ReportMetric(ratios[len(ratios)/2], "C-ratio-median")
-	b.ReportMetric(ratios[len(ratios)*9/10], "C-ratio-p90")
+	b.ReportMetric(quantile(ratios, 0.5), "C-ratio-median")
+	b.ReportMetric(quantile(ratios, 0.9), "C-ratio-p90")
 	b.ReportMetric(thumbLarger/met, "thumb-C-ratio-mean")
 	b.ReportMetric(100*unmet/boards, "unmet-%")
 	b.ReportMetric(spent.Seconds()/boards*1e3, "ms-to-choice")
@@ -294,10 +317,10 @@ func choiceStudy(b *testing.B, kind studyKind) {
 
 // smallestThatKeeps walks down the E12 series from the choice as long as some resistor of E24 near its own keeps the limit,
 // or up where the choice does not.
-func smallestThatKeeps(b *testing.B, x *snubber.Choice, keeps func(c, r float64) bool) float64 {
+func smallestThatKeeps(b *testing.B, from, ohms float64, keeps func(c, r float64) bool) float64 {
 	any := func(c float64) bool {
 		// The best resistor goes about as C^-0.4 in this range; the neighbours on both sides are tried.
-		r := x.R * math.Pow(x.C/c, 0.4)
+		r := ohms * math.Pow(from/c, 0.4)
 		rs, err := preferred.E24.Between(r*0.6, r*1.7)
 		if err != nil {
 			b.Fatal(err)
@@ -309,7 +332,7 @@ func smallestThatKeeps(b *testing.B, x *snubber.Choice, keeps func(c, r float64)
 		}
 		return false
 	}
-	c := x.C
+	c := from
 	for range 12 {
 		if any(c) {
 			break
