@@ -58,8 +58,9 @@
 //
 // # Waveforms
 //
-// A captured edge is kept in table waveform with its trial: the samples in volts, bit for bit, packed as its encoding says,
-// and the SHA-256 (FIPS 180-4) of the packed bytes, which every reading looks at. A reading that was computed from samples
+// A captured edge is kept in table waveform with its trial: the samples in volts, bit for bit, packed by waveform.Pack in the
+// encoding it names, and the SHA-256 (FIPS 180-4) of the packed bytes, which is looked at whenever they are read. A new
+// encoding comes with a new schema, so that no older program takes it for damage. A reading that was computed from samples
 // rather than by the instrument says so (from_waveform; the digests of trials without one are what they were).
 //
 // A better estimator reads the same samples again, and what it finds is shown beside what was logged. It is not stored:

@@ -119,7 +119,10 @@ func packRecord(r waveform.Record) (packed, error) {
 		return packed{}, bad("origin", "it has %d bytes; it may have %d", len(r.Origin), maxText)
 	}
 	p := packed{Record: r}
-	p.samples, p.encoding = pack(r.Volts)
+	var err error
+	if p.samples, p.encoding, err = waveform.Pack(r.Volts); err != nil {
+		return packed{}, err
+	}
 	p.digest = sha256.Sum256(p.samples)
 	return p, nil
 }
@@ -150,8 +153,8 @@ func (lb *Logbook) scanWaveform(rows *sql.Rows, trial string) (Waveform, error) 
 		return fault("its samples are not those of its SHA-256", nil)
 	}
 	var err error
-	if w.Volts, err = unpack(samples, encoding); err != nil {
-		return fault("its samples cannot be unpacked: "+err.Error(), err)
+	if w.Volts, err = waveform.Unpack(samples, encoding); err != nil {
+		return fault(err.Error(), err)
 	}
 	if err := w.Check(); err != nil {
 		return fault(err.Error(), err)
