@@ -5,7 +5,9 @@ import (
 	"context"
 	"io"
 	"net"
+	"strings"
 	"testing"
+	"time"
 
 	"ringbook/acquire/acquiretest"
 	"ringbook/acquire/scpi"
@@ -48,6 +50,92 @@ func BenchmarkParseNumber(b *testing.B) {
 			b.Fatal(err)
 		}
 	}
+}
+
+// BenchmarkBlock reads a 10 MB block over loopback TCP into memory, in three ways: the bare bytes by io.ReadFull from the
+// socket, QueryBlock, and QueryBlockTo into memory that is used again. Each of the latter has its rate as a fraction of
+// the bare one's, measured in turn with it.
+func BenchmarkBlock(b *testing.B) {
+	const size = 10_000_000
+	conn := blocks(b, size)
+	room := make([]byte, size+len("#810000000\n"))
+	bare := func() error {
+		if _, err := io.WriteString(conn, "READ?\n"); err != nil {
+			return err
+		}
+		_, err := io.ReadFull(conn, room)
+		return err
+	}
+	dialogue, err := scpi.NewConn(conn, scpi.Options{})
+	if err != nil {
+		b.Fatal(err)
+	}
+	ctx := context.Background()
+	for name, read := range map[string]func() error{
+		"QueryBlock": func() error {
+			_, err := dialogue.QueryBlock(ctx, "READ?")
+			return err
+		},
+		"QueryBlockTo": func() error {
+			return dialogue.QueryBlockTo(ctx, func(body io.Reader, n int64) error {
+				_, err := io.ReadFull(body, room[:n])
+				return err
+			}, "READ?")
+		},
+	} {
+		b.Run(name, func(b *testing.B) {
+			b.SetBytes(size)
+			var ours, theirs time.Duration
+			for b.Loop() {
+				begun := time.Now()
+				if err := bare(); err != nil {
+					b.Fatal(err)
+				}
+				middle := time.Now()
+				if err := read(); err != nil {
+					b.Fatal(err)
+				}
+				theirs += middle.Sub(begun)
+				ours += time.Since(middle)
+			}
+			b.ReportMetric(theirs.Seconds()/ours.Seconds(), "of-bare-rate")
+			b.ReportMetric(size*float64(b.N)/ours.Seconds()/1e6, "MB/s-block")
+			b.ReportMetric(size*float64(b.N)/theirs.Seconds()/1e6, "MB/s-bare")
+		})
+	}
+}
+
+// blocks gives a connection to an instrument that answers READ? with a block and knows an error queue.
+func blocks(b *testing.B, size int) net.Conn {
+	b.Helper()
+	reply := []byte(block(strings.Repeat("\x0a\x80\x7f\xff", size/4)) + "\n")
+	listener, err := net.Listen("tcp", "127.0.0.1:0")
+	if err != nil {
+		b.Fatal(err)
+	}
+	defer listener.Close()
+	conn, err := net.Dial("tcp", listener.Addr().String())
+	if err != nil {
+		b.Fatal(err)
+	}
+	far, err := listener.Accept()
+	if err != nil {
+		b.Fatal(err)
+	}
+	go func() {
+		defer far.Close()
+		for in := bufio.NewScanner(far); in.Scan(); {
+			answer := []byte("0,\"No error\"\n")
+			if in.Text() == "READ?" {
+				answer = reply
+			}
+			if _, err := far.Write(answer); err != nil {
+				return
+			}
+		}
+	}()
+	b.Cleanup(func() { conn.Close() })
+	return conn
 }
 
 // loopback gives a connection to a meter.

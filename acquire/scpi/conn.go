@@ -19,9 +19,9 @@ const (
 
 // Options of a Conn. The zero value is right for most instruments.
 type Options struct {
-	Timeout      time.Duration // longest wait for one reply, where the context ends no sooner; 0: DefaultTimeout
+	Timeout      time.Duration // longest wait for one reply, of a streamed one for its next byte, where the context ends no sooner; 0: DefaultTimeout
 	Terminator   string        // what ends a message sent: "\n", "\r\n" or "\r"; "": "\n"
-	MaxReply     int           // longest reply, bytes; 0: DefaultMaxReply
+	MaxReply     int           // longest reply kept here, bytes; 0: DefaultMaxReply
 	MaxErrors    int           // most reads of the error queue after one message; 0: DefaultMaxErrors
 	NoErrorQueue bool          // the instrument does not know SYSTem:ERRor?; see Staying in step for the price
 }
@@ -33,8 +33,11 @@ type Conn struct {
 	link     deadliner // nil where rwc has no deadlines
 	r        *bufio.Reader
 	opt      Options
-	identity string // the first *IDN? answer
-	lost     error  // why replies can no longer be told apart; nil: in step
+	identity string  // the first *IDN? answer
+	lost     error   // why replies can no longer be told apart; nil: in step
+	wait     *wait   // the one under way; nil: none
+	patient  bool    // every read has the whole timeout anew
+	skipped  *string // where line puts the blanks before the next line; nil: nowhere
 }
 
 // NewConn starts a dialogue over rwc, which the Conn then owns. Where rwc has SetDeadline, as a net.Conn
@@ -60,7 +63,9 @@ func NewConn(rwc io.ReadWriteCloser, opt Options) (*Conn, error) {
 		opt.MaxErrors = DefaultMaxErrors
 	}
 	link, _ := rwc.(deadliner)
-	return &Conn{rwc: rwc, link: link, r: bufio.NewReader(rwc), opt: opt}, nil
+	c := &Conn{rwc: rwc, link: link, opt: opt}
+	c.r = bufio.NewReader(pulse{c})
+	return c, nil
 }
 
 // Close closes the link.
@@ -147,7 +152,10 @@ func (c *Conn) ask(ctx context.Context, msg string, timeout time.Duration, read 
 
 // line reads a reply that is one line of text.
 func (c *Conn) line() ([]byte, error) {
-	head, err := skipBlanks(c.r)
+	head, skipped, err := skipBlanks(c.r)
+	if c.skipped != nil {
+		*c.skipped, c.skipped = skipped, nil
+	}
 	if err != nil {
 		return nil, err
 	}

@@ -225,7 +225,7 @@ func TestNonsense(t *testing.T) {
 		"line for a block":      {meter("12 V\n"), block, `reply "12 V" to "READ?": not a block`},
 		"bad count":             {meter("#3x12\n"), block, `reply "#3x12"`},
 		"two lines at once":     {meter("1\n2\n"), number, `more came at once after it: "2"`},
-		"block too short":       {meter("#12abc\n"), block, `more came at once after it: "c`},
+		"block too short":       {meter("#12abc\n"), block, `reply "#12" to "READ?": after the 2 bytes that its count promises came more, "c`},
 		"binary for text":       {meter("\xfe\x01\x80\n"), number, "baud rate"},
 		"too long a line":       {meter(strings.Repeat("9", 2000) + "\n"), number, "longer than allowed"},
 		"too long a block":      {meter("#41001" + strings.Repeat("x", 1001) + "\n"), block, "longer than allowed"},

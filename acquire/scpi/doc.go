@@ -24,10 +24,17 @@
 //   - After a failed, silent or nonsensical exchange the Conn refuses every further one with
 //     [ErrOutOfStep], until [Conn.Resync] has thrown away what was under way and heard the instrument's
 //     identity again, or until the link is opened anew.
-//   - A reply followed at once by more text is not taken.
+//   - A reply followed at once by more text is not taken. Behind a block may stand a line end, or two; anything else,
+//     blanks and NULs included, at once or before the queue's reply, shows that its count was too small. (A surplus of
+//     line feeds alone cannot be told from a doubled terminator: who knows how many bytes to expect has to look.)
 //   - The error queue is read after each reply and before it is handed over. Instruments answer in
 //     order: were the reply one from before, the true one would now come in place of the queue's
 //     `number,"text"`, and both are refused. (So Options.NoErrorQueue gives up more than error texts.)
+//
+// # Waiting
+//
+// A line must be whole within Options.Timeout. A block, or a line that is streamed, may take as long as it likes while
+// bytes keep coming: there the timeout bounds each silence. The context bounds both.
 //
 // Sources: IEEE Std 488.2-1992, Standard Codes, Formats, Protocols, and Common Commands; SCPI-1999,
 // Volume 1, Syntax and Style, and Volume 2, Command Reference, chapter 21 (SYSTem:ERRor). What they say

@@ -55,7 +55,7 @@ func (e *InstrumentError) overflowed() bool {
 // ReplyError says that the instrument answered something that is no reply to what was asked.
 type ReplyError struct {
 	Command string // the program message
-	Reply   string // what came back, whole
+	Reply   string // what came back, whole; of a block its head
 	Err     error  // what is wrong with it
 }
 

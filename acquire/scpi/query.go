@@ -49,24 +49,6 @@ func (c *Conn) QueryLine(ctx context.Context, header string, args ...Arg) (line 
 	return line, err
 }
 
-// QueryBlock asks for one arbitrary block, definite or indefinite, and gives its bytes.
-func (c *Conn) QueryBlock(ctx context.Context, header string, args ...Arg) (block []byte, err error) {
-	read := func() ([]byte, error) {
-		b, err := ReadBlock(c.r, c.opt.MaxReply)
-		if err != nil && errors.Is(err, errNotBlock) {
-			// Take the rest of the line along, for the quote.
-			line, _ := readLine(c.r, len(b)+c.r.Buffered(), b, "\n")
-			return nil, &ReplyError{Reply: string(line), Err: err}
-		}
-		return b, err
-	}
-	err = c.query(ctx, read, func(reply string) error {
-		block = []byte(reply)
-		return nil
-	}, header, args)
-	return block, err
-}
-
 // Identity asks *IDN? and gives the answer, which must be the four fields the standard demands: maker,
 // model, serial number and firmware, separated by commas. IEEE 488.2, 10.14.
 func (c *Conn) Identity(ctx context.Context) (string, error) {
@@ -92,14 +74,8 @@ func checkIdentity(reply string) error {
 }
 
 func (c *Conn) query(ctx context.Context, read func() ([]byte, error), parse func(string) error, header string, args []Arg) error {
-	msg, err := message(header, args)
+	msg, err := c.begin(ctx, header, args)
 	if err != nil {
-		return err
-	}
-	if !IsQuery(header) {
-		return fmt.Errorf("query %s: its header does not end in ?, so no reply would come", quote(msg))
-	}
-	if err := c.ready(ctx); err != nil {
 		return err
 	}
 	reply, err := c.ask(ctx, msg, c.opt.Timeout, read)
@@ -117,6 +93,18 @@ func (c *Conn) query(ctx context.Context, read func() ([]byte, error), parse fun
 		return err
 	}
 	return perr
+}
+
+// begin puts a query's message together and refuses what need not be sent.
+func (c *Conn) begin(ctx context.Context, header string, args []Arg) (string, error) {
+	msg, err := message(header, args)
+	if err != nil {
+		return "", err
+	}
+	if !IsQuery(header) {
+		return "", fmt.Errorf("query %s: its header does not end in ?, so no reply would come", quote(msg))
+	}
+	return msg, c.ready(ctx)
 }
 
 // probe is how long an instrument that did not answer is given to say why.

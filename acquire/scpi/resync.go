@@ -69,7 +69,7 @@ func (c *Conn) identityLine() ([]byte, error) {
 
 // discard reads until nothing has come for a while.
 func (c *Conn) discard(ctx context.Context) error {
-	buf := make([]byte, 4096)
+	buf := make([]byte, 64<<10) // what is left of a block may be long
 	for end := time.Now().Add(c.opt.Timeout); time.Now().Before(end); {
 		c.r.Discard(c.r.Buffered())
 		err := c.within(ctx, quiet, func() error {
