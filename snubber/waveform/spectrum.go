@@ -115,6 +115,13 @@ func spectrumLength(n int) int {
 }
 
 func meanOf(v []float64) float64 {
+	sum := 0.0
+	for _, x := range v {
+		sum += x
+	}
+	if !math.IsInf(sum, 0) {
+		return sum / float64(len(v))
+	}
 	mean := 0.0
 	for _, x := range v {
 		mean += x / float64(len(v))
