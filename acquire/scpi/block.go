@@ -29,18 +29,20 @@ func ReadBlock(r *bufio.Reader, limit int) ([]byte, error) {
 	if err != nil {
 		return []byte(in.head), err
 	}
-	return readAll(in, in.size, limit)
+	return readAll(in, in.size, limit, nil)
 }
 
-// readAll keeps a reply of size bytes, -1 for one of unknown length.
-func readAll(r io.Reader, size int64, limit int) ([]byte, error) {
+// readAll keeps a reply of size bytes, -1 for one of unknown length, in room where it is large enough.
+func readAll(r io.Reader, size int64, limit int, room []byte) ([]byte, error) {
 	if size > int64(limit) {
 		return nil, fmt.Errorf("%w: a block of %d bytes, the most is %d", errTooLong, size, limit)
 	}
 	if size >= 0 {
-		b := make([]byte, size)
-		n, err := io.ReadFull(r, b)
-		return b[:n], err
+		if int64(cap(room)) < size {
+			room = make([]byte, size)
+		}
+		n, err := io.ReadFull(r, room[:size])
+		return room[:n], err
 	}
 	b, err := io.ReadAll(io.LimitReader(r, int64(limit)+1))
 	if err == nil && len(b) > limit {

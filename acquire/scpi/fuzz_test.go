@@ -4,6 +4,7 @@ import (
 	"bufio"
 	"errors"
 	"fmt"
+	"io"
 	"math"
 	"strings"
 	"testing"
@@ -85,6 +86,46 @@ func FuzzReadBlock(f *testing.F) {
 		again, err := ReadBlock(bufio.NewReader(strings.NewReader(fmt.Sprintf("#9%09d%s", len(b), b))), limit)
 		if err != nil || string(again) != string(b) {
 			t.Fatalf("%q came back as %q, %v", b, again, err)
+		}
+	})
+}
+
+// Whatever comes, in whatever pieces it is read: the same bytes, and not one beyond the block's own.
+func FuzzBlockInPieces(f *testing.F) {
+	for _, s := range []string{"#13abc\n", "#0abc\n", "#0\n", "#203\n\n\nnext", "#9999999999", "#", "#1", "1,2,3\r\nnext", "abc"} {
+		f.Add([]byte(s), uint8(2), false)
+		f.Add([]byte(s), uint8(200), true)
+	}
+	f.Fuzz(func(t *testing.T, in []byte, piece uint8, text bool) {
+		open := openBlock
+		if text {
+			open = openText
+		}
+		read := func(r *bufio.Reader, piece int) (body, rest string, err error) {
+			b, err := open(r)
+			if err != nil {
+				return b.head, "", err
+			}
+			var all []byte
+			buf := make([]byte, piece)
+			for err == nil {
+				var n int
+				n, err = b.Read(buf)
+				all = append(all, buf[:n]...)
+			}
+			left, _ := io.ReadAll(r)
+			if err == io.EOF && (b.size >= 0 && b.size != int64(len(all)) || b.err != nil) {
+				t.Fatalf("%q ended well after %d of %d bytes: %v", in, len(all), b.size, b.err)
+			}
+			return string(all), string(left), err
+		}
+		body, rest, err := read(bufio.NewReader(strings.NewReader(string(in))), 1+len(in))
+		body2, rest2, err2 := read(bufio.NewReaderSize(iotestOneByte{strings.NewReader(string(in))}, 16), 1+int(piece))
+		if body != body2 || rest != rest2 || fmt.Sprint(err) != fmt.Sprint(err2) {
+			t.Fatalf("%q: %q, %q, %v at once; %q, %q, %v in pieces", in, body, rest, err, body2, rest2, err2)
+		}
+		if err == io.EOF && !strings.HasSuffix(string(in), rest) || len(body)+len(rest) > len(in) {
+			t.Fatalf("%q: body %q, rest %q", in, body, rest)
 		}
 	})
 }

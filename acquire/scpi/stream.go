@@ -12,9 +12,15 @@ import (
 
 // QueryBlock asks for one arbitrary block, definite or indefinite, of at most Options.MaxReply bytes, and gives
 // its bytes. They go from the link into one slice, without a copy between. The waits are those of QueryBlockTo.
-func (c *Conn) QueryBlock(ctx context.Context, header string, args ...Arg) (block []byte, err error) {
+func (c *Conn) QueryBlock(ctx context.Context, header string, args ...Arg) ([]byte, error) {
+	return c.QueryBlockInto(ctx, nil, header, args...)
+}
+
+// QueryBlockInto is QueryBlock into room, where a definite block fits its capacity: memory that was used before takes
+// a long block faster than new memory does. With an error, room may hold part of a block.
+func (c *Conn) QueryBlockInto(ctx context.Context, room []byte, header string, args ...Arg) (block []byte, err error) {
 	err = c.QueryBlockTo(ctx, func(body io.Reader, size int64) (err error) {
-		block, err = readAll(body, size, c.opt.MaxReply)
+		block, err = readAll(body, size, c.opt.MaxReply, room)
 		return err
 	}, header, args...)
 	if err != nil {

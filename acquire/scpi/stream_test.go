@@ -224,6 +224,13 @@ func TestTakeOfAStream(t *testing.T) {
 	if err := conn.QueryBlockTo(ctx, func(body io.Reader, _ int64) error { _, err := all.ReadFrom(body); return err }, "READ?"); err != nil || all.String() != long {
 		t.Errorf("%d bytes, %v", all.Len(), err)
 	}
+	room := make([]byte, 4, len(long))
+	if b, err := conn.QueryBlockInto(ctx, room, "READ?"); err != nil || string(b) != long || &b[0] != &room[0] {
+		t.Errorf("into memory that is there: %d bytes, %v", len(b), err)
+	}
+	if b, err := conn.QueryBlockInto(ctx, room[:4:4], "READ?"); err != nil || string(b) != long || string(room[:4]) != long[:4] {
+		t.Errorf("into too little memory: %d bytes, %v", len(b), err)
+	}
 	wrong := errors.New("not what was wanted")
 	err := conn.QueryBlockTo(ctx, func(io.Reader, int64) error { return wrong }, "READ?")
 	var nonsense *scpi.ReplyError
