@@ -84,7 +84,7 @@ func TestKilledWhileLoggingWaveforms(t *testing.T) {
 	acknowledged := map[string]bool{}
 	whole := map[string]bool{}
 	_, want := withWaveforms()
-	for range rounds(t, 20) {
+	for range rounds(t, 10) {
 		cmd, lines := startChild(t, path, "1000000 with waveforms")
 		killSoon(cmd, lines)
 		for lines.Scan() {

@@ -195,7 +195,7 @@ func TestReadersLeaveNothing(t *testing.T) {
 	var readers sync.WaitGroup
 	for range 4 {
 		readers.Go(func() {
-			for range 25 {
+			for range 10 {
 				r, err := OpenReadOnly(t.Context(), path)
 				if err != nil {
 					t.Error(err)
@@ -249,7 +249,7 @@ func TestProgramsComeAndGo(t *testing.T) {
 	var programs sync.WaitGroup
 	for _, work := range []string{"read", "read", "read", "3 with waveforms"} {
 		programs.Go(func() {
-			for range rounds(t, 40) {
+			for range rounds(t, 15) {
 				cmd, lines := startChild(t, path, work)
 				for lines.Scan() {
 				}
