@@ -1,0 +1,160 @@
+package waveform
+
+import (
+	"context"
+	"math"
+	"math/cmplx"
+
+	"gonum.org/v1/gonum/dsp/fourier"
+)
+
+// addModes looks in what the curve leaves for a second tone and for a level still settling, and keeps what explains more
+// than noise would, once in ten thousand records, among all frequencies looked at.
+func (c coarse) addModes(ctx context.Context, at *curve, others []tone) *curve {
+	noise := c.noise(at)
+	if !hasPlain(at) {
+		at = c.addPlain(ctx, at, noise)
+	}
+	if !hasSecond(at) {
+		at = c.addTone(ctx, at, others, noise)
+		if !hasPlain(at) {
+			at = c.addPlain(ctx, at, c.noise(at))
+		}
+	}
+	return at
+}
+
+func hasPlain(at *curve) bool { return at.modes[len(at.modes)-1].w == 0 }
+
+func hasSecond(at *curve) bool { return len(at.modes) > 1 && at.modes[1].w != 0 }
+
+// worth is the fall of the residual, in noise variances, that k more numbers must bring: what chance brings to one record in
+// 10,000 among n places looked at (a bound on the tail of chi-square, each of k/2 pairs of numbers adding to it).
+func worth(n, k int) float64 { return 2*math.Log(float64(n)/1e-4) + 4*float64(k) }
+
+// addPlain tries a plain exponential beside the level.
+func (c coarse) addPlain(ctx context.Context, at *curve, noise float64) *curve {
+	n := float64(len(c.y))
+	d := at.modes[0].d
+	var best *curve
+	var bestMode mode
+	for _, g := range []float64{2 / n, 0.4 * d, 1.5 * d, 4 * d} {
+		if !(g > 0) || !plausible(mode{d: g}, len(c.y)) {
+			continue
+		}
+		try, ok := held(c.y, append(at.modes[:len(at.modes):len(at.modes)], mode{d: g}), 0)
+		if ok && (best == nil || try.rss < best.rss) {
+			best, bestMode = try, mode{d: g}
+		}
+	}
+	if best == nil || at.rss-best.rss < 0.3*noise*noise*worth(10, 2) {
+		return at
+	}
+	next, ok := refine(ctx, c.y, append(at.modes[:len(at.modes):len(at.modes)], bestMode), 0)
+	if !ok || at.rss-next.rss < noise*noise*worth(10, 2) || !isRing(next.modes[0]) {
+		return at
+	}
+	if g := next.modes[len(next.modes)-1].d; g < 0.2/n || g > 3 { // a slope without an end, or two samples
+		return at
+	}
+	if math.Abs(real(next.amp[len(next.amp)-1])) > 20*cmplx.Abs(at.amp[0])+20*noise {
+		return at // it and the level cancel: nothing is known of either
+	}
+	return next
+}
+
+// addTone tries a second tone where the spectrum of what is left stands highest.
+func (c coarse) addTone(ctx context.Context, at *curve, others []tone, noise float64) *curve {
+	var starts []mode
+	if m, ok := c.leftTone(at, noise); ok {
+		starts = append(starts, m)
+	}
+	for _, t := range others {
+		if w := t.w * float64(c.m); math.Abs(w-at.modes[0].w) > 0.05*at.modes[0].w && w < 2.5 && len(starts) < 3 {
+			starts = append(starts, mode{t.d * float64(c.m), w})
+		}
+	}
+	if len(starts) == 0 {
+		return at
+	}
+	var best *curve
+	for _, s := range starts {
+		modes := append([]mode{at.modes[0], s}, at.modes[1:]...)
+		next, ok := refine(ctx, c.y, modes, 0)
+		if !ok || !c.stands(next, at, noise) {
+			continue
+		}
+		if best == nil || next.rss < best.rss {
+			best = next
+		}
+	}
+	if best == nil {
+		return at
+	}
+	if cmplx.Abs(best.amp[1]) > cmplx.Abs(best.amp[0]) {
+		best, _ = held(c.y, append([]mode{best.modes[1], best.modes[0]}, best.modes[2:]...), 0)
+		if best == nil {
+			return at
+		}
+	}
+	return best
+}
+
+// stands says whether the second tone is one: it explains enough, swings and dies away, is seen for a cycle, and is no
+// twin of the first that only bends its shape.
+func (c coarse) stands(next, at *curve, noise float64) bool {
+	one, two := next.modes[0], next.modes[1]
+	noise = max(min(noise, c.noise(next)*1.5), c.floor())
+	if at.rss-next.rss < noise*noise*worth(len(c.y), 4) {
+		return false
+	}
+	apart := math.Hypot(one.w-two.w, one.d-two.d)
+	return isRing(one) && isRing(two) && two.d > 0 && one.d > 0 && two.d < two.w && two.w*float64(len(c.y)) > 2*math.Pi &&
+		apart > 0.7*(one.d+two.d)/2 && math.Abs(one.w-two.w) > 0.03*one.w && two.w < 0.9*math.Pi &&
+		cmplx.Abs(next.amp[0])+cmplx.Abs(next.amp[1]) < 5*c.swing()
+}
+
+// swing is half of the highest less the lowest, V.
+func (c coarse) swing() float64 {
+	low, high := math.Inf(1), math.Inf(-1)
+	for _, v := range c.y {
+		low, high = min(low, v), max(high, v)
+	}
+	return (high - low) / 2
+}
+
+// leftTone is the highest line in the spectrum of what the curve leaves, seen through windows that fall as a ring does.
+func (c coarse) leftTone(at *curve, noise float64) (mode, bool) {
+	n := min(len(c.y), 4096)
+	size := 64
+	for size < 2*n {
+		size *= 2
+	}
+	left := make([]float64, 0, len(c.y))
+	at.walk(c.y, func(_ int, e []float64) { left = append(left, e...) })
+	fft := fourier.NewFFT(size)
+	buf := make([]float64, size)
+	var line []complex128
+	var best mode
+	highest := 0.0
+	for _, g := range []float64{0.4, 1, 2.5} {
+		d := max(g*at.modes[0].d, 1/float64(n))
+		weight := 0.0
+		e, r := 1.0, math.Exp(-d)
+		for i := range n {
+			buf[i] = left[i] * e
+			weight += e * e
+			e *= r
+		}
+		clear(buf[n:])
+		line = fft.Coefficients(line, buf)
+		low := max(2, int(float64(size)/float64(n)))
+		for k := low; k < len(line)*9/10; k++ {
+			a := real(line[k])*real(line[k]) + imag(line[k])*imag(line[k])
+			if a /= weight; a > highest {
+				highest, best = a, mode{d, 2 * math.Pi * float64(k) / float64(size)}
+			}
+		}
+	}
+	return best, highest > noise*noise*math.Log(float64(n)/1e-3)
+}

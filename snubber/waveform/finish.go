@@ -1,0 +1,180 @@
+package waveform
+
+import (
+	"context"
+	"math"
+	"math/cmplx"
+)
+
+// finish fits the samples themselves, from the instant at which they join the curve, as far as the ring lasts, and says
+// whether a ring stands out of the noise; nil where none does.
+func (p prefix) finish(ctx context.Context, c coarse, at *curve, least, to int, step float64, misfit bool) *ring {
+	m := float64(c.m)
+	modes := make([]mode, len(at.modes))
+	for k, x := range at.modes {
+		modes[k] = mode{x.d / m, x.w / m}
+	}
+	noise := c.noise(at) * math.Sqrt(m)
+	r := &ring{start: c.first, end: p.lasts(c, at, to, noise), noise: noise, misfit: misfit}
+	v := p.blocks(r.start, 1, r.end-r.start)
+	full, ok := refine(ctx, v, modes, 0)
+	if !ok || !isRing(full.modes[0]) {
+		return nil
+	}
+	if k := len(full.modes) - 1; hasPlain(full) && full.modes[k].d < 0.2/float64(len(v)) { // a slope without an end
+		if full, ok = refine(ctx, v, full.modes[:k], 0); !ok || !isRing(full.modes[0]) {
+			return nil
+		}
+	}
+	r.curve = full
+	if !misfit {
+		p.joins(ctx, r, least, step)
+	}
+	if !p.standsOut(ctx, r, step) {
+		return nil
+	}
+	return r
+}
+
+// lasts is the sample up to which to fit: 14 e-foldings of the ring, or all there is where that lies on the level the ring
+// settles at.
+func (p prefix) lasts(c coarse, at *curve, to int, noise float64) int {
+	end := c.first + len(c.y)*c.m
+	if c.weak || to-end < 4*c.m {
+		return end
+	}
+	tail := p.mean(end, to)
+	if math.Abs(tail-at.level) < 4*noise/math.Sqrt(float64(to-end))+3*noise/math.Sqrt(float64(len(c.y)*c.m)) {
+		return to
+	}
+	return end
+}
+
+// crossesSteps is how many means to fit where the noise does not carry a level over the converter's steps: as long as
+// the ring does. What comes after is one code, off the level by up to half a step.
+func (c coarse) crossesSteps(at *curve) int {
+	main := at.modes[0]
+	if !(main.d > 0) {
+		return len(c.y)
+	}
+	n := max(math.Log(max(2*cmplx.Abs(at.amp[0])/c.step, 1))/main.d, 2*main.period(), float64(4*at.parameters()))
+	return int(min(n, float64(len(c.y))))
+}
+
+// weakDither says whether noise is too small to spread a level over the converter's codes: under 0.4 of a step, from
+// where on the mean of the codes is off by more than a hundredth of a step.
+func weakDither(step, noise float64) bool { return step > 0 && noise < 0.4*step }
+
+// tailNoise is the standard deviation of the samples from i to j-1, at most some thousands of the last; +Inf where they are too few.
+func (p prefix) tailNoise(i, j int) float64 {
+	i = max(i, j-4096)
+	if j-i < 16 {
+		return 0
+	}
+	mean := p.mean(i, j)
+	squares := 0.0
+	for k := i; k < j; k++ {
+		d := p.mean(k, k+1) - mean
+		squares += d * d
+	}
+	return math.Sqrt(squares / float64(j-i-1))
+}
+
+// joins moves the start, a sample at a time, to where the samples join the curve: back while they lie on it, then on past
+// those that lie rather on the flat before the edge.
+func (p prefix) joins(ctx context.Context, r *ring, least int, step float64) {
+	one := coarse{p: p, m: 1, first: r.start, y: p.blocks(r.start, 1, r.end-r.start), step: step}
+	back := min(r.start-least, int(max(4, r.curve.modes[0].period()/8)))
+	take := 0
+	if back > 0 {
+		take = one.onCurve(r.curve, back)
+	}
+	move := take
+	move -= p.flat(r, take)
+	if move == 0 {
+		return
+	}
+	start := r.start - move
+	v := p.blocks(start, 1, r.end-start)
+	next, ok := refine(ctx, v, r.curve.modes, 0)
+	if !ok || !isRing(next.modes[0]) {
+		return
+	}
+	r.start, r.curve = start, next
+}
+
+// flat is how many of the samples from take before the start on lie rather on the level before the edge, where there is one,
+// than on the curve.
+func (p prefix) flat(r *ring, take int) int {
+	first := r.start - take
+	from := max(0, first-64)
+	if first-2-from < 8 {
+		return 0
+	}
+	level := p.mean(from, first-2)
+	squares := 0.0
+	for k := from; k < first-2; k++ {
+		d := p.mean(k, k+1) - level
+		squares += d * d
+	}
+	if squares/float64(first-2-from) > 4*r.noise*r.noise {
+		return 0
+	}
+	sum, least, n := 0.0, 0.0, 0
+	span := int(r.curve.modes[0].period() / 8)
+	for k := range take + span {
+		if first+k >= r.end {
+			break
+		}
+		v := p.mean(first+k, first+k+1)
+		on := v - r.curve.at(float64(k-take))
+		sum += (v-level)*(v-level) - on*on
+		if sum < least {
+			least, n = sum, k+1
+		}
+	}
+	return n
+}
+
+// falseAlarm is the chance that a record without a ring is said to ring, at most.
+const falseAlarm = 1e-3
+
+// standsOut tests the ring, without its first half cycle (an edge may look like half a cycle of anything), against a
+// level with up to two plain exponentials: it must lower the residual by more than noise would at any frequency, damping
+// and start, but once in a thousand records.
+func (p prefix) standsOut(ctx context.Context, r *ring, step float64) bool {
+	main := r.curve.modes[0]
+	m := max(1, int(main.period()/perCycle))
+	begin := r.start + int(main.period()/2)
+	c := p.coarse(begin, r.end, m, step)
+	if len(c.y) < 3*len(r.curve.modes)+8 || float64(r.end-r.start) < 1.25*main.period() {
+		return false
+	}
+	scaled := make([]mode, len(r.curve.modes))
+	for k, x := range r.curve.modes {
+		scaled[k] = mode{x.d * float64(m), x.w * float64(m)}
+	}
+	with, ok := held(c.y, scaled, 0)
+	if !ok {
+		return false
+	}
+	without, ok := held(c.y, scaled[1:], 0)
+	if !ok {
+		return false
+	}
+	bare := without.rss
+	for _, g := range []float64{0.3, 1, 3} {
+		d := g * max(scaled[0].d, 0.2*scaled[0].w)
+		for _, plain := range [][]mode{{{d: d}}, {{d: d}, {d: 3 * d}}} {
+			if !plausible(plain[len(plain)-1], len(c.y)) {
+				continue
+			}
+			if bent, ok := refine(ctx, c.y, append(plain, scaled[1:]...), 0); ok {
+				bare = min(bare, bent.rss)
+			}
+		}
+	}
+	noise := max(math.Sqrt(with.rss/float64(max(1, len(c.y)-with.parameters()))), c.floor())
+	gain := (bare - with.rss) / (noise * noise)
+	return gain > 2*math.Log(16*float64(len(c.y)*m)/falseAlarm)+8
+}

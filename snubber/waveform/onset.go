@@ -1,0 +1,131 @@
+package waveform
+
+import (
+	"math"
+	"sort"
+)
+
+// prefix holds running sums of the samples, so that the mean over any block is one subtraction.
+type prefix struct {
+	ref float64
+	sum []float64 // sum[i]: the first i samples, less ref each
+}
+
+func newPrefix(v []float64) prefix {
+	p := prefix{ref: v[len(v)-1], sum: make([]float64, len(v)+1)}
+	for i, x := range v {
+		p.sum[i+1] = p.sum[i] + (x - p.ref)
+	}
+	return p
+}
+
+// mean of samples i to j-1, less ref.
+func (p prefix) mean(i, j int) float64 { return (p.sum[j] - p.sum[i]) / float64(j-i) }
+
+// blocks is the means of n blocks of m samples from i on, less ref. The mean over a block turns a damped oscillation into
+// the same one, smaller; so what is slow is found in few numbers.
+func (p prefix) blocks(i, m, n int) []float64 {
+	out := make([]float64, n)
+	for k := range out {
+		out[k] = p.mean(i+k*m, i+(k+1)*m)
+	}
+	return out
+}
+
+// jump is how far the mean of the k samples from i on lies from the mean of the k before.
+func (p prefix) jump(i, k int) float64 { return (p.sum[i+k] - 2*p.sum[i] + p.sum[i-k]) / float64(k) }
+
+// onset is where the voltage begins to move: near sample at, within some scale samples.
+type onset struct {
+	at, scale int
+	size      float64 // V
+}
+
+// onsets finds the edges of a record, at most most, in time order; at least one, if only the largest change there is.
+//
+// It looks at the difference of the means over adjoining stretches, at the shortest length at which nearly the greatest
+// difference shows, and takes each local extreme that is large and well above what came shortly before. The swings of
+// a ring shrink, so only its first one counts.
+func (p prefix) onsets(most int) []onset {
+	n := len(p.sum) - 1
+	var tops []onset // one for each scale
+	greatest := 0.0
+	for k := 1; 2*k <= n && k <= max(1, n/4); k *= 2 {
+		top := onset{scale: k, at: k}
+		for i := k; i+k <= n; i += max(1, k/4) {
+			if a := math.Abs(p.jump(i, k)); a > top.size {
+				top.at, top.size = i, a
+			}
+		}
+		tops = append(tops, top)
+		greatest = max(greatest, top.size)
+	}
+	if greatest == 0 {
+		return nil
+	}
+	var top onset
+	for _, top = range tops {
+		if top.size >= 0.7*greatest {
+			break
+		}
+	}
+	out := p.rising(top)
+	sort.Slice(out, func(a, b int) bool { return out[a].size > out[b].size })
+	out = out[:min(len(out), most)]
+	sort.Slice(out, func(a, b int) bool { return out[a].at < out[b].at })
+	return out
+}
+
+// rising takes the extremes at top's scale that stand well above what came before.
+func (p prefix) rising(top onset) []onset {
+	n, k := len(p.sum)-1, top.scale
+	stride := max(1, k/4)
+	var size []float64
+	for i := k; i+k <= n; i += stride {
+		size = append(size, math.Abs(p.jump(i, k)))
+	}
+	const back, near = 40, 6 // strides: ten and one and a half times a long scale
+	long, short := back, near
+	if k < 4 {
+		long, short = 10*k, 1+k
+	}
+	var out []onset
+	before := peaks{window: long - short}
+	for j, a := range size {
+		if q := j - short; q >= 0 {
+			before.push(q, size[q])
+		}
+		local := (j == 0 || a >= size[j-1]) && (j+1 == len(size) || a > size[j+1])
+		if local && a >= 0.35*top.size && a > 1.4*before.top() {
+			out = append(out, onset{at: k + j*stride, scale: k, size: a})
+		}
+	}
+	if len(out) == 0 {
+		out = append(out, top)
+	}
+	return out
+}
+
+// peaks keeps the greatest of the last window values.
+type peaks struct {
+	window int
+	at     []int
+	value  []float64
+}
+
+func (q *peaks) push(at int, v float64) {
+	for n := len(q.value); n > 0 && q.value[n-1] <= v; n = len(q.value) {
+		q.at, q.value = q.at[:n-1], q.value[:n-1]
+	}
+	q.at, q.value = append(q.at, at), append(q.value, v)
+	for q.at[0] <= at-q.window {
+		q.at, q.value = q.at[1:], q.value[1:]
+	}
+}
+
+func (q *peaks) top() float64 {
+	if len(q.value) == 0 {
+		return 0
+	}
+	return q.value[0]
+}

@@ -1,0 +1,201 @@
+package waveform
+
+import (
+	"context"
+	"math"
+	"math/cmplx"
+)
+
+// reader turns what was found into the figures of an Edge.
+type reader struct {
+	Record
+	p     prefix
+	step  float64
+	edges []onset
+	at    onset
+	ring  *ring
+	e     *Edge
+
+	cov   [maxColumns][maxColumns]float64 // V^2: of the fit's coefficients
+	dof   int
+	white bool    // what the fit leaves looks like white noise
+	drift float64 // Hz: the ring's frequency in the later half of the fit less in the first; 0: none seen
+
+	before    int     // samples before the edge; 0: none
+	low, high float64 // V: levels before the edge and after
+	top       int     // the highest sample
+}
+
+// figures of a ring that was found.
+func (r *reader) figures(ctx context.Context) {
+	c := r.ring.curve
+	r.e.curve = c
+	r.e.FitFrom, r.e.FitTo = r.TimeAt(r.ring.start), r.TimeAt(r.ring.end-1)
+	r.uncertain()
+	main := c.modes[0]
+	r.e.AmplitudeV = r.ring.amplitude()
+	r.e.SNRdB = 20*math.Log10(r.e.AmplitudeV/r.e.NoiseV) - 10*math.Log10(2)
+	r.e.SettledV = figure(c.level+r.p.ref, math.Sqrt(r.cov[0][0]), r.dof)
+	r.drifts(ctx)
+	u := r.modeU(0)
+	hz := main.w / (2 * math.Pi * r.Interval)
+	r.e.Ringing = true
+	r.e.RingHz = figure(hz, math.Hypot(u.w/(2*math.Pi*r.Interval), r.drift/math.Sqrt(12)), r.dof)
+	r.e.DecayS = decay(main.d, u.d, r.Interval, r.dof)
+	if r.e.DecayS != nil {
+		r.e.DampingRatio = damping(main, u, r.dof)
+	}
+	if r.e.RingHz == nil || main.d < -coverage(r.dof)*u.d { // what grows is no ring
+		r.e.Ringing, r.e.RingHz, r.e.DecayS, r.e.DampingRatio = false, nil, nil, nil
+		r.e.SNRdB, r.e.AmplitudeV = 0, 0
+		r.e.curve, r.ring = nil, nil
+		return
+	}
+	if hasSecond(c) {
+		v := r.modeU(1)
+		f := figure(c.modes[1].w/(2*math.Pi*r.Interval), v.w/(2*math.Pi*r.Interval), r.dof)
+		tau := decay(c.modes[1].d, v.d, r.Interval, r.dof)
+		if f != nil && tau != nil {
+			r.e.Second = &Tone{Hz: *f, DecayS: *tau, AmplitudeV: cmplx.Abs(c.amp[1])}
+		}
+	}
+}
+
+// uncertain finds the noise and with it the covariance of the fit's coefficients.
+func (r *reader) uncertain() {
+	c := r.ring.curve
+	v := r.Volts[r.ring.start:r.ring.end]
+	shifted := *c
+	shifted.level += r.p.ref
+	left := shifted.residual(v)
+	r.dof = max(1, len(v)-c.parameters())
+	variance := left.squares / float64(r.dof)
+	if floor := r.step * r.step / 12; r.step > 0 {
+		variance = max(variance, floor)
+	}
+	span := r.e.swing()
+	variance = max(variance, 1e-24*span*span, 1e-32*r.p.ref*r.p.ref)
+	r.e.NoiseV = math.Sqrt(variance)
+	r.white = true
+	// White noise gives means over quarter cycles the same variance, times their length. The ring's own part of the record
+	// counts: the first three e-foldings.
+	alive := len(left.runs)
+	if d := c.modes[0].d; d > 0 {
+		alive = min(alive, max(8, int(3/d/(c.modes[0].period()/4))))
+	}
+	if alive >= 8 {
+		squares := 0.0
+		for _, m := range left.runs[:alive] {
+			squares += m * m
+		}
+		mean := squares / float64(alive)
+		if mean > variance*(1+4*math.Sqrt(2/float64(alive))) {
+			r.white = false
+			variance = mean
+		}
+	}
+	r.cov = c.sol.inverse()
+	for i := range r.cov {
+		for j := range r.cov {
+			r.cov[i][j] *= variance
+		}
+	}
+}
+
+// modeUncertain is the standard uncertainties of a mode's d and w, per sample, and their covariance.
+type modeUncertain struct{ d, w, dw float64 }
+
+// modeU takes mode k's part of the covariance: a change of its q changes -d + i w by q/p (see refine).
+func (r *reader) modeU(k int) modeUncertain {
+	c := r.ring.curve
+	at := c.sol.values
+	for _, m := range c.modes[:k] {
+		at += m.columns()
+	}
+	vaa, vbb, vab := r.cov[at][at], r.cov[at+1][at+1], r.cov[at][at+1]
+	// q = a - i b, 1/p = g + i h: real part a g + b h, imaginary a h - b g
+	inv := 1 / c.amp[k]
+	g, h := real(inv), imag(inv)
+	re := g*g*vaa + 2*g*h*vab + h*h*vbb
+	im := h*h*vaa - 2*g*h*vab + g*g*vbb
+	both := g*h*vaa + (h*h-g*g)*vab - g*h*vbb
+	return modeUncertain{d: math.Sqrt(max(re, 0)), w: math.Sqrt(max(im, 0)), dw: -both}
+}
+
+// decay is 1/d in seconds; nil where d is not clearly positive. The interval is d's turned over.
+func decay(d, u, interval float64, dof int) *Figure {
+	k := coverage(dof)
+	if !(d-k*u > 0) {
+		return nil
+	}
+	f := &Figure{Value: interval / d, U: interval * u / (d * d), Low: interval / (d + k*u), High: interval / (d - k*u)}
+	if !f.finite() {
+		return nil
+	}
+	return f
+}
+
+// damping is d/sqrt(w^2 + d^2), uncertain by u; its interval stays above 0.
+func damping(m mode, u modeUncertain, dof int) *Figure {
+	n := math.Hypot(m.w, m.d)
+	byD, byW := m.w*m.w/(n*n*n), -m.w*m.d/(n*n*n)
+	v := byD*byD*u.d*u.d + byW*byW*u.w*u.w + 2*byD*byW*u.dw
+	f := figure(m.d/n, math.Sqrt(max(v, 0)), dof)
+	if f != nil {
+		f.Low = max(f.Low, 0)
+	}
+	return f
+}
+
+// valueU is the standard uncertainty of the curve t samples after its start, V.
+func (r *reader) valueU(t float64) float64 {
+	x, n := row(r.ring.curve.modes, t)
+	v := 0.0
+	for i := range n {
+		for j := range n {
+			v += x[i] * x[j] * r.cov[i][j]
+		}
+	}
+	return math.Sqrt(max(v, 0))
+}
+
+// drifts fits the ring's first e-folding and the rest each for itself: a frequency that moves through the record is not
+// one number, and its uncertainty must say so.
+func (r *reader) drifts(ctx context.Context) {
+	c := r.ring.curve
+	main := c.modes[0]
+	if main.d <= 0 || len(c.modes) > 1 {
+		return
+	}
+	half := int(max(1/main.d, 2*main.period()))
+	if r.ring.start+2*half > r.ring.end {
+		return
+	}
+	v := r.p.blocks(r.ring.start, 1, min(r.ring.end-r.ring.start, 6*half))
+	first, ok := inPart(ctx, v[:half], main)
+	if !ok {
+		return
+	}
+	later, ok := inPart(ctx, v[half:], main)
+	if !ok {
+		return
+	}
+	noise := math.Sqrt(r.cov[0][0] / c.sol.inverse()[0][0])
+	d := later.w - first.w
+	if u := noise * math.Hypot(first.u, later.u); math.Abs(d) > 4*u && math.Abs(d) > 2e-3*main.w && noise*later.u < 0.01*main.w {
+		r.drift = d / (2 * math.Pi * r.Interval)
+	}
+}
+
+type part struct{ w, u float64 }
+
+// inPart fits a stretch for its own frequency.
+func inPart(ctx context.Context, v []float64, near mode) (part, bool) {
+	c, ok := refine(ctx, v, []mode{near}, 0)
+	if !ok {
+		return part{}, false
+	}
+	inverse := c.sol.inverse()
+	one := reader{ring: &ring{curve: c}, cov: inverse}
+	return part{w: c.modes[0].w, u: one.modeU(0).w}, true
+}
