@@ -25,6 +25,8 @@ func (c *Confirmation) explain() string {
 	if len(causes) == 0 {
 		return ""
 	}
-	s := strings.Join(causes, ", or ")
-	return strings.ToUpper(s[:1]) + s[1:] + " would explain it"
+	return upper(strings.Join(causes, ", or ")) + " would explain it"
 }
+
+// upper begins a sentence.
+func upper(s string) string { return strings.ToUpper(s[:1]) + s[1:] }

@@ -41,6 +41,12 @@ func trialTable(title string, trials []snubber.Trial) *page.Table {
 		if x.Struck != "" {
 			row.Note("struck: %s", x.Struck)
 		}
+		for _, r := range x.Readings {
+			if r.FromWaveform {
+				row.Note("ring, decay and peak were read from its captured samples")
+				break
+			}
+		}
 	}
 	return t
 }

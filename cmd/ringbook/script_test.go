@@ -34,7 +34,7 @@ func scripts(t *testing.T, dir string) testscript.Params {
 		},
 		Cmds: map[string]func(*testscript.TestScript, bool, []string){
 			"code": code, "json": jsonAt, "waitfor": waitFor,
-			"instrument": instrument, "heldport": heldPort, "sql": sqlOn, "damage": damage, "rows": rowsCSV, "boards": boardsCSV,
+			"instrument": instrument, "heldport": heldPort, "sql": sqlOn, "damage": damage, "capture": capture, "rows": rowsCSV, "boards": boardsCSV,
 		},
 	}
 }

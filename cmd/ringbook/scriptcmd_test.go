@@ -1,10 +1,14 @@
 package main
 
 import (
+	"bytes"
+	"compress/gzip"
 	"encoding/json"
 	"errors"
 	"fmt"
 	"io"
+	"math"
+	"math/rand/v2"
 	"os"
 	"os/exec"
 	"regexp"
@@ -161,4 +165,57 @@ func waitFor(ts *testscript.TestScript, neg bool, args []string) {
 		time.Sleep(50 * time.Millisecond)
 	}
 	ts.Fatalf("%s has no %q after half a minute: %q", args[0], args[1], text)
+}
+
+// capture FILE HZ DECAY_S NOISE_V STEP_V [SECOND_HZ] writes a capture of an edge from 0 V to 48 V that rings at HZ and dies in
+// DECAY_S, with white noise, rounded to STEP_V (0: not), and with a second, weaker tone. HZ of 0 is an edge that does not ring,
+// of -1 noise alone. A name that ends in .gz is gzipped.
+func capture(ts *testscript.TestScript, neg bool, args []string) {
+	if neg || len(args) < 5 || len(args) > 6 {
+		ts.Fatalf("usage: capture file hz decay_s noise_v step_v [second_hz]")
+	}
+	x := [5]float64{}
+	for i, s := range args[1:] {
+		v, err := strconv.ParseFloat(s, 64)
+		ts.Check(err)
+		x[i] = v
+	}
+	hz, decay, noise, step := x[0], x[1], x[2], x[3]
+	rng := rand.New(rand.NewPCG(5, uint64(len(args[0]))))
+	var b strings.Builder
+	b.WriteString("# a capture made up for this script\ntime_s,node_v\n")
+	interval := decay / 400
+	for i := -500; i < 3500; i++ {
+		t := (float64(i) + 0.3) * interval
+		v := 0.0
+		switch {
+		case hz < 0 || t < 0:
+		case hz == 0:
+			v = 48 * (1 - math.Exp(-t/decay*20))
+		default:
+			v = 48 - 40*math.Exp(-t/decay)*math.Cos(2*math.Pi*hz*t) - second(x[4], t, decay)
+		}
+		v += noise * rng.NormFloat64()
+		if step > 0 {
+			v = math.Round(v/step) * step
+		}
+		fmt.Fprintf(&b, "%.6e,%.6g\n", float64(i)*interval, v)
+	}
+	text := []byte(b.String())
+	if strings.HasSuffix(args[0], ".gz") {
+		var z bytes.Buffer
+		w := gzip.NewWriter(&z)
+		_, err := w.Write(text)
+		ts.Check(err)
+		ts.Check(w.Close())
+		text = z.Bytes()
+	}
+	ts.Check(os.WriteFile(ts.MkAbs(args[0]), text, 0o644))
+}
+
+func second(hz, t, decay float64) float64 {
+	if hz == 0 {
+		return 0
+	}
+	return 8 * math.Exp(-t/decay*1.5) * math.Cos(2*math.Pi*hz*t)
 }

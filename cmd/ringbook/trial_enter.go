@@ -15,13 +15,16 @@ func trialEnter(a *app) *cobra.Command {
 	var decay, decayU quantity.Second
 	var peak, peakU quantity.Volt
 	var at string
+	var captures []string
 	cmd := &cobra.Command{
 		Use:   "enter",
 		Short: "Log one trial by hand",
 		Long: `enter logs one trial with readings typed in. What was not read is left out. A *-u flag is a standard
-uncertainty (k = 1).`,
+uncertainty (k = 1). With --waveform the samples of a captured edge are logged with the trial, and what is not typed is
+read from them: ring frequency, decay and peak.`,
 		Example: `  ringbook trial enter --board winch-drive --revision B --network bare --probe-c 3p9 \
-      --ring-hz 96.4MHz --ring-hz-u 0.3MHz --peak-v 92V --bus-v 48V`,
+      --ring-hz 96.4MHz --ring-hz-u 0.3MHz --peak-v 92V --bus-v 48V
+  ringbook trial enter --board winch-drive --revision B --network c --c 470p --bus-v 48V --waveform edge.csv`,
 		Args: words(0, 0),
 		RunE: func(cmd *cobra.Command, args []string) (err error) {
 			t, err := setup.trial()
@@ -46,20 +49,30 @@ uncertainty (k = 1).`,
 					return usagef("--%s-u is given without --%s: an uncertainty needs its reading", x.flag, x.flag)
 				}
 			}
-			if len(t.Readings) == 0 {
-				return usagef("trial enter: no reading given; give --ring-hz, --decay-s or --peak-v")
-			}
 			ctx := cmd.Context()
+			records, err := readCaptures(captures)
+			if err != nil {
+				return err
+			}
+			var warnings []string
+			if len(records) > 0 {
+				if warnings, err = fromCaptures(ctx, &t, records); err != nil {
+					return err
+				}
+			}
+			if len(t.Readings) == 0 && len(records) == 0 {
+				return usagef("trial enter: no reading given; give --ring-hz, --decay-s or --peak-v, or a capture with --waveform")
+			}
 			lb, err := a.open(ctx)
 			if err != nil {
 				return err
 			}
 			defer closing(lb, &err)
-			id, err := lb.Add(ctx, t)
+			id, err := lb.AddWithWaveforms(ctx, t, records)
 			if err != nil {
 				return err
 			}
-			return a.logged(t, id)
+			return a.logged(t, id, warnings)
 		},
 	}
 	setup.add(cmd)
@@ -70,6 +83,7 @@ uncertainty (k = 1).`,
 	f.Var(&decayU, "decay-s-u", "its standard uncertainty")
 	f.Var(&peak, "peak-v", "highest voltage across the switch")
 	f.Var(&peakU, "peak-v-u", "its standard uncertainty")
+	f.StringSliceVar(&captures, "waveform", nil, "`FILES` with captures of the edge, as CSV; several are averaged")
 	f.StringVar(&at, "at", "", "`TIME` it was read, RFC 3339; now where left out")
 	return cmd
 }

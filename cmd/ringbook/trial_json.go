@@ -19,11 +19,16 @@ func (a *app) printTrials(ctx context.Context, lb *store.Logbook, s store.Scope)
 	})
 }
 
-// logged says that a trial is on the disk.
-func (a *app) logged(t snubber.Trial, id string) error {
+// logged says that a trial is on the disk, and what is doubtful about it.
+func (a *app) logged(t snubber.Trial, id string, warnings []string) error {
 	if a.json {
 		t.ID = id
-		return a.printJSON(trialJSON(t))
+		answer := trialJSON(t)
+		answer["warnings"] = append([]string{}, warnings...)
+		return a.printJSON(answer)
+	}
+	for _, w := range warnings {
+		a.progress("warning: %s", w)
 	}
 	return a.say("Trial %s is logged.", store.ShortID(id))
 }
@@ -49,9 +54,14 @@ func trialJSON(t snubber.Trial) map[string]any {
 	for _, q := range []snubber.Quantity{snubber.RingHz, snubber.DecayS, snubber.PeakV} {
 		m[string(q)], m[string(q)+"_u"] = nil, nil
 	}
+	from := []snubber.Quantity{} // read from the trial's logged captures
 	for _, r := range t.Readings {
 		m[string(r.Quantity)], m[string(r.Quantity)+"_u"] = r.Value, num(r.U)
+		if r.FromWaveform {
+			from = append(from, r.Quantity)
+		}
 	}
+	m["from_waveform"] = from
 	return m
 }
 
