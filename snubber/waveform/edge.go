@@ -96,7 +96,7 @@ func ReadEdge(ctx context.Context, r Record, opt Options) (Edge, error) {
 	at := onset{at: 0, scale: 1}
 	if len(r.Volts) >= minSamples {
 		var err error
-		if found, at, all, err = p.strongestRing(ctx, all, step); err != nil {
+		if found, at, all, err = p.strongestRing(ctx, r.Volts, all, step); err != nil {
 			return Edge{}, fmt.Errorf("read the edge: %w", err)
 		}
 	}
@@ -121,13 +121,20 @@ func spread(v []float64) float64 {
 
 // strongestRing reads the ring after each edge, to the next one, and takes the strongest. Where nothing rings, at is the
 // largest edge. edges are those left: one that a later fit grew back over was none, but a swing of that ring.
-func (p prefix) strongestRing(ctx context.Context, all []onset, step float64) (found *ring, at onset, edges []onset, err error) {
+func (p prefix) strongestRing(ctx context.Context, v []float64, all []onset, step float64) (found *ring, at onset, edges []onset, err error) {
 	for i, o := range all {
 		to := len(p.sum) - 1
 		if i+1 < len(all) {
 			to = max(all[i+1].at-2*all[i+1].scale, o.at)
 		}
 		got := p.findRing(ctx, o, 0, to, step)
+		if got != nil {
+			if c := got.clipped(v, o.at, step, p.ref); c.end > got.start {
+				if after := p.findRing(ctx, onset{at: c.end, scale: 1, size: o.size}, c.end, to, step); after != nil {
+					got = after
+				}
+			}
+		}
 		if ctx.Err() != nil {
 			return nil, at, nil, ctx.Err()
 		}

@@ -91,13 +91,24 @@ func (c coarse) addTone(ctx context.Context, at *curve, others []tone, noise flo
 	if best == nil {
 		return at
 	}
-	if cmplx.Abs(best.amp[1]) > cmplx.Abs(best.amp[0]) {
-		best, _ = held(c.y, append([]mode{best.modes[1], best.modes[0]}, best.modes[2:]...), 0)
-		if best == nil {
-			return at
-		}
+	return best.ordered(c.y)
+}
+
+// ordered puts the tone of more energy first.
+func (c *curve) ordered(y []float64) *curve {
+	if !hasSecond(c) || c.energy(0) >= c.energy(1) {
+		return c
 	}
-	return best
+	if swapped, ok := held(y, append([]mode{c.modes[1], c.modes[0]}, c.modes[2:]...), 0); ok {
+		return swapped
+	}
+	return c
+}
+
+// energy of tone k, V^2 samples, to a factor.
+func (c *curve) energy(k int) float64 {
+	a := cmplx.Abs(c.amp[k])
+	return a * a / max(c.modes[k].d, 1/float64(c.n))
 }
 
 // stands says whether the second tone is one: it explains enough, swings and dies away, is seen for a cycle, and is no
@@ -108,9 +119,8 @@ func (c coarse) stands(next, at *curve, noise float64) bool {
 	if at.rss-next.rss < noise*noise*worth(len(c.y), 4) {
 		return false
 	}
-	apart := math.Hypot(one.w-two.w, one.d-two.d)
 	return isRing(one) && isRing(two) && two.d > 0 && one.d > 0 && two.d < two.w && two.w*float64(len(c.y)) > 2*math.Pi &&
-		apart > 0.7*(one.d+two.d)/2 && math.Abs(one.w-two.w) > 0.03*one.w && two.w < 0.9*math.Pi &&
+		math.Abs(one.w-two.w) > 0.8*(one.d+two.d) && math.Abs(one.w-two.w) > 0.03*one.w && two.w < 0.9*math.Pi &&
 		cmplx.Abs(next.amp[0])+cmplx.Abs(next.amp[1]) < 5*c.swing()
 }
 

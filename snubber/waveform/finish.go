@@ -30,6 +30,7 @@ func (p prefix) finish(ctx context.Context, c coarse, at *curve, least, to int, 
 	if !misfit {
 		p.joins(ctx, r, least, step)
 	}
+	r.curve = r.curve.ordered(p.blocks(r.start, 1, r.end-r.start))
 	if !p.standsOut(ctx, r, step) {
 		return nil
 	}

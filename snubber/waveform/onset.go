@@ -7,12 +7,14 @@ import (
 
 // prefix holds running sums of the samples, so that the mean over any block is one subtraction.
 type prefix struct {
-	ref float64
-	sum []float64 // sum[i]: the first i samples, less ref each
+	ref  float64
+	sum  []float64 // sum[i]: the first i samples, less ref each
+	tiny float64   // V: below this, differences are the rounding of the samples
 }
 
 func newPrefix(v []float64) prefix {
 	p := prefix{ref: v[len(v)-1], sum: make([]float64, len(v)+1)}
+	p.tiny = 1e-9*spread(v) + 1e-14*math.Abs(p.ref)
 	for i, x := range v {
 		p.sum[i+1] = p.sum[i] + (x - p.ref)
 	}

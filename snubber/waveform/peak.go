@@ -88,11 +88,15 @@ func (r *reader) peakLocally(top int) (value, u float64, ok bool) {
 	if r.ring != nil {
 		width = int(r.perCycle() / 12)
 	}
+	near := 8*noise + 1e-3*r.e.spread
+	if r.ring != nil {
+		near = 8*noise + 0.05*r.e.spread
+	}
 	from, to := top, top+1
-	for from > 0 && top-from < width && v[top]-v[from-1] < 8*noise+0.02*r.e.spread {
+	for from > 0 && top-from < width && v[top]-v[from-1] < near {
 		from--
 	}
-	for to < len(v) && to-top <= width && v[top]-v[to] < 8*noise+0.02*r.e.spread {
+	for to < len(v) && to-top <= width && v[top]-v[to] < near {
 		to++
 	}
 	n := to - from
@@ -123,5 +127,5 @@ func (r *reader) peakLocally(top int) (value, u float64, ok bool) {
 		at = min(1, max(-1, -b/(2*c)))
 	}
 	variance := (s[4]-2*s[2]*at*at+s[0]*at*at*at*at)/det + at*at/s[2]
-	return v[top] + a + at*(b+at*c), noise * math.Sqrt(variance), true
+	return min(v[top]+noise, v[top]+a+at*(b+at*c)), noise * math.Sqrt(variance), true
 }

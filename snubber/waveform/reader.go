@@ -47,8 +47,9 @@ func (r *reader) figures(ctx context.Context) {
 	}
 	if r.e.RingHz == nil || main.d < -coverage(r.dof)*u.d { // what grows is no ring
 		r.e.Ringing, r.e.RingHz, r.e.DecayS, r.e.DampingRatio = false, nil, nil, nil
-		r.e.SNRdB, r.e.AmplitudeV = 0, 0
+		r.e.SNRdB, r.e.AmplitudeV, r.e.FitFrom, r.e.FitTo = 0, 0, 0, 0
 		r.e.curve, r.ring = nil, nil
+		r.levels()
 		return
 	}
 	if hasSecond(c) {
@@ -73,8 +74,7 @@ func (r *reader) uncertain() {
 	if floor := r.step * r.step / 12; r.step > 0 {
 		variance = max(variance, floor)
 	}
-	span := r.e.swing()
-	variance = max(variance, 1e-24*span*span, 1e-32*r.p.ref*r.p.ref)
+	variance = max(variance, r.p.tiny*r.p.tiny)
 	r.e.NoiseV = math.Sqrt(variance)
 	r.white = true
 	// White noise gives means over quarter cycles the same variance, times their length. The ring's own part of the record

@@ -35,13 +35,7 @@ func (p prefix) coarse(first, to, m int, step float64) coarse {
 }
 
 // floor is the least noise to believe in a mean: what quantisation makes, or the rounding of the samples.
-func (c coarse) floor() float64 {
-	span := 0.0
-	for _, v := range c.y {
-		span = max(span, math.Abs(v))
-	}
-	return max(c.step/math.Sqrt(12*float64(c.m)), 1e-9*span)
-}
+func (c coarse) floor() float64 { return max(c.step/math.Sqrt(12*float64(c.m)), c.p.tiny) }
 
 // noise of a mean, V, by what the curve leaves.
 func (c coarse) noise(at *curve) float64 { return max(at.residual(c.y).quiet(), c.floor()) }
@@ -78,80 +72,91 @@ func (p prefix) fitTone(ctx context.Context, t tone, others []tone, o onset, lea
 	safe := o.at + max(1, int(min(0.6*t.period(), 0.8/max(t.d, 1e-9))))
 	end := min(to, safe+int(min(14/max(t.d, 1e-9), 8192*float64(m))))
 	weak := weakDither(step, p.tailNoise(to-(to-o.at)/4, to))
-	var view coarse
-	var c *curve
-	misfit := true
-	var original *ring
-	for try := 0; try < 8; try++ {
+	var best *attempt
+	modes := []mode{{t.d * float64(m), t.w * float64(m)}}
+	for try := range 16 {
 		begin := safe + int(float64(try)*t.period()/4)
 		if end-begin < 12*m || float64(end-begin) < 1.2*t.period() && try > 0 {
 			break
 		}
-		view = p.coarse(begin, end, m, step)
-		start := []mode{{t.d * float64(m), t.w * float64(m)}}
-		if c != nil {
-			start = c.modes
-		}
-		found, ok := refine(ctx, view.y, start, 0)
-		if !ok || !isRing(found.modes[0]) {
-			if c == nil && try < 3 {
+		a := p.attempt(ctx, begin, end, m, step, weak, modes, others)
+		if a == nil {
+			if best == nil && try < 3 {
 				continue
 			}
 			break
 		}
-		if view.weak = weak; weak {
-			if n := view.crossesSteps(found); n < len(view.y) {
-				view.y = view.y[:n]
-				end = begin + n*m
-				if found, ok = refine(ctx, view.y, found.modes, 0); !ok || !isRing(found.modes[0]) {
-					break
-				}
-			}
-		}
-		found = view.addModes(ctx, found, others)
-		noise := view.noise(found)
-		r := &ring{start: begin, end: end, curve: found, noise: noise * math.Sqrt(float64(m)), misfit: true}
-		if original == nil {
-			original = r
-		}
-		if try > 0 && r.amplitude() < 10*noise {
+		if best != nil && a.amplitude() < 10*a.noise {
 			break
 		}
-		c = found
-		if view.frontFits(found, noise) {
-			misfit = false
+		if best == nil || a.front < best.front {
+			best = a
+		}
+		modes = a.curve.modes
+		if a.front < 1 {
 			break
 		}
 	}
-	if original == nil {
+	if best == nil {
 		return nil
 	}
-	if misfit {
-		view = p.coarse(original.start, original.end, m, step)
-		view.weak = weak
-		c = original.curve
-	} else {
+	view, c := best.view, best.curve
+	if best.front < 1 {
 		view, c = view.growBack(ctx, c, least)
 		c = view.addModes(ctx, c, others)
 	}
-	return p.finish(ctx, view, c, least, to, step, misfit)
+	return p.finish(ctx, view, c, least, to, step, best.front >= 1)
+}
+
+// attempt is a fit from one start.
+type attempt struct {
+	view  coarse
+	curve *curve
+	noise float64 // V: of a mean
+	front float64 // how far the first half cycle is off, as a share of what is allowed
+}
+
+func (a *attempt) amplitude() float64 { return cmplx.Abs(a.curve.amp[0]) }
+
+func (p prefix) attempt(ctx context.Context, begin, end, m int, step float64, weak bool, modes []mode, others []tone) *attempt {
+	view := p.coarse(begin, end, m, step)
+	view.weak = weak
+	c, ok := refine(ctx, view.y, modes, 0)
+	if !ok || !isRing(c.modes[0]) {
+		return nil
+	}
+	if weak {
+		if n := view.crossesSteps(c); n < len(view.y) {
+			view.y = view.y[:n]
+			if c, ok = refine(ctx, view.y, c.modes, 0); !ok || !isRing(c.modes[0]) {
+				return nil
+			}
+		}
+	}
+	c = view.addModes(ctx, c, others)
+	a := &attempt{view: view, curve: c, noise: view.noise(c)}
+	a.front = view.frontOff(c, a.noise)
+	return a
 }
 
 // isRing says whether a mode swings at all before it is gone: a damping ratio below 0.8.
 func isRing(m mode) bool { return m.w > 0 && m.d < 1.33*m.w && m.d > -0.05*m.w }
 
-// frontFits says whether the first half cycle is left as small as the rest.
-func (c coarse) frontFits(at *curve, noise float64) bool {
+// slack is how far, as a share of the ring, samples may lie off the curve and still be of it: no real ring is exactly linear.
+const slack = 0.002
+
+// frontOff is how large the first half cycle is left, over what noise and slack allow.
+func (c coarse) frontOff(at *curve, noise float64) float64 {
 	n := min(len(c.y), max(4, int(at.modes[0].period()/2)))
 	front := 0.0
-	head := *at
-	head.walk(c.y[:n], func(_ int, e []float64) {
+	at.walk(c.y[:n], func(_ int, e []float64) {
 		for _, v := range e {
 			front += v * v
 		}
 	})
-	// the mean square of n of them, less what the fit took up, and five standard deviations of it
-	return front/float64(n) < noise*noise*(1+5*math.Sqrt(2/float64(n)))
+	allowed := slack * cmplx.Abs(at.amp[0])
+	// the mean square of n of them, and five standard deviations of it
+	return front / float64(n) / ((noise*noise + allowed*allowed) * (1 + 5*math.Sqrt(2/float64(n))))
 }
 
 // growBack takes in samples before the curve's start as long as they lie on it, a quarter of a cycle at a time.
@@ -187,6 +192,7 @@ func (c coarse) growBack(ctx context.Context, at *curve, least int) (coarse, *cu
 // was left where the sum began to grow.
 func (c coarse) onCurve(at *curve, chunk int) int {
 	noise := c.noise(at)
+	allowed := math.Hypot(noise, slack*cmplx.Abs(at.amp[0]))
 	inverse := at.sol.inverse()
 	before := c.p.blocks(c.first-chunk*c.m, c.m, chunk)
 	sum, began := 0.0, 0
@@ -199,8 +205,8 @@ func (c coarse) onCurve(at *curve, chunk int) int {
 				lever += x[i] * x[j] * inverse[i][j]
 			}
 		}
-		off := (before[chunk-k] - at.at(t)) / noise
-		sum += off*off/(1+lever) - 3
+		off := before[chunk-k] - at.at(t)
+		sum += off*off/(allowed*allowed+lever*noise*noise) - 3
 		if sum <= 0 {
 			sum, began = 0, k
 		}

@@ -2,9 +2,6 @@ package waveform
 
 import "math"
 
-// swing is the sample spread that levels saw, V.
-func (e *Edge) swing() float64 { return e.spread }
-
 // levels finds the level before the edge and after it, the edge's instant and its direction.
 func (r *reader) levels() {
 	v := r.Volts

@@ -17,12 +17,12 @@ func volts(v float64) string   { return quantity.Format(v, quantity.Voltage, 4) 
 
 // warn says what spoils the figures, and the cure.
 func (r *reader) warn() {
-	if len(r.edges) > 1 {
-		r.say("%d edges in the record: this is the one at %s, with the strongest ring; record one edge alone to read another", len(r.edges), seconds(r.e.EdgeS))
-	}
 	if !r.e.Ringing {
 		r.warnQuiet()
 		return
+	}
+	if len(r.edges) > 1 {
+		r.say("%d edges in the record: this is the one at %s, with the strongest ring; record one edge alone to read another", len(r.edges), seconds(r.e.EdgeS))
 	}
 	r.warnSampling()
 	r.warnLength()
@@ -80,45 +80,9 @@ func (r *reader) warnConverter() {
 	if r.step > 0 && r.e.NoiseV < 1.5*r.step/math.Sqrt(12) && r.e.AmplitudeV < 64*r.step {
 		r.say("quantisation dominates: the ring is %.0f steps of %s high; choose a finer vertical range, or average several records", 2*r.e.AmplitudeV/r.step, volts(r.step))
 	}
-	for _, side := range []struct {
-		name string
-		sign float64
-	}{{"highest", 1}, {"lowest", -1}} {
-		if n := r.flatRun(side.sign); n > 0 {
-			r.say("clipped: %d samples in a row lie on the %s value, flatter than a ring's turn; choose a larger vertical range", n, side.name)
-		}
+	if c := r.ring.clipped(r.Volts, r.at.at, r.step, r.p.ref); c.longest > 0 {
+		r.say("clipped: %d samples in a row lie on one end of the range, flatter than a ring's turn: the peak is higher than read, and the fit leaves them out; choose a larger vertical range", c.longest)
 	}
-}
-
-// flatRun is the longest run of samples on the extreme value, where it is too long for the turn of a ring as high as that: a
-// cosine stays within one step of its top for sqrt(2 step/height) radians to either side. Else 0.
-func (r *reader) flatRun(sign float64) int {
-	extreme := math.Inf(-1)
-	for _, v := range r.Volts {
-		extreme = max(extreme, sign*v)
-	}
-	longest, at, run := 0, 0, 0
-	for i, v := range r.Volts {
-		if sign*v < extreme-1e-9*r.e.spread {
-			run = 0
-			continue
-		}
-		if run++; run > longest {
-			longest, at = run, i
-		}
-	}
-	if longest < 3 || at-longest < r.before || at > r.ring.end {
-		return 0
-	}
-	height := sign*(extreme*sign) - sign*r.e.SettledV.Value
-	if height < 4*r.e.NoiseV || height < 3*r.step {
-		return 0 // the level itself, not a turn
-	}
-	turn := 2 * math.Sqrt(2*max(r.step, r.e.NoiseV)/height) * r.perCycle() / (2 * math.Pi)
-	if float64(longest) < 2+1.6*turn {
-		return 0
-	}
-	return longest
 }
 
 // warnCurve: what the model does not say.
