@@ -111,6 +111,21 @@ func TestAverageMonteCarlo(t *testing.T) {
 	}
 }
 
+// Two captures are each other's only help.
+func TestAverageOfTwo(t *testing.T) {
+	clean := usual.capture(0, 0, nil)
+	mean, err := Average([]Record{clean, usual.capture(-7.37, 0, nil)})
+	if err != nil {
+		t.Fatal(err)
+	}
+	from := int(math.Round((mean.Start - clean.Start) / 1e-9))
+	for i, v := range mean.Volts {
+		if math.Abs(v-clean.Volts[from+i]) > 2e-3 {
+			t.Fatalf("sample %d: %g V, want %g V", from+i, v, clean.Volts[from+i])
+		}
+	}
+}
+
 // The shifts themselves: their scatter is at most 1.4 times the least that noise allows, sigma / sqrt(sum of slopes squared)
 // for each of the two records.
 func TestRefinedShift(t *testing.T) {

@@ -3,6 +3,7 @@ package waveform
 import (
 	"bytes"
 	"compress/flate"
+	"encoding/binary"
 	"fmt"
 	"io"
 	"math"
@@ -141,6 +142,19 @@ func TestUnpackDamaged(t *testing.T) {
 		for _, name := range []string{"", "gzip", PlanesEncoding, LevelsEncoding} {
 			if _, err := Unpack(data, name); err == nil && name != encoding {
 				t.Errorf("%s as %q: no error", encoding, name)
+			}
+		}
+	}
+}
+
+// A few bytes that claim many samples take no memory for them.
+func TestUnpackClaims(t *testing.T) {
+	for encoding, form := range map[string]byte{LevelsEncoding: levelsForm, PlanesEncoding: planesForm} {
+		for _, claim := range []uint64{1 << 62, MaxSamples + 1, MaxSamples, 100_000} {
+			data := append([]byte(packMark), form)
+			data = append(binary.AppendUvarint(data, claim), "0000and the rest"...)
+			if _, err := Unpack(data, encoding); err == nil || !strings.Contains(err.Error(), "which so few bytes cannot") {
+				t.Errorf("%s, %d samples: %v", encoding, claim, err)
 			}
 		}
 	}
