@@ -43,7 +43,10 @@ func cure(err error) string {
 	var link *scpi.LinkError
 	var refused *scpi.InstrumentError
 	var nonsense *scpi.ReplyError
+	var samples *sampleError
 	switch {
+	case errors.As(err, &samples):
+		return samples.cure
 	case errors.As(err, &open), errors.Is(err, context.Canceled), errors.Is(err, context.DeadlineExceeded):
 		return ""
 	case errors.As(err, &refused):

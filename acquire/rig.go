@@ -30,6 +30,7 @@ type Instrument struct {
 	Setup        []string      // messages sent once, when the rig is opened
 	Fit          string        // the command that fits a network, with {network}, {c} and {r}; "": none
 	Readings     []Query       // what it reads
+	Waveform     *Waveform     // how its samples are had; nil: it gives none
 }
 
 // Query is how one quantity is read.
@@ -80,7 +81,7 @@ func (e *RigError) Unwrap() error { return e.Err }
 func (r Rig) Check() error {
 	names := map[string]bool{}
 	provider := map[snubber.Quantity]string{}
-	fitter := ""
+	fitter, sampler := "", ""
 	for _, in := range r.Instruments {
 		if names[in.Name] {
 			return in.wrong("", "a second instrument of this name")
@@ -101,8 +102,14 @@ func (r Rig) Check() error {
 		if in.Fit != "" {
 			fitter = in.Name
 		}
+		if in.Waveform != nil && sampler != "" {
+			return in.wrong("waveform", "%s takes the waveform already: take one of the two out", sampler)
+		}
+		if in.Waveform != nil {
+			sampler = in.Name
+		}
 	}
-	if len(provider) == 0 {
+	if len(provider) == 0 && sampler == "" {
 		return &RigError{Err: fmt.Errorf("no instrument provides a reading: give at least one, as in [instrument.scope.reading.ring_hz]")}
 	}
 	return nil
@@ -143,6 +150,11 @@ func (in Instrument) check() error {
 			return in.wrong(strings.TrimSuffix("reading."+string(q.Quantity)+"."+key, "."), "%w", err)
 		}
 	}
+	if in.Waveform != nil {
+		if key, err := in.Waveform.check(); err != nil {
+			return in.wrong(strings.TrimSuffix("waveform."+key, "."), "%w", err)
+		}
+	}
 	return nil
 }
 
@@ -158,12 +170,8 @@ func (q Query) check() (key string, err error) {
 	if q.Query == "" {
 		return "", fmt.Errorf("its query is missing: give one, as in query = \"MEASure:FREQuency?\"")
 	}
-	header, _, err := scpi.ParseUnit(q.Query)
-	if err != nil {
+	if err := checkQuery(q.Query); err != nil {
 		return "query", err
-	}
-	if !scpi.IsQuery(header) {
-		return "query", fmt.Errorf("%q is no query: its header must end in ?", q.Query)
 	}
 	if math.IsNaN(q.Scale) || math.IsInf(q.Scale, 0) {
 		return "scale", fmt.Errorf("%g: it must be a finite number", q.Scale)

@@ -39,6 +39,7 @@ type instrumentFile struct {
 	Setup      []string               `toml:"setup"`
 	Fit        *string                `toml:"fit"`
 	Reading    map[string]readingFile `toml:"reading"`
+	Waveform   *waveformFile          `toml:"waveform"`
 }
 
 type readingFile struct {
@@ -68,7 +69,7 @@ func ParseRig(name string, data []byte) (Rig, error) {
 	}
 	if unknown := meta.Undecoded(); len(unknown) > 0 {
 		key := unknown[0]
-		return Rig{}, &RigError{File: name, Line: lineOf(string(data), key), Key: key.String(), Err: fmt.Errorf("there is no such key: %s", keysAt(len(key)))}
+		return Rig{}, &RigError{File: name, Line: lineOf(string(data), key), Key: key.String(), Err: fmt.Errorf("there is no such key: %s", keysAt(key))}
 	}
 	var rig Rig
 	for _, n := range slices.Sorted(maps.Keys(file.Instrument)) {
@@ -120,17 +121,26 @@ func (f instrumentFile) instrument(name string) (Instrument, error) {
 		}
 		in.Readings = append(in.Readings, q)
 	}
+	if f.Waveform != nil {
+		w, key, err := f.Waveform.waveform()
+		if err != nil {
+			return in, in.wrong("waveform."+key, "%w", err)
+		}
+		in.Waveform = &w
+	}
 	return in, nil
 }
 
-// keysAt lists the keys there are at a depth of the file, for the cure.
-func keysAt(depth int) string {
-	switch depth {
-	case 1:
+// keysAt lists the keys there are where an unknown one stands, for the cure.
+func keysAt(key toml.Key) string {
+	switch {
+	case len(key) == 1:
 		return "the file holds [instrument.NAME] tables"
-	case 3:
-		return "an instrument has address, timeout, terminator, error_queue, setup, fit and [instrument.NAME.reading.QUANTITY] tables"
-	case 5:
+	case len(key) == 3:
+		return "an instrument has address, timeout, terminator, error_queue, setup, fit, [instrument.NAME.waveform] and [instrument.NAME.reading.QUANTITY] tables"
+	case len(key) > 3 && key[2] == "waveform":
+		return "a waveform has take, query, format, byte_order, preamble, preamble_fields, scale, " + strings.Join(scalings(), ", ")
+	case len(key) == 5:
 		return "a reading has query, scale, accuracy and repeats"
 	}
 	return "accuracy has percent and fixed"

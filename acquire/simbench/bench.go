@@ -32,6 +32,7 @@ type Bench struct {
 	loadA    float64 // A
 	captures uint64  // how many have been taken
 	kept     *Capture
+	format   sampleFormat // of the scope's samples
 	meters   *rand.Rand
 	gains    map[string]float64 // each meter's own error, a fraction
 }
@@ -45,7 +46,7 @@ func Start(ctx context.Context, cfg Config) (*Bench, error) {
 	}
 	b := &Bench{
 		model: model, instruments: map[string]*device.Instrument{}, addresses: map[string]string{},
-		network: Network{Kind: Bare}, setV: cfg.BusV, outputOn: true, loadA: cfg.LoadA,
+		network: Network{Kind: Bare}, setV: cfg.BusV, outputOn: true, loadA: cfg.LoadA, format: startFormat,
 		meters: rand.New(rand.NewPCG(cfg.Seed, 0x6d65746572)), gains: map[string]float64{},
 	}
 	for _, name := range Names() {

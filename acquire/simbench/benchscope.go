@@ -1,7 +1,6 @@
 package simbench
 
 import (
-	"fmt"
 	"math/rand/v2"
 
 	"ringbook/acquire/simbench/device"
@@ -10,20 +9,17 @@ import (
 // newScope makes the oscilloscope. MEASure takes a new capture and reads a figure from it; FETCh reads one from
 // the capture kept last, which CAPTure:PREamble? and CAPTure:DATA? hand out:
 //
-//	CAPTure:PREamble?  points, time of the first sample (s), step (s), volts of code 0, volts per code
-//	CAPTure:DATA?      a definite length block of one byte per sample
+//	CAPTure:PREamble?  points, time of the first sample (s), step (s), volts of the lowest code, volts per code, the
+//	                   lowest code
+//	CAPTure:DATA?      the samples, in the format set: UINTeger,8 at the start
+//	CAPTure:FORMat     see samples
 func (b *Bench) newScope() (*device.Instrument, error) {
-	commands := []device.Command{
+	commands := append([]device.Command{
 		{Header: "CAPTure[:TAKE]", Do: func([]device.Arg) (string, error) {
 			_, err := b.capture()
 			return "", err
 		}},
-		{Header: "CAPTure:PREamble?", Do: b.fromKept(func(c Capture) string {
-			return fmt.Sprintf("%d,%s,%s,%s,%s", len(c.Codes), device.NR3(c.StartS, 9), device.NR3(c.StepS, 9),
-				device.NR3(c.BottomV, 9), device.NR3(c.VoltsPerBit, 9))
-		})},
-		{Header: "CAPTure:DATA?", Do: b.fromKept(func(c Capture) string { return device.Block(c.Codes) })},
-	}
+	}, b.samples()...)
 	for header, figure := range map[string]func(Figures) float64{
 		"FREQuency":       func(f Figures) float64 { return f.RingHz },
 		"RING:DECay":      func(f Figures) float64 { return f.DecayS },
@@ -39,12 +35,12 @@ func (b *Bench) newScope() (*device.Instrument, error) {
 				}
 				return read(c), nil
 			}},
-			device.Command{Header: "FETCh:" + header + "?", Do: b.fromKept(read)})
+			device.Command{Header: "FETCh:" + header + "?", Do: b.fromKept(func(c Capture, _ sampleFormat) string { return read(c) })})
 	}
 	forget := func() {
 		b.mu.Lock()
 		defer b.mu.Unlock()
-		b.kept = nil
+		b.kept, b.format = nil, startFormat
 	}
 	return device.New("RINGBOOK,SIMULATED SCOPE,0,1", forget, commands)
 }
@@ -65,14 +61,14 @@ func (b *Bench) capture() (Capture, error) {
 }
 
 // fromKept makes a query that answers from the capture kept.
-func (b *Bench) fromKept(answer func(Capture) string) func([]device.Arg) (string, error) {
+func (b *Bench) fromKept(answer func(Capture, sampleFormat) string) func([]device.Arg) (string, error) {
 	return func([]device.Arg) (string, error) {
 		b.mu.Lock()
-		c := b.kept
+		c, format := b.kept, b.format
 		b.mu.Unlock()
 		if c == nil {
 			return "", device.Errorf(-230, "no capture is kept; send CAPTure first")
 		}
-		return answer(*c), nil
+		return answer(*c, format), nil
 	}
 }

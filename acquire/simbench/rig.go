@@ -22,6 +22,13 @@ accuracy = { percent = 3 }
 query    = "MEASure:VOLTage:MAXimum?"
 accuracy = { percent = 0.5, fixed = 0.3 }
 
+[instrument.scope.waveform]
+take            = "CAPTure"
+query           = "CAPTure:DATA?"
+format          = "uint8"
+preamble        = "CAPTure:PREamble?"
+preamble_fields = ["points", "start_s", "interval_s", "zero_v", "volt_per_code", "zero_code"]
+
 [instrument.supply]
 address = "@supply"
 
