@@ -42,7 +42,7 @@ func (c coarse) addPlain(ctx context.Context, at *curve, noise float64) *curve {
 		if !(g > 0) || !plausible(mode{d: g}, len(c.y)) {
 			continue
 		}
-		try, ok := held(c.y, append(at.modes[:len(at.modes):len(at.modes)], mode{d: g}), 0)
+		try, ok := held(c.series, append(at.modes[:len(at.modes):len(at.modes)], mode{d: g}))
 		if ok && (best == nil || try.rss < best.rss) {
 			best, bestMode = try, mode{d: g}
 		}
@@ -50,7 +50,7 @@ func (c coarse) addPlain(ctx context.Context, at *curve, noise float64) *curve {
 	if best == nil || at.rss-best.rss < 0.3*noise*noise*worth(10, 2) {
 		return at
 	}
-	next, ok := refine(ctx, c.y, append(at.modes[:len(at.modes):len(at.modes)], bestMode), 0)
+	next, ok := refine(ctx, c.series, append(at.modes[:len(at.modes):len(at.modes)], bestMode))
 	if !ok || at.rss-next.rss < noise*noise*worth(10, 2) || !isRing(next.modes[0]) {
 		return at
 	}
@@ -80,7 +80,7 @@ func (c coarse) addTone(ctx context.Context, at *curve, others []tone, noise flo
 	var best *curve
 	for _, s := range starts {
 		modes := append([]mode{at.modes[0], s}, at.modes[1:]...)
-		next, ok := refine(ctx, c.y, modes, 0)
+		next, ok := refine(ctx, c.series, modes)
 		if !ok || !c.stands(next, at, noise) {
 			continue
 		}
@@ -91,15 +91,15 @@ func (c coarse) addTone(ctx context.Context, at *curve, others []tone, noise flo
 	if best == nil {
 		return at
 	}
-	return best.ordered(c.y)
+	return best.ordered(c.series)
 }
 
 // ordered puts the tone of more energy first.
-func (c *curve) ordered(y []float64) *curve {
+func (c *curve) ordered(in series) *curve {
 	if !hasSecond(c) || c.energy(0) >= c.energy(1) {
 		return c
 	}
-	if swapped, ok := held(y, append([]mode{c.modes[1], c.modes[0]}, c.modes[2:]...), 0); ok {
+	if swapped, ok := held(in, append([]mode{c.modes[1], c.modes[0]}, c.modes[2:]...)); ok {
 		return swapped
 	}
 	return c
@@ -137,17 +137,17 @@ func (c coarse) swing() float64 {
 func (c coarse) leftTone(at *curve, noise float64) (mode, bool) {
 	n := min(len(c.y), 4096)
 	size := 64
-	for size < 2*n {
+	for size < n {
 		size *= 2
 	}
 	left := make([]float64, 0, len(c.y))
-	at.walk(c.y, func(_ int, e []float64) { left = append(left, e...) })
+	at.walk(c.series, func(_ int, e []float64) { left = append(left, e...) })
 	fft := fourier.NewFFT(size)
 	buf := make([]float64, size)
 	var line []complex128
 	var best mode
 	highest := 0.0
-	for _, g := range []float64{0.4, 1, 2.5} {
+	for _, g := range []float64{0.5, 2} {
 		d := max(g*at.modes[0].d, 1/float64(n))
 		weight := 0.0
 		e, r := 1.0, math.Exp(-d)

@@ -16,13 +16,13 @@ func (p prefix) finish(ctx context.Context, c coarse, at *curve, least, to int, 
 	}
 	noise := c.noise(at) * math.Sqrt(m)
 	r := &ring{start: c.first, end: p.lasts(c, at, to, noise), noise: noise, misfit: misfit}
-	v := p.blocks(r.start, 1, r.end-r.start)
-	full, ok := refine(ctx, v, modes, 0)
+	v := p.samples(r.start, r.end)
+	full, ok := refine(ctx, v, modes)
 	if !ok || !isRing(full.modes[0]) {
 		return nil
 	}
-	if k := len(full.modes) - 1; hasPlain(full) && full.modes[k].d < 0.2/float64(len(v)) { // a slope without an end
-		if full, ok = refine(ctx, v, full.modes[:k], 0); !ok || !isRing(full.modes[0]) {
+	if k := len(full.modes) - 1; hasPlain(full) && full.modes[k].d < 0.2/float64(len(v.y)) { // a slope without an end
+		if full, ok = refine(ctx, v, full.modes[:k]); !ok || !isRing(full.modes[0]) {
 			return nil
 		}
 	}
@@ -30,7 +30,7 @@ func (p prefix) finish(ctx context.Context, c coarse, at *curve, least, to int, 
 	if !misfit {
 		p.joins(ctx, r, least, step)
 	}
-	r.curve = r.curve.ordered(p.blocks(r.start, 1, r.end-r.start))
+	r.curve = r.curve.ordered(p.samples(r.start, r.end))
 	if !p.standsOut(ctx, r, step) {
 		return nil
 	}
@@ -75,7 +75,7 @@ func (p prefix) tailNoise(i, j int) float64 {
 	mean := p.mean(i, j)
 	squares := 0.0
 	for k := i; k < j; k++ {
-		d := p.mean(k, k+1) - mean
+		d := p.v[k] - p.ref - mean
 		squares += d * d
 	}
 	return math.Sqrt(squares / float64(j-i-1))
@@ -84,7 +84,7 @@ func (p prefix) tailNoise(i, j int) float64 {
 // joins moves the start, a sample at a time, to where the samples join the curve: back while they lie on it, then on past
 // those that lie rather on the flat before the edge.
 func (p prefix) joins(ctx context.Context, r *ring, least int, step float64) {
-	one := coarse{p: p, m: 1, first: r.start, y: p.blocks(r.start, 1, r.end-r.start), step: step}
+	one := p.coarse(r.start, r.end, 1, step)
 	back := min(r.start-least, int(max(4, r.curve.modes[0].period()/8)))
 	take := 0
 	if back > 0 {
@@ -96,8 +96,7 @@ func (p prefix) joins(ctx context.Context, r *ring, least int, step float64) {
 		return
 	}
 	start := r.start - move
-	v := p.blocks(start, 1, r.end-start)
-	next, ok := refine(ctx, v, r.curve.modes, 0)
+	next, ok := refine(ctx, p.samples(start, r.end), r.curve.modes)
 	if !ok || !isRing(next.modes[0]) {
 		return
 	}
@@ -115,7 +114,7 @@ func (p prefix) flat(r *ring, take int) int {
 	level := p.mean(from, first-2)
 	squares := 0.0
 	for k := from; k < first-2; k++ {
-		d := p.mean(k, k+1) - level
+		d := p.v[k] - p.ref - level
 		squares += d * d
 	}
 	if squares/float64(first-2-from) > 4*r.noise*r.noise {
@@ -123,16 +122,20 @@ func (p prefix) flat(r *ring, take int) int {
 	}
 	sum, least, n := 0.0, 0.0, 0
 	span := int(r.curve.modes[0].period() / 8)
+	smooth := math.Abs(r.curve.at(float64(-take))-level) < 4*r.noise // the curve leaves the flat without a jump
 	for k := range take + span {
 		if first+k >= r.end {
 			break
 		}
-		v := p.mean(first+k, first+k+1)
+		v := p.v[first+k] - p.ref
 		on := v - r.curve.at(float64(k-take))
 		sum += (v-level)*(v-level) - on*on
 		if sum < least {
 			least, n = sum, k+1
 		}
+	}
+	for smooth && n < take+span && math.Abs(r.curve.at(float64(n-take))-level) < 1.5*r.noise {
+		n++ // as like the one as the other
 	}
 	return n
 }
@@ -147,7 +150,11 @@ func (p prefix) standsOut(ctx context.Context, r *ring, step float64) bool {
 	main := r.curve.modes[0]
 	m := max(1, int(main.period()/perCycle))
 	begin := r.start + int(main.period()/2)
-	c := p.coarse(begin, r.end, m, step)
+	end := r.end
+	if main.d > 0 { // what comes after six e-foldings tells nothing
+		end = min(end, begin+int(6/main.d)+8*m)
+	}
+	c := p.coarse(begin, end, m, step)
 	if len(c.y) < 3*len(r.curve.modes)+8 || float64(r.end-r.start) < 1.25*main.period() {
 		return false
 	}
@@ -155,22 +162,22 @@ func (p prefix) standsOut(ctx context.Context, r *ring, step float64) bool {
 	for k, x := range r.curve.modes {
 		scaled[k] = mode{x.d * float64(m), x.w * float64(m)}
 	}
-	with, ok := held(c.y, scaled, 0)
+	with, ok := held(c.series, scaled)
 	if !ok {
 		return false
 	}
-	without, ok := held(c.y, scaled[1:], 0)
+	without, ok := held(c.series, scaled[1:])
 	if !ok {
 		return false
 	}
 	bare := without.rss
-	for _, g := range []float64{0.3, 1, 3} {
+	for _, g := range []float64{0.5, 2} {
 		d := g * max(scaled[0].d, 0.2*scaled[0].w)
 		for _, plain := range [][]mode{{{d: d}}, {{d: d}, {d: 3 * d}}} {
 			if !plausible(plain[len(plain)-1], len(c.y)) {
 				continue
 			}
-			if bent, ok := refine(ctx, c.y, append(plain, scaled[1:]...), 0); ok {
+			if bent, ok := refine(ctx, c.series, append(plain, scaled[1:]...)); ok {
 				bare = min(bare, bent.rss)
 			}
 		}

@@ -21,9 +21,9 @@ func (m mode) columns() int {
 func (m mode) period() float64 { return 2 * math.Pi / m.w }
 
 const (
-	maxColumns = 17  // 1 and twice the columns of two tones and two plain exponentials, with room
-	stretch    = 256 // samples from one exact sine, cosine and exponential to the next
-	goneAt     = 20  // e-foldings after which a mode is taken for nothing (2e-9 of it is left)
+	maxColumns = 13  // 1 and twice the columns of two tones and two plain exponentials
+	stretch    = 128 // samples from one exact sine, cosine and exponential to the next
+	goneAt     = 14  // e-foldings after which a mode is taken for nothing (under a millionth of it is left)
 )
 
 // basis holds the columns over one stretch of samples: first the values (1, then e^(-d t) cos w t and e^(-d t) sin w t of
@@ -34,25 +34,34 @@ type basis struct {
 	y               []float64
 }
 
-func newBasis(modes []mode) *basis {
-	b := &basis{values: 1}
+// series is samples to fit, less ref each, and the room to work in.
+type series struct {
+	y    []float64
+	ref  float64
+	room *room
+}
+
+// room is one stretch of columns, and of samples, laid out anew by every pass: a fit of any length needs no more.
+type room [(maxColumns + 1) * stretch]float64
+
+// lay sets the columns out for the modes.
+func (b *basis) lay(modes []mode, store *room) {
+	b.values = 1
 	for _, m := range modes {
 		b.values += m.columns()
 	}
 	b.columns = 2*b.values - 1
-	store := make([]float64, (b.columns+1)*stretch)
 	for i := range b.columns {
 		b.col[i] = store[i*stretch : (i+1)*stretch]
 	}
-	b.y = store[b.columns*stretch:]
-	for i := range stretch {
+	b.y = store[b.columns*stretch : (b.columns+1)*stretch]
+	for i := range b.col[0] {
 		b.col[0][i] = 1
 	}
-	return b
 }
 
 // fill writes the columns for n samples from t on. Within the stretch each mode is turned and shrunk from sample to
-// sample by one multiplication; the rounding of 256 of them is some 1e-14.
+// sample by one multiplication; the rounding of 128 of them is some 1e-14.
 func (b *basis) fill(modes []mode, t, n int) {
 	at := 1
 	for _, m := range modes {
@@ -121,10 +130,12 @@ type sums struct {
 	yy                 float64
 }
 
-// gather goes once through the samples y, the first at t = 0, less ref. Where the modes have died away, only the level's
+// gather goes once through the samples, the first at t = 0. Where the modes have died away, only the level's
 // sums are left to take. Memory is one stretch, whatever the record's length.
-func gather(y []float64, modes []mode, ref float64) *sums {
-	b := newBasis(modes)
+func gather(in series, modes []mode) *sums {
+	y, ref := in.y, in.ref
+	var b basis
+	b.lay(modes, in.room)
 	s := &sums{columns: b.columns, values: b.values, n: len(y)}
 	alive := gone(modes, len(y))
 	for t := 0; t < alive; t += stretch {

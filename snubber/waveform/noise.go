@@ -47,7 +47,7 @@ func convertersStep(v []float64) float64 {
 // quickNoise is the noise's standard deviation by second differences, V: right where samples are many to a cycle, too
 // large where they are few. It is the median's, so a few edges do not matter.
 func quickNoise(v []float64) float64 {
-	const look = 4096
+	const look = 1024
 	stride := max(1, len(v)/look)
 	var size []float64
 	for i := 1; i+1 < len(v); i += stride {

@@ -7,13 +7,15 @@ import (
 
 // prefix holds running sums of the samples, so that the mean over any block is one subtraction.
 type prefix struct {
+	v    []float64 // the samples
 	ref  float64
+	room *room
 	sum  []float64 // sum[i]: the first i samples, less ref each
 	tiny float64   // V: below this, differences are the rounding of the samples
 }
 
 func newPrefix(v []float64) prefix {
-	p := prefix{ref: v[len(v)-1], sum: make([]float64, len(v)+1)}
+	p := prefix{v: v, room: new(room), ref: v[len(v)-1], sum: make([]float64, len(v)+1)}
 	p.tiny = 1e-9*spread(v) + 1e-14*math.Abs(p.ref)
 	for i, x := range v {
 		p.sum[i+1] = p.sum[i] + (x - p.ref)
@@ -36,6 +38,9 @@ func (p prefix) blocks(i, m, n int) []float64 {
 
 // jump is how far the mean of the k samples from i on lies from the mean of the k before.
 func (p prefix) jump(i, k int) float64 { return (p.sum[i+k] - 2*p.sum[i] + p.sum[i-k]) / float64(k) }
+
+// samples i to j-1, to fit.
+func (p prefix) samples(i, j int) series { return series{p.v[i:j], p.ref, p.room} }
 
 // onset is where the voltage begins to move: near sample at, within some scale samples.
 type onset struct {
@@ -82,10 +87,8 @@ func (p prefix) onsets(most int) []onset {
 func (p prefix) rising(top onset) []onset {
 	n, k := len(p.sum)-1, top.scale
 	stride := max(1, k/4)
-	var size []float64
-	for i := k; i+k <= n; i += stride {
-		size = append(size, math.Abs(p.jump(i, k)))
-	}
+	last := (n - 2*k) / stride
+	size := func(j int) float64 { return math.Abs(p.jump(k+j*stride, k)) }
 	const back, near = 40, 6 // strides: ten and one and a half times a long scale
 	long, short := back, near
 	if k < 4 {
@@ -93,13 +96,18 @@ func (p prefix) rising(top onset) []onset {
 	}
 	var out []onset
 	before := peaks{window: long - short}
-	for j, a := range size {
-		if q := j - short; q >= 0 {
-			before.push(q, size[q])
+	var left, here float64
+	right := size(0)
+	for j := range last + 1 {
+		left, here, right = here, right, 0
+		if j < last {
+			right = size(j + 1)
 		}
-		local := (j == 0 || a >= size[j-1]) && (j+1 == len(size) || a > size[j+1])
-		if local && a >= 0.35*top.size && a > 1.4*before.top() {
-			out = append(out, onset{at: k + j*stride, scale: k, size: a})
+		if q := j - short; q >= 0 {
+			before.push(q, size(q))
+		}
+		if here >= left && here > right && here >= 0.35*top.size && here > 1.4*before.top() {
+			out = append(out, onset{at: k + j*stride, scale: k, size: here})
 		}
 	}
 	if len(out) == 0 {

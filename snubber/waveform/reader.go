@@ -65,11 +65,9 @@ func (r *reader) figures(ctx context.Context) {
 // uncertain finds the noise and with it the covariance of the fit's coefficients.
 func (r *reader) uncertain() {
 	c := r.ring.curve
-	v := r.Volts[r.ring.start:r.ring.end]
-	shifted := *c
-	shifted.level += r.p.ref
-	left := shifted.residual(v)
-	r.dof = max(1, len(v)-c.parameters())
+	v := r.p.samples(r.ring.start, r.ring.end)
+	left := c.residual(v)
+	r.dof = max(1, len(v.y)-c.parameters())
 	variance := left.squares / float64(r.dof)
 	if floor := r.step * r.step / 12; r.step > 0 {
 		variance = max(variance, floor)
@@ -171,12 +169,12 @@ func (r *reader) drifts(ctx context.Context) {
 	if r.ring.start+2*half > r.ring.end {
 		return
 	}
-	v := r.p.blocks(r.ring.start, 1, min(r.ring.end-r.ring.start, 6*half))
-	first, ok := inPart(ctx, v[:half], main)
+	last := min(r.ring.end, r.ring.start+6*half)
+	first, ok := inPart(ctx, r.p.samples(r.ring.start, r.ring.start+half), main)
 	if !ok {
 		return
 	}
-	later, ok := inPart(ctx, v[half:], main)
+	later, ok := inPart(ctx, r.p.samples(r.ring.start+half, last), main)
 	if !ok {
 		return
 	}
@@ -190,8 +188,8 @@ func (r *reader) drifts(ctx context.Context) {
 type part struct{ w, u float64 }
 
 // inPart fits a stretch for its own frequency.
-func inPart(ctx context.Context, v []float64, near mode) (part, bool) {
-	c, ok := refine(ctx, v, []mode{near}, 0)
+func inPart(ctx context.Context, in series, near mode) (part, bool) {
+	c, ok := refine(ctx, in, []mode{near})
 	if !ok {
 		return part{}, false
 	}

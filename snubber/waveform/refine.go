@@ -7,7 +7,7 @@ import (
 )
 
 // curve is a level and modes fitted to samples: v(t) = level + sum of Re(amp e^((-d + i w) t)), t in samples from the
-// first of those fitted.
+// first of those fitted, v and the level less the series' ref.
 type curve struct {
 	modes []mode
 	level float64
@@ -31,13 +31,13 @@ func (c *curve) at(t float64) float64 {
 func (c *curve) parameters() int { return c.sol.columns }
 
 // held fits level and amplitudes with the modes as they are.
-func held(y []float64, modes []mode, ref float64) (*curve, bool) {
-	sol, ok := gather(y, modes, ref).solve()
+func held(in series, modes []mode) (*curve, bool) {
+	sol, ok := gather(in, modes).solve()
 	if !ok {
 		return nil, false
 	}
 	x := sol.coefficients(sol.values)
-	c := &curve{modes: append([]mode(nil), modes...), level: x[0] + ref, rss: sol.rss(), n: len(y), sol: sol}
+	c := &curve{modes: append([]mode(nil), modes...), level: x[0], rss: sol.rss(), n: len(in.y), sol: sol}
 	at := 1
 	for _, m := range modes {
 		if m.w == 0 {
@@ -58,8 +58,8 @@ func held(y []float64, modes []mode, ref float64) (*curve, bool) {
 //	level + sum of p e^(s t) + q t e^(s t)
 //
 // linearly, and s moves by q/p. A step that does not lower the residual is halved.
-func refine(ctx context.Context, y []float64, start []mode, ref float64) (*curve, bool) {
-	at, ok := held(y, start, ref)
+func refine(ctx context.Context, in series, start []mode) (*curve, bool) {
+	at, ok := held(in, start)
 	if !ok {
 		return nil, false
 	}
@@ -82,21 +82,21 @@ func refine(ctx context.Context, y []float64, start []mode, ref float64) (*curve
 			}
 			move *= complex(share, 0)
 			next[k] = mode{m.d - real(move), m.w + imag(move)}
-			if m.w != 0 && !(next[k].w > 0 && next[k].w < math.Pi) || !plausible(next[k], len(y)) {
+			if m.w != 0 && !(next[k].w > 0 && next[k].w < math.Pi) || !plausible(next[k], len(in.y)) {
 				return nil, false
 			}
 		}
 		if small {
 			return at, true
 		}
-		c, ok := held(y, next, ref)
+		c, ok := held(in, next)
 		if !ok || !(c.rss <= at.rss*(1+1e-12)+1e-15*at.sol.yy) {
 			if share /= 2; share < 1e-3 {
 				return at, true
 			}
 			continue
 		}
-		settled := share == 1 && at.rss-c.rss < 1e-9*c.rss/float64(len(y)) // a step that a tiny part of a standard uncertainty gained
+		settled := share == 1 && at.rss-c.rss < 1e-6*c.rss/float64(len(in.y)) // a step that a tiny part of a standard uncertainty gained
 		at, share = c, min(1, share*2)
 		step = at.step()
 		if settled {

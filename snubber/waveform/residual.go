@@ -17,7 +17,8 @@ type residuals struct {
 }
 
 // residual goes once more through the samples the curve was fitted to.
-func (c *curve) residual(y []float64) residuals {
+func (c *curve) residual(in series) residuals {
+	y := in.y
 	r := residuals{n: len(y)}
 	quarter := len(y)
 	if len(c.modes) > 0 && c.modes[0].w > 0 {
@@ -26,7 +27,7 @@ func (c *curve) residual(y []float64) residuals {
 	parts := min(32, max(1, len(y)/8))
 	size := (len(y) + parts - 1) / parts
 	var cross, last, part, run float64
-	c.walk(y, func(t int, e []float64) {
+	c.walk(in, func(t int, e []float64) {
 		for i, v := range e {
 			if t+i > 0 {
 				cross += v * last
@@ -54,14 +55,16 @@ func (c *curve) residual(y []float64) residuals {
 }
 
 // walk gives the residuals in stretches, y less the curve.
-func (c *curve) walk(y []float64, use func(t int, e []float64)) {
-	b := newBasis(c.modes)
-	e := make([]float64, stretch)
+func (c *curve) walk(in series, use func(t int, e []float64)) {
+	var b basis
+	b.lay(c.modes, in.room)
+	y := in.y
+	e := b.y
 	alive := gone(c.modes, len(y))
 	for t := 0; t < len(y); t += stretch {
 		n := min(stretch, len(y)-t)
 		for i, v := range y[t : t+n] {
-			e[i] = v - c.level
+			e[i] = v - in.ref - c.level
 		}
 		if t < alive {
 			b.fill(c.modes, t, n)

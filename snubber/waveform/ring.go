@@ -25,20 +25,28 @@ type coarse struct {
 	p     prefix
 	m     int
 	first int // the record's sample
-	y     []float64
-	step  float64 // V: the converter's, 0: none
-	weak  bool    // the noise does not carry a level over the converter's steps
+	series
+	step float64 // V: the converter's, 0: none
+	weak bool    // the noise does not carry a level over the converter's steps
 }
 
 func (p prefix) coarse(first, to, m int, step float64) coarse {
-	return coarse{p: p, m: m, first: first, y: p.blocks(first, m, max(0, (to-first)/m)), step: step}
+	return coarse{p: p, m: m, first: first, series: p.means(first, m, max(0, (to-first)/m)), step: step}
+}
+
+// means is n means over m samples each, from i on.
+func (p prefix) means(i, m, n int) series {
+	if m == 1 {
+		return p.samples(i, i+n)
+	}
+	return series{p.blocks(i, m, n), 0, p.room}
 }
 
 // floor is the least noise to believe in a mean: what quantisation makes, or the rounding of the samples.
 func (c coarse) floor() float64 { return max(c.step/math.Sqrt(12*float64(c.m)), c.p.tiny) }
 
 // noise of a mean, V, by what the curve leaves.
-func (c coarse) noise(at *curve) float64 { return max(at.residual(c.y).quiet(), c.floor()) }
+func (c coarse) noise(at *curve) float64 { return max(at.residual(c.series).quiet(), c.floor()) }
 
 // findRing fits a ring to what follows the edge at from, and before to; the samples before the edge may be taken in
 // down to least. It gives none where no fit stands.
@@ -59,7 +67,7 @@ func (p prefix) findRing(ctx context.Context, o onset, least, to int, step float
 		if best == nil || left < 0.8*bestLeft || left < 1.2*bestLeft && r.start < best.start && r.amplitude() > best.amplitude() {
 			best, bestLeft = r, left
 		}
-		if !r.misfit && r.noise < 3*max(step/math.Sqrt(12), quickNoise(p.blocks(r.start, 1, min(4096, r.end-r.start)))) {
+		if !r.misfit && r.noise < 3*max(step/math.Sqrt(12), quickNoise(p.v[r.start:min(r.start+4096, r.end)])) {
 			break
 		}
 	}
@@ -121,14 +129,14 @@ func (a *attempt) amplitude() float64 { return cmplx.Abs(a.curve.amp[0]) }
 func (p prefix) attempt(ctx context.Context, begin, end, m int, step float64, weak bool, modes []mode, others []tone) *attempt {
 	view := p.coarse(begin, end, m, step)
 	view.weak = weak
-	c, ok := refine(ctx, view.y, modes, 0)
+	c, ok := refine(ctx, view.series, modes)
 	if !ok || !isRing(c.modes[0]) {
 		return nil
 	}
 	if weak {
 		if n := view.crossesSteps(c); n < len(view.y) {
 			view.y = view.y[:n]
-			if c, ok = refine(ctx, view.y, c.modes, 0); !ok || !isRing(c.modes[0]) {
+			if c, ok = refine(ctx, view.series, c.modes); !ok || !isRing(c.modes[0]) {
 				return nil
 			}
 		}
@@ -149,7 +157,9 @@ const slack = 0.002
 func (c coarse) frontOff(at *curve, noise float64) float64 {
 	n := min(len(c.y), max(4, int(at.modes[0].period()/2)))
 	front := 0.0
-	at.walk(c.y[:n], func(_ int, e []float64) {
+	head := c.series
+	head.y = head.y[:n]
+	at.walk(head, func(_ int, e []float64) {
 		for _, v := range e {
 			front += v * v
 		}
@@ -173,8 +183,8 @@ func (c coarse) growBack(ctx context.Context, at *curve, least int) (coarse, *cu
 		}
 		grown := c
 		grown.first -= take * c.m
-		grown.y = append(c.p.blocks(grown.first, c.m, take), c.y...)
-		next, ok := refine(ctx, grown.y, at.modes, 0)
+		grown.series = c.p.means(grown.first, c.m, len(c.y)+take)
+		next, ok := refine(ctx, grown.series, at.modes)
 		if !ok || !isRing(next.modes[0]) {
 			break
 		}

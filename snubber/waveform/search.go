@@ -32,7 +32,7 @@ func (p prefix) tones(from, to int) []tone {
 			break
 		}
 		y := p.blocks(begin, m, n)
-		for _, t := range strongest(y, pencil(y, pencilModes), m) {
+		for _, t := range strongest(series{y, 0, p.room}, pencil(y, pencilModes), m) {
 			found = append(found, tone{mode{t.d / float64(m), t.w / float64(m)}, t.energy * float64(m)})
 		}
 	}
@@ -58,7 +58,7 @@ func nearOne(ts []tone, w, share float64) bool {
 
 // strongest weighs each tone among the modes by the energy the samples lose with it, beside the level and the plain
 // exponentials.
-func strongest(y []float64, modes []mode, m int) []tone {
+func strongest(in series, modes []mode, m int) []tone {
 	var plain []mode
 	var out []tone
 	lowest, highest := 2*math.Pi*0.02, 2*math.Pi*0.3
@@ -66,23 +66,23 @@ func strongest(y []float64, modes []mode, m int) []tone {
 		highest = 2 * math.Pi * 0.49
 	}
 	for _, x := range modes {
-		if x.w == 0 && x.d > 0.5/float64(len(y)) && len(plain) == 0 {
+		if x.w == 0 && x.d > 0.5/float64(len(in.y)) && len(plain) == 0 {
 			plain = append(plain, x)
 		}
 	}
-	without, ok := held(y, plain, 0)
+	without, ok := held(in, plain)
 	if !ok {
 		plain = nil
-		if without, ok = held(y, plain, 0); !ok {
+		if without, ok = held(in, plain); !ok {
 			return nil
 		}
 	}
 	for _, x := range modes {
-		if x.w < lowest || x.w > highest || x.d > 1.2*x.w || x.d < -0.05*x.w || !plausible(x, len(y)) {
+		if x.w < lowest || x.w > highest || x.d > 1.2*x.w || x.d < -0.05*x.w || !plausible(x, len(in.y)) {
 			continue
 		}
-		x.d = max(x.d, 0.1/float64(len(y)))
-		if with, ok := held(y, append([]mode{x}, plain...), 0); ok {
+		x.d = max(x.d, 0.1/float64(len(in.y)))
+		if with, ok := held(in, append([]mode{x}, plain...)); ok {
 			out = append(out, tone{x, without.rss - with.rss})
 		}
 	}
