@@ -105,6 +105,12 @@ func (c *curve) ordered(in series) *curve {
 	return c
 }
 
+// harmonic says whether the second tone is the first's own: at twice its frequency, as a capacitance that changes with
+// voltage makes it.
+func (c *curve) harmonic() bool {
+	return hasSecond(c) && math.Abs(c.modes[1].w-2*c.modes[0].w) < 0.03*c.modes[1].w && c.modes[1].d > 1.3*c.modes[0].d
+}
+
 // energy of tone k, V^2 samples, to a factor.
 func (c *curve) energy(k int) float64 {
 	a := cmplx.Abs(c.amp[k])

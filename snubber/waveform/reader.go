@@ -16,10 +16,11 @@ type reader struct {
 	ring  *ring
 	e     *Edge
 
-	cov   [maxColumns][maxColumns]float64 // V^2: of the fit's coefficients
-	dof   int
-	white bool    // what the fit leaves looks like white noise
-	drift float64 // Hz: the ring's frequency in the later half of the fit less in the first; 0: none seen
+	cov    [maxColumns][maxColumns]float64 // V^2: of the fit's coefficients
+	dof    int
+	white  bool    // what the fit leaves looks like white noise
+	drift  float64 // Hz: the ring's frequency in the later half of the fit less in the first; 0: none seen
+	driftD float64 // 1/sample: d likewise, where the frequency drifts
 
 	before    int     // samples before the edge; 0: none
 	low, high float64 // V: levels before the edge and after
@@ -38,9 +39,10 @@ func (r *reader) figures(ctx context.Context) {
 	r.e.SettledV = figure(c.level+r.p.ref, math.Sqrt(r.cov[0][0]), r.dof)
 	r.drifts(ctx)
 	u := r.modeU(0)
+	u.d = math.Hypot(u.d, r.driftD/math.Sqrt(3)) // a rectangle to either side: what it tends to may be as far off again
 	hz := main.w / (2 * math.Pi * r.Interval)
 	r.e.Ringing = true
-	r.e.RingHz = figure(hz, math.Hypot(u.w/(2*math.Pi*r.Interval), r.drift/math.Sqrt(12)), r.dof)
+	r.e.RingHz = figure(hz, math.Hypot(u.w/(2*math.Pi*r.Interval), r.drift/math.Sqrt(3)), r.dof)
 	r.e.DecayS = decay(main.d, u.d, r.Interval, r.dof)
 	if r.e.DecayS != nil {
 		r.e.DampingRatio = damping(main, u, r.dof)
@@ -52,7 +54,7 @@ func (r *reader) figures(ctx context.Context) {
 		r.levels()
 		return
 	}
-	if hasSecond(c) {
+	if hasSecond(c) && !c.harmonic() {
 		v := r.modeU(1)
 		f := figure(c.modes[1].w/(2*math.Pi*r.Interval), v.w/(2*math.Pi*r.Interval), r.dof)
 		tau := decay(c.modes[1].d, v.d, r.Interval, r.dof)
@@ -162,7 +164,7 @@ func (r *reader) valueU(t float64) float64 {
 func (r *reader) drifts(ctx context.Context) {
 	c := r.ring.curve
 	main := c.modes[0]
-	if main.d <= 0 || len(c.modes) > 1 {
+	if main.d <= 0 || len(c.modes) > 1 && !(len(c.modes) == 2 && c.harmonic()) {
 		return
 	}
 	half := int(max(1/main.d, 2*main.period()))
@@ -180,12 +182,12 @@ func (r *reader) drifts(ctx context.Context) {
 	}
 	noise := math.Sqrt(r.cov[0][0] / c.sol.inverse()[0][0])
 	d := later.w - first.w
-	if u := noise * math.Hypot(first.u, later.u); math.Abs(d) > 4*u && math.Abs(d) > 2e-3*main.w && noise*later.u < 0.01*main.w {
-		r.drift = d / (2 * math.Pi * r.Interval)
+	if u := noise * math.Hypot(first.u, later.u); math.Abs(d) > 4*u && math.Abs(d) > 2e-4*main.w && noise*later.u < 0.01*main.w {
+		r.drift, r.driftD = d/(2*math.Pi*r.Interval), later.d-first.d
 	}
 }
 
-type part struct{ w, u float64 }
+type part struct{ d, w, u float64 }
 
 // inPart fits a stretch for its own frequency.
 func inPart(ctx context.Context, in series, near mode) (part, bool) {
@@ -195,5 +197,5 @@ func inPart(ctx context.Context, in series, near mode) (part, bool) {
 	}
 	inverse := c.sol.inverse()
 	one := reader{ring: &ring{curve: c}, cov: inverse}
-	return part{w: c.modes[0].w, u: one.modeU(0).w}, true
+	return part{d: c.modes[0].d, w: c.modes[0].w, u: one.modeU(0).w}, true
 }

@@ -91,6 +91,9 @@ func (r *reader) warnCurve() {
 		r.say("a second tone at %s, %.0f %% of the ring's amplitude, dying in %s: often the probe's own ground lead; shorten it, or compare with the lead held differently",
 			hertz(t.Hz.Value), 100*t.AmplitudeV/r.e.AmplitudeV, seconds(t.DecayS.Value))
 	}
+	if r.ring.curve.harmonic() {
+		r.say("the ring has an overtone at twice its frequency, and so is not of one sine: the node's capacitance changes with voltage; the figures are of the later, smaller swings")
+	}
 	if r.drift != 0 {
 		way := "rises"
 		if r.drift < 0 {
