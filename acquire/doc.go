@@ -27,6 +27,16 @@
 //	[instrument.scope.reading.decay_s]
 //	query = "MEASure:DTIMe?"
 //
+//	[instrument.scope.waveform]
+//	take            = ["CAPTure", "*OPC?"]  # sent before each capture; one message may stand alone
+//	query           = "CAPTure:DATA?"
+//	format          = "int16"          # int8, uint8, int16, uint16, float32 or ascii
+//	byte_order      = "big"            # of more than one byte: big or little, the end that comes first
+//	preamble        = "CAPTure:PREamble?"
+//	preamble_fields = ["points", "-", "interval_s", "start_s", "start_sample", "volt_per_code", "zero_v"]
+//	zero_code       = "CAPTure:ZERO:CODE?"  # each may be a preamble's field, a query or a number
+//	scale           = 10               # what volts are multiplied by, as above
+//
 //	[instrument.supply]
 //	address    = "serial:///dev/ttyUSB0?baud=115200"
 //	terminator = "crlf"                # ends what is sent: lf (when left out), crlf or cr
@@ -44,6 +54,22 @@
 // A reading's name is that of a [snubber.Quantity] and carries its unit. One instrument alone may provide
 // a reading. In fit, {network} becomes bare, c, rc or rcd, {c} farads and {r} ohms (0.0E+00 where the
 // network has none).
+//
+// # Waveforms
+//
+// One instrument may give its samples. Sample i, counted from 0, and its code mean
+//
+//	t = start_s + (i - start_sample) interval_s
+//	v = (zero_v + (code - zero_code) volt_per_code) scale
+//
+// Each of these but scale is a field of the preamble, a query of its own or a number, and 0 where it stands nowhere; but
+// interval_s must stand somewhere, and volt_per_code for integers. Samples in float32 and ascii are volts: there
+// volt_per_code is left out, whatever a preamble says of it. A preamble's fields are told apart by commas or
+// semicolons; "-" is one of no use, and so are those behind the last that is named. Its points must be the number of
+// samples that come.
+//
+// Samples come in an IEEE 488.2 block with a byte count, ASCII also as a line. The instrument's timeout bounds each
+// silence in them, not the whole.
 //
 // # Uncertainty
 //
