@@ -148,14 +148,16 @@ func (v *circuitValues) poleSum() *poleSum {
 		n--
 	}
 	p.during.settled, p.after.settled = v[atE], v[atE]
-	for _, s := range roots(d[:n+1]) {
+	found, ok := polesOf(d[:n+1])
+	if !ok {
+		return p // not the poles of a circuit; whoever asked refuses what comes of it
+	}
+	for _, s := range found.s[:found.n] {
 		p.slow, p.fast = math.Min(p.slow, -real(s)*w), math.Max(p.fast, cmplx.Abs(s)*w)
 		weight := complex(2, 0) // for its conjugate
 		switch im := imag(s); {
 		case math.Abs(im) <= 1e-9:
 			weight = 1
-		case im < 0:
-			continue
 		default:
 			// The ring is the slower of two pairs in frequency: the other is the leads'.
 			if p.ringing < 0 || im*w < imag(p.s[p.ringing]) {
@@ -181,48 +183,6 @@ func (v *circuitValues) poleSum() *poleSum {
 		p.n++
 	}
 	return p
-}
-
-// roots finds the roots of the polynomial d, lowest coefficient first, of degree up to four, by the simultaneous iteration
-// of Aberth (Math. Comp. 27, 339, 1973, from memory).
-func roots(d []float64) []complex128 {
-	n := len(d) - 1
-	var store [4]complex128
-	s := store[:n]
-	bound := 0.0
-	for k := range n {
-		bound = math.Max(bound, math.Pow(math.Abs(d[k]/d[n]), 1/float64(n-k)))
-	}
-	for k := range n {
-		s[k] = cmplx.Rect(bound*(0.4+0.3*float64(k)/float64(n)), math.Pi/2+0.3+2*math.Pi*float64(k)/float64(n))
-	}
-	for range 60 {
-		moved := 0.0
-		for k := range n {
-			f, df := complex(0, 0), complex(0, 0)
-			for m := n; m >= 0; m-- {
-				df = df*s[k] + f
-				f = f*s[k] + complex(d[m], 0)
-			}
-			if f == 0 {
-				continue
-			}
-			ratio := f / df
-			sum := complex(0, 0)
-			for j := range n {
-				if j != k {
-					sum += 1 / (s[k] - s[j])
-				}
-			}
-			step := ratio / (1 - ratio*sum)
-			s[k] -= step
-			moved = math.Max(moved, cmplx.Abs(step)/cmplx.Abs(s[k]))
-		}
-		if moved < 1e-14 {
-			break
-		}
-	}
-	return s
 }
 
 func (p *poleSum) ringSigns() (hz, decay float64) {

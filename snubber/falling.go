@@ -91,18 +91,15 @@ func highest(settled, end, step float64, slope, at func(t float64) float64) (whe
 func crossing(lo, hi, a, b float64, f func(float64) float64) (t float64) {
 	side := 0
 	t = hi
+	small := 1e-8 * math.Min(a, -b)
 	for range 60 {
 		if b == a || hi-lo <= 1e-13*hi {
 			break
 		}
-		last := t
 		t = (lo*b - hi*a) / (b - a)
-		if math.Abs(t-last) <= 1e-9*hi { // at a top the voltage is off by the square of that
-			break
-		}
 		s := f(t)
 		switch {
-		case s == 0:
+		case math.Abs(s) <= small: // at a top the voltage is off by about the square of that
 			return t
 		case s > 0:
 			lo, a = t, s

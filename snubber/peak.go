@@ -160,5 +160,5 @@ func (r Response) envelope(tau float64) float64 {
 	if m.q <= 0 || !m.apart {
 		return math.Inf(1)
 	}
-	return math.Max(s.gamma, 0)*math.Exp(m.p*tau) + math.Hypot(s.alpha, s.beta/math.Sqrt(m.q))*math.Exp(-m.sigma*tau)
+	return math.Max(s.gamma, 0)*math.Exp(m.p*tau) + math.Sqrt(s.alpha*s.alpha+s.beta*s.beta/m.q)*math.Exp(-m.sigma*tau)
 }

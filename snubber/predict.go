@@ -61,7 +61,7 @@ func (v *circuitValues) slopes(peakTime float64) (d [3]circuitValues) {
 	}
 	const rel = 3e-6 // balances the third derivative's part against rounding
 	if !v.plain() {
-		return v.extendedSlopes(peakTime, rel)
+		return v.extendedSlopes(peakTime)
 	}
 	z := math.Sqrt(v[atL] / v[atC])
 	for k := atL; k <= atRs; k++ {
@@ -101,9 +101,12 @@ func (v *circuitValues) slopes(peakTime float64) (d [3]circuitValues) {
 	return d
 }
 
-// extendedSlopes is slopes where effects are in play.
-func (v *circuitValues) extendedSlopes(peakTime, rel float64) (d [3]circuitValues) {
+// extendedSlopes is slopes where effects are in play, by forward differences: each value costs one circuit more, and a step
+// of 1e-7 leaves seven digits.
+func (v *circuitValues) extendedSlopes(peakTime float64) (d [3]circuitValues) {
+	const rel = 1e-7
 	endless := math.IsInf(peakTime, 1)
+	at, _ := v.extended(!endless, peakTime)
 	for k := atL; k <= atShare; k++ {
 		h := rel * v[k]
 		if k == atR {
@@ -112,13 +115,11 @@ func (v *circuitValues) extendedSlopes(peakTime, rel float64) (d [3]circuitValue
 		if h == 0 {
 			continue
 		}
-		low, high := *v, *v
-		low[k] -= h
-		high[k] += h
-		a, _ := low.extended(!endless, peakTime)
-		b, _ := high.extended(!endless, peakTime)
+		moved := *v
+		moved[k] += h
+		b, _ := moved.extended(!endless, peakTime)
 		for q := range d {
-			d[q][k] = (b[q] - a[q]) / (2 * h)
+			d[q][k] = (b[q] - at[q]) / h
 		}
 	}
 	if endless {

@@ -90,7 +90,12 @@ func (p *Prospect) bestResistor(k Kind, c float64, rs []float64, lim Limits) (*c
 		for i, end := max(0, at-3), min(len(rs), at+4); i < end; i++ {
 			try(i)
 		}
-		rs = rs[max(0, at-2):min(len(rs), at+3)]
+		// Far from the limit the one resistor tells enough: there is nothing to choose, or all of them hold.
+		reach := 2
+		if math.Abs(low/lim.MaxPeak-1) > 0.15 {
+			reach = 0
+		}
+		rs = rs[max(0, at-reach):min(len(rs), at+reach+1)]
 	}
 	var best *candidate
 	for _, r := range rs {
