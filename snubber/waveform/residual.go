@@ -56,28 +56,24 @@ func (c *curve) residual(in series) residuals {
 
 // walk gives the residuals in stretches, y less the curve.
 func (c *curve) walk(in series, use func(t int, e []float64)) {
-	var b basis
-	b.lay(c.modes, in.room)
-	y := in.y
-	e := b.y
-	alive := gone(c.modes, len(y))
-	for t := 0; t < len(y); t += stretch {
-		n := min(stretch, len(y)-t)
-		for i, v := range y[t : t+n] {
+	in.room.lay(c.modes)
+	alive := gone(c.modes, len(in.y))
+	for t := 0; t < len(in.y); t += stretch {
+		n := min(stretch, len(in.y)-t)
+		e := in.room.y[:n]
+		for i, v := range in.y[t : t+n] {
 			e[i] = v - in.ref - c.level
 		}
 		if t < alive {
-			b.fill(c.modes, t, n)
-			at := 1
 			for k, m := range c.modes {
-				floats.AddScaled(e[:n], -real(c.amp[k]), b.col[at][:n])
+				a := c.amp[k] * m.power(float64(t))
+				floats.AddScaled(e, -real(a), in.room.table[k].re[:n])
 				if m.w != 0 {
-					floats.AddScaled(e[:n], imag(c.amp[k]), b.col[at+1][:n])
+					floats.AddScaled(e, imag(a), in.room.table[k].im[:n])
 				}
-				at += m.columns()
 			}
 		}
-		use(t, e[:n])
+		use(t, e)
 	}
 }
 
