@@ -38,7 +38,9 @@ func BenchmarkPage(b *testing.B) {
 			render func(*page.Page) error
 		}{
 			{"text", func(p *page.Page) error { return p.Text(io.Discard, page.TextOptions{}) }},
-			{"markdown", func(p *page.Page) error { return p.Markdown(io.Discard) }},
+			{"markdown", func(p *page.Page) error { return p.Markdown(io.Discard, page.MarkdownOptions{}) }},
+			{"html", func(p *page.Page) error { return p.HTML(io.Discard) }},
+			{"latex", func(p *page.Page) error { return p.LaTeX(io.Discard, page.LaTeXOptions{}) }},
 			{"csv", func(p *page.Page) error { return p.CSV(io.Discard) }},
 		} {
 			b.Run(fmt.Sprintf("%s/%d", o.name, n), func(b *testing.B) {

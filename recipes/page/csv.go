@@ -15,8 +15,8 @@ import (
 // leading apostrophe; numbers never do. Nothing is written when there is an error.
 func (p *Page) CSV(w io.Writer) error {
 	var buf bytes.Buffer
-	for _, it := range p.items {
-		records, err := it.body.csv()
+	for _, b := range p.results() {
+		records, err := b.csv()
 		if err != nil {
 			return fmt.Errorf("page %q as CSV: %w", p.title, err)
 		}
@@ -53,15 +53,15 @@ func (t *Table) csvNames() []string {
 }
 
 func (t *Table) csv() ([][]string, error) {
-	rows, err := t.check()
-	if err != nil {
+	if err := t.check(); err != nil {
 		return nil, err
 	}
-	records := make([][]string, 0, len(rows)+1)
+	records := make([][]string, 0, len(t.rows)+1)
 	records = append(records, t.csvNames())
-	for _, row := range rows {
+	for _, row := range t.rows {
 		record := make([]string, 0, len(records[0]))
-		for j, x := range row {
+		for j, v := range row.cells {
+			x, _ := t.columns[j].cell(v)
 			record = x.appendCSV(record, t.columns[j].kind)
 		}
 		records = append(records, record)

@@ -15,6 +15,9 @@ type Figure struct {
 	Remark string // one short remark, or ""
 }
 
+// keyFigures is the caption of figures where a table must have one.
+const keyFigures = "Key figures"
+
 // figureList is the figures of one Page.Figures call.
 type figureList []Figure
 

@@ -84,7 +84,7 @@ func TestGolden(t *testing.T) {
 		"trials.golden.txt": func(p *page.Page, b *bytes.Buffer) error { return p.Text(b, page.TextOptions{}) },
 		"narrow.golden.txt": func(p *page.Page, b *bytes.Buffer) error { return p.Text(b, page.TextOptions{Width: 40}) },
 		"colour.golden.txt": func(p *page.Page, b *bytes.Buffer) error { return p.Text(b, page.TextOptions{Colour: true}) },
-		"trials.golden.md":  func(p *page.Page, b *bytes.Buffer) error { return p.Markdown(b) },
+		"trials.golden.md":  func(p *page.Page, b *bytes.Buffer) error { return p.Markdown(b, page.MarkdownOptions{}) },
 		"trials.golden.csv": func(p *page.Page, b *bytes.Buffer) error { return p.CSV(b) },
 	} {
 		t.Run(name, func(t *testing.T) {

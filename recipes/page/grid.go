@@ -7,8 +7,8 @@ import (
 	"ringbook/snubber/quantity"
 )
 
-// grid is a table as strings, before any output's own escaping: what the terminal and Markdown (and later
-// HTML and LaTeX) have in common.
+// grid is a table as strings, before any output's own escaping: what the outputs
+// for people have in common.
 type grid struct {
 	title   string
 	columns []gridColumn
@@ -19,8 +19,11 @@ type grid struct {
 type gridColumn struct {
 	head     string
 	align    align
-	flexible bool // may be wrapped and cut
-	label    bool // may be cut, at a generous width
+	flexible bool   // may be wrapped and cut
+	label    bool   // may be cut, at a generous width
+	marks    bool   // holds the marks of footnotes
+	quantity bool   // holds values with their units
+	unit     string // the symbol that ends the head, or ""
 }
 
 type note struct {
@@ -36,24 +39,28 @@ const (
 	decimal // on the decimal point where the output can, else right
 )
 
-const dash = "–" // an empty cell
+const (
+	dash  = "–"        // an empty cell
+	slash = " /\u00a0" // between a quantity and its unit in a head (SI Brochure, 9th edition, 5.4.1)
+)
 
 // grid gives the table's strings.
 func (t *Table) grid() (*grid, error) {
-	rows, err := t.check()
-	if err != nil {
+	if err := t.check(); err != nil {
 		return nil, err
 	}
-	g := &grid{title: t.title, columns: make([]gridColumn, len(t.columns)), rows: make([][]string, len(rows))}
+	g := &grid{title: t.title, columns: make([]gridColumn, len(t.columns)), rows: make([][]string, len(t.rows))}
 	for i := range g.rows {
 		g.rows[i] = make([]string, len(t.columns), len(t.columns)+1)
 	}
+	cells := make([]cell, len(t.rows))
 	for j, c := range t.columns {
-		gc, format := c.layout(rows, j)
+		t.column(j, cells)
+		gc, format := c.layout(cells)
 		g.columns[j] = gc
-		for i, row := range rows {
-			if row[j].full {
-				g.rows[i][j] = format(row[j])
+		for i, x := range cells {
+			if x.full {
+				g.rows[i][j] = format(x)
 			} else {
 				g.rows[i][j] = dash
 			}
@@ -63,8 +70,8 @@ func (t *Table) grid() (*grid, error) {
 	return g, nil
 }
 
-// layout gives column j's head and the format of its cells, both from what all its cells hold.
-func (c Column) layout(rows [][]cell, j int) (gridColumn, func(cell) string) {
+// layout gives a column's head and the format of its cells, both from what all its cells hold.
+func (c Column) layout(all []cell) (gridColumn, func(cell) string) {
 	gc := gridColumn{head: plain(c.head)}
 	switch c.kind {
 	case words:
@@ -74,16 +81,16 @@ func (c Column) layout(rows [][]cell, j int) (gridColumn, func(cell) string) {
 		gc.label = true
 		return gc, func(x cell) string { return x.text }
 	case instant:
-		suffix, format := instants(rows, j)
+		suffix, format := instants(all)
 		gc.head += suffix
 		return gc, func(x cell) string { return x.at.Format(format) }
 	}
 	var cells []cell
 	var values []float64
-	for _, row := range rows {
-		if row[j].full {
-			cells = append(cells, row[j])
-			values = append(values, row[j].value)
+	for _, x := range all {
+		if x.full {
+			cells = append(cells, x)
+			values = append(values, x.value)
 		}
 	}
 	gc.align = right
@@ -97,7 +104,8 @@ func (c Column) layout(rows [][]cell, j int) (gridColumn, func(cell) string) {
 		s = percent
 	}
 	if s.symbol != "" {
-		gc.head += " /\u00a0" + s.symbol
+		gc.head += slash + s.symbol
+		gc.unit = s.symbol
 	}
 	switch c.kind {
 	case interval:
@@ -116,18 +124,18 @@ func (c Column) layout(rows [][]cell, j int) (gridColumn, func(cell) string) {
 	return gc, func(x cell) string { return format(x.value) }
 }
 
-// instants gives what to add to the head of the time column j and the format of its cells: the zone stands
+// instants gives what to add to the head of a column of times and the format of its cells: the zone stands
 // in the head when all share it, else in every cell. Seconds are shown when one cell has them.
-func instants(rows [][]cell, j int) (suffix, format string) {
+func instants(cells []cell) (suffix, format string) {
 	const date, zone = "2006-01-02 15:04", "Z07:00"
 	format = date
 	offsets := map[string]bool{}
-	for _, row := range rows {
-		if !row[j].full {
+	for _, x := range cells {
+		if !x.full {
 			continue
 		}
-		offsets[row[j].at.Format(zone)] = true
-		if row[j].at.Second() != 0 {
+		offsets[x.at.Format(zone)] = true
+		if x.at.Second() != 0 {
 			format = date + ":05"
 		}
 	}
@@ -159,7 +167,7 @@ func (t *Table) addNotes(g *grid) {
 		}
 		g.rows[i] = append(g.rows[i], strings.Join(marks, " "))
 	}
-	g.columns = append(g.columns, gridColumn{})
+	g.columns = append(g.columns, gridColumn{marks: true})
 	if len(letters) == 0 {
 		g.drop(len(g.columns) - 1)
 	}

@@ -93,7 +93,7 @@ func checkClean(t *testing.T, in, out string) {
 func TestHostileTextInMarkdown(t *testing.T) {
 	for in, want := range hostile {
 		var b bytes.Buffer
-		if err := pageWith(in).Markdown(&b); err != nil {
+		if err := pageWith(in).Markdown(&b, page.MarkdownOptions{}); err != nil {
 			t.Fatal(err)
 		}
 		checkClean(t, in, b.String())
@@ -166,7 +166,7 @@ func TestAnyTextSurvivesMarkdown(t *testing.T) {
 		s := rapid.StringOfN(rapid.RuneFrom([]rune("ab1 .)(|\\`*_[]<>&;:/@!#~$+-=\"'{}^wé–")), 1, 24, -1).
 			Filter(func(s string) bool { return strings.TrimSpace(s) == s && s != "" }).Draw(t, "s")
 		var b bytes.Buffer
-		if err := pageWith(s).Markdown(&b); err != nil {
+		if err := pageWith(s).Markdown(&b, page.MarkdownOptions{}); err != nil {
 			t.Fatal(err)
 		}
 		checkMarkdown(t, b.Bytes(), s, s)
@@ -232,7 +232,7 @@ func TestLongText(t *testing.T) {
 	tb.Row(strings.Repeat("x", 10000), long)
 	p.Table(tb)
 	p.Figures(page.Figure{Name: strings.Repeat("y", 10000), CSV: "y", Value: strings.Repeat("z", 10000)})
-	for _, err := range []error{p.Text(&term, page.TextOptions{}), p.Markdown(&md), p.CSV(&sheet)} {
+	for _, err := range []error{p.Text(&term, page.TextOptions{}), p.Markdown(&md, page.MarkdownOptions{}), p.CSV(&sheet)} {
 		if err != nil {
 			t.Fatal(err)
 		}

@@ -3,6 +3,7 @@ package page
 import (
 	"fmt"
 	"strings"
+	"unicode/utf8"
 
 	"github.com/yuin/goldmark/ast"
 	"github.com/yuin/goldmark/parser"
@@ -24,6 +25,7 @@ const (
 type span struct {
 	text  string
 	style style
+	data  bool // came as an argument
 }
 
 // Arguments stand in the format as one private-use rune each (plane 15, so no keyboard and no instrument
@@ -59,19 +61,24 @@ func inline(format string, args []any) []span {
 	}
 	src := []byte(strings.TrimSpace(plain(fmt.Sprintf(format, wrapped...))))
 
-	put := func(s string) string {
-		var b strings.Builder
-		for _, r := range s {
+	var spans []span
+	add := func(s string, st style, isData bool) {
+		if s != "" {
+			spans = append(spans, span{s, st, isData})
+		}
+	}
+	put := func(s string, st style) {
+		from := 0
+		for at, r := range s {
 			if i := int(r - firstMark); r >= firstMark && i < len(data) {
-				b.WriteString(data[i])
-			} else {
-				b.WriteRune(r)
+				add(s[from:at], st, false)
+				add(data[i], st, true)
+				from = at + utf8.RuneLen(r)
 			}
 		}
-		return b.String()
+		add(s[from:], st, false)
 	}
 
-	var spans []span
 	var walk func(ast.Node, style)
 	walk = func(n ast.Node, st style) {
 		for c := n.FirstChild(); c != nil; c = c.NextSibling() {
@@ -81,7 +88,7 @@ func inline(format string, args []any) []span {
 				if st&code == 0 {
 					b = util.UnescapePunctuations(b)
 				}
-				spans = append(spans, span{put(string(b)), st})
+				put(string(b), st)
 			case *ast.Emphasis:
 				if c.Level == 2 {
 					walk(c, st|strong)
@@ -113,6 +120,19 @@ func (a argument) Format(s fmt.State, verb rune) {
 	}
 	*a.data = append(*a.data, plain(fmt.Sprintf(fmt.FormatString(s, verb), a.value)))
 	_, _ = fmt.Fprint(s, string(mark)) // a fmt.State cannot fail
+}
+
+// merge joins neighbours of one style, for the outputs in which what stands beside a character matters.
+func merge(spans []span) []span {
+	var out []span
+	for _, s := range spans {
+		if n := len(out); n > 0 && out[n-1].style == s.style {
+			out[n-1].text += s.text
+			continue
+		}
+		out = append(out, s)
+	}
+	return out
 }
 
 // flat is the text of the spans without their styles.

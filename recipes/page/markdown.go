@@ -9,15 +9,37 @@ import (
 	"github.com/jedib0t/go-pretty/v6/text"
 )
 
-// Markdown writes the page as CommonMark with GitHub's tables. Nothing is written when there is an error.
-func (p *Page) Markdown(w io.Writer) error {
-	var b strings.Builder
+// Keep stores what a page refers to and cannot hold itself, such as a plot beside its Markdown, and gives the
+// reference to it: a relative path with slashes. Name is a proposal for the file's name, different for each.
+type Keep func(name string, content []byte) (reference string, err error)
+
+// MarkdownOptions says how Markdown is to be written.
+type MarkdownOptions struct {
+	Keep Keep // stores each plot, as SVG; nil: a plot is its text alternative
+}
+
+// markdown gathers the Markdown.
+type markdown struct {
+	strings.Builder
+	keep  Keep
+	plots int
+}
+
+// Markdown writes the page as CommonMark with GitHub's tables: a recipe's prose as it is written, its code in fenced
+// blocks. Nothing is written when there is an error.
+func (p *Page) Markdown(w io.Writer, o MarkdownOptions) error {
+	bodies, err := p.woven()
+	if err != nil {
+		return err
+	}
+	b := &markdown{keep: o.Keep}
 	b.WriteString("# " + escapeMarkdown(p.title, true) + "\n")
-	for _, it := range p.items {
+	err = p.render("Markdown", bodies, func(x body) error {
 		b.WriteByte('\n')
-		if err := it.body.markdown(&b); err != nil {
-			return fmt.Errorf("page %q as Markdown: %w", p.title, err)
-		}
+		return x.markdown(b)
+	})
+	if err != nil {
+		return err
 	}
 	if _, err := io.WriteString(w, b.String()); err != nil {
 		return fmt.Errorf("page %q as Markdown: %w", p.title, err)
@@ -25,17 +47,17 @@ func (p *Page) Markdown(w io.Writer) error {
 	return nil
 }
 
-func (s sentence) markdown(b *strings.Builder) error {
+func (s sentence) markdown(b *markdown) error {
 	b.WriteString(markdownSpans(s.spans, true) + "\n")
 	return nil
 }
 
-func (w warning) markdown(b *strings.Builder) error {
+func (w warning) markdown(b *markdown) error {
 	b.WriteString("> **Warning:** " + markdownSpans(w.spans, false) + "\n")
 	return nil
 }
 
-func (t *Table) markdown(b *strings.Builder) error {
+func (t *Table) markdown(b *markdown) error {
 	g, err := t.grid()
 	if err != nil {
 		return err
@@ -44,7 +66,7 @@ func (t *Table) markdown(b *strings.Builder) error {
 	return nil
 }
 
-func (fs figureList) markdown(b *strings.Builder) error {
+func (fs figureList) markdown(b *markdown) error {
 	g, err := fs.grid()
 	if err != nil || len(g.rows) == 0 {
 		return err
@@ -53,7 +75,7 @@ func (fs figureList) markdown(b *strings.Builder) error {
 	return nil
 }
 
-func (g *grid) markdown(b *strings.Builder) {
+func (g *grid) markdown(b *markdown) {
 	if g.title != "" {
 		b.WriteString("**" + escapeMarkdown(g.title, false) + "**\n\n")
 	}
@@ -102,7 +124,7 @@ func cellMarkdown(s string) string {
 // markdownSpans writes prose; atStart says that it begins a block.
 func markdownSpans(spans []span, atStart bool) string {
 	var b strings.Builder
-	for i, s := range spans {
+	for i, s := range merge(spans) {
 		if s.style&code != 0 {
 			b.WriteString(s.style.enclose(codeMarkdown(s.text)))
 			continue

@@ -18,7 +18,7 @@ import (
 func render(t *testing.T, p *page.Page) (text, markdown, sheet string, err error) {
 	t.Helper()
 	var a, b, c bytes.Buffer
-	err = errors.Join(p.Text(&a, page.TextOptions{}), p.Markdown(&b), p.CSV(&c))
+	err = errors.Join(p.Text(&a, page.TextOptions{}), p.Markdown(&b, page.MarkdownOptions{}), p.CSV(&c))
 	if err != nil && a.Len()+b.Len()+c.Len() > 0 {
 		// Figures have nothing to fail in one output and not in the others.
 		t.Errorf("something was written beside the error %v", err)
@@ -249,7 +249,7 @@ func (broken) Write([]byte) (int, error) { return 0, io.ErrShortWrite }
 
 func TestWriteErrorsAreReported(t *testing.T) {
 	p := trialsPage()
-	for _, err := range []error{p.Text(broken{}, page.TextOptions{}), p.Markdown(broken{}), p.CSV(broken{})} {
+	for _, err := range []error{p.Text(broken{}, page.TextOptions{}), p.Markdown(broken{}, page.MarkdownOptions{}), p.CSV(broken{})} {
 		if !errors.Is(err, io.ErrShortWrite) || !strings.Contains(err.Error(), `page "Substitution`) {
 			t.Errorf("got %v", err)
 		}

@@ -52,40 +52,43 @@ func (t *Table) Note(format string, args ...any) {
 	t.notes = append(t.notes, inline(format, args))
 }
 
-// check gives the cells of the whole table, or the first thing that makes it no table.
-func (t *Table) check() ([][]cell, error) {
+// check gives the first thing that makes it no table.
+func (t *Table) check() error {
 	if t == nil {
-		return nil, errors.New("a nil table; make one with page.NewTable")
+		return errors.New("a nil table; make one with page.NewTable")
 	}
 	fail := func(format string, args ...any) error {
 		return fmt.Errorf("table %q"+format, append([]any{t.title}, args...)...)
 	}
 	if len(t.columns) == 0 {
-		return nil, fail(": it has no columns; give page.NewTable at least one")
+		return fail(": it has no columns; give page.NewTable at least one")
 	}
 	names := t.csvNames()
 	for i, n := range names {
 		if n == "" || slices.Contains(names[:i], n) {
-			return nil, fail(": CSV column name %q is empty or used twice; give every column its own", n)
+			return fail(": CSV column name %q is empty or used twice; give every column its own", n)
 		}
 	}
-	all := make([][]cell, len(t.rows))
-	flat := make([]cell, len(t.rows)*len(t.columns))
 	for i, r := range t.rows {
 		if len(r.cells) != len(t.columns) {
-			return nil, fail(", row %d: %d cells for %d columns; give every column a cell, nil where there is nothing",
+			return fail(", row %d: %d cells for %d columns; give every column a cell, nil where there is nothing",
 				i+1, len(r.cells), len(t.columns))
 		}
-		all[i], flat = flat[:len(t.columns):len(t.columns)], flat[len(t.columns):]
 		for j, v := range r.cells {
-			c, err := t.columns[j].cell(v)
-			if err != nil {
-				return nil, fail(", row %d, %w", i+1, err)
+			if _, err := t.columns[j].cell(v); err != nil {
+				return fail(", row %d, %w", i+1, err)
 			}
-			all[i][j] = c
 		}
 	}
-	return all, nil
+	return nil
+}
+
+// column puts the cells of column j of a table that check passes into cells. A table of 100,000 rows is never held as
+// cells whole.
+func (t *Table) column(j int, cells []cell) {
+	for i, r := range t.rows {
+		cells[i], _ = t.columns[j].cell(r.cells[j])
+	}
 }
 
 // letter is the i-th footnote mark: lower-case letters, as ISO/IEC Directives, Part 2, has for tables.

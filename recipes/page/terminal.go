@@ -11,6 +11,8 @@ import (
 type TextOptions struct {
 	Width  int  // columns of the terminal; 0: 80. Below 40 is taken as 40.
 	Colour bool // bold heads and yellow warnings, by ECMA-48 sequences; false: plain text
+	Prose  bool // also what the recipe says around its results; false: the results alone
+	Code   bool // also the recipe's code; it implies Prose
 }
 
 // Text writes the page as UTF-8 text for a terminal or a text file. Prose is wrapped to the width. Of a table
@@ -20,16 +22,26 @@ func (p *Page) Text(w io.Writer, o TextOptions) error {
 	if o.Width == 0 {
 		o.Width = 80
 	}
-	t := &terminal{width: max(o.Width, 40), colour: o.Colour}
+	t := &terminal{width: max(o.Width, 40), colour: o.Colour, code: o.Code}
+	bodies := p.results()
+	if o.Prose || o.Code {
+		var err error
+		if bodies, err = p.woven(); err != nil {
+			return err
+		}
+	}
 	for _, l := range wrap(p.title, t.width) {
 		t.line(t.strong(l))
 	}
 	t.line(strings.Repeat("═", min(width(p.title), t.width)))
-	for _, it := range p.items {
-		t.line("")
-		if err := it.body.text(t); err != nil {
-			return fmt.Errorf("page %q as text: %w", p.title, err)
+	err := p.render("text", bodies, func(b body) error {
+		if _, ok := b.(*listing); !ok || t.code {
+			t.line("")
 		}
+		return b.text(t)
+	})
+	if err != nil {
+		return err
 	}
 	if _, err := w.Write(t.buf.Bytes()); err != nil {
 		return fmt.Errorf("page %q as text: %w", p.title, err)
@@ -42,6 +54,7 @@ type terminal struct {
 	buf    bytes.Buffer
 	width  int
 	colour bool
+	code   bool
 }
 
 // line writes one line. No-break spaces have done their work by now and become spaces, which can be searched for.
