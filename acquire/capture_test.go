@@ -198,6 +198,23 @@ func TestCaptureFails(t *testing.T) {
 	}
 }
 
+// Voltages and times beyond all numbers.
+func TestCaptureBeyond(t *testing.T) {
+	for format, data := range map[acquire.Format]string{acquire.Uint8: "#14\x00bcd", acquire.ASCII: "0,2,3,4", acquire.Float32: "#216\x00\x00\x00\x00" + strings.Repeat("\x41\xf0\x00\x00", 3)} {
+		for key, huge := range map[string]float64{"volt_per_code": 1e308, "start_sample": 1e308, "zero_v": 1e308} {
+			rig := wave(acquiretest.Serve(t, waveScope(4, data).Answer), format, map[acquire.Format]acquire.ByteOrder{acquire.Float32: acquire.Big}[format])
+			w := rig.Instruments[0].Waveform
+			w.PreambleFields = []string{"points"}
+			w.Scaling = map[string]acquire.Scaler{"interval_s": {Value: 1e9}, "volt_per_code": {Value: 1}}
+			w.Scaling[key] = acquire.Scaler{Value: huge}
+			got, err := openStation(t, rig).Capture(context.Background(), 1)
+			if got != nil || err == nil || !strings.Contains(err.Error(), ": check the scaling in the rig file") {
+				t.Errorf("%s with %s = %g: %+v, %v", format, key, huge, got, err)
+			}
+		}
+	}
+}
+
 func TestCaptureRefuses(t *testing.T) {
 	ctx := context.Background()
 	dev := scope()

@@ -49,7 +49,10 @@ func (d *decoder) decode(body io.Reader, size int64) error {
 	if err := d.checkPoints(int(n)); err != nil {
 		return err
 	}
-	d.volts = make([]float64, 0, min(n, 1<<20)) // what the count says beyond is believed as it comes
+	if d.format.codes() && (beyond(d.volt(math.MinInt16)) || beyond(d.volt(math.MaxUint16))) {
+		return errBeyond
+	}
+	d.volts = make([]float64, 0, min(n, 1<<24)) // what the count says beyond is believed as it comes
 	d.tabulate()
 	buf := make([]byte, min(size, 64<<10))
 	for left := size; left > 0; {
@@ -100,7 +103,9 @@ func (d *decoder) append(piece []byte) error {
 			if !(math.Abs(v) < noSample) {
 				return unfit("check byte_order in the rig file, and whether the trace has gaps or leaves the screen", "sample %d is %g", first+i+1, v)
 			}
-			out[i] = d.volt(v)
+			if out[i] = d.volt(v); beyond(out[i]) {
+				return errBeyond
+			}
 		}
 	}
 	return nil
@@ -156,7 +161,10 @@ func (d *decoder) text(body io.Reader) error {
 		case len(d.volts) == mostSamples:
 			return errTooMany
 		}
-		d.volts = append(d.volts, d.volt(v))
+		if v = d.volt(v); beyond(v) {
+			return errBeyond
+		}
+		d.volts = append(d.volts, v)
 	}
 	switch err := in.Err(); {
 	case errors.Is(err, bufio.ErrTooLong):
@@ -180,8 +188,12 @@ func (d *decoder) checkPoints(n int) error {
 
 var (
 	errEmpty   = unfit("have it capture first: give take in the rig file, and check its trigger", "there are no samples in it")
+	errBeyond  = unfit("check the scaling in the rig file", "its samples come out beyond all numbers")
 	errTooMany = unfit("have the instrument send fewer points", "more than %d samples", mostSamples)
 )
+
+// beyond says whether a voltage is none.
+func beyond(v float64) bool { return !(math.Abs(v) <= math.MaxFloat64) }
 
 // clip quotes the beginning of a text.
 func clip(s string) string {

@@ -193,6 +193,20 @@ func TestSlowBlockAndStalledOne(t *testing.T) {
 	if took := time.Since(begun); !errors.Is(err, context.Canceled) || took > 250*time.Millisecond {
 		t.Errorf("cancelled: %v after %s", err, took)
 	}
+	// The context ends while nothing is being read: the next read must not wait again.
+	cancelled, cancel = context.WithCancel(ctx)
+	conn = dial(t, scpi.Options{Timeout: 10 * time.Second}, slow(1, time.Second))
+	err = conn.QueryBlockTo(cancelled, func(body io.Reader, _ int64) error {
+		io.ReadFull(body, make([]byte, 10))
+		cancel()
+		time.Sleep(20 * time.Millisecond)
+		begun = time.Now()
+		_, err := io.Copy(io.Discard, body)
+		return err
+	}, "READ?")
+	if took := time.Since(begun); !errors.Is(err, context.Canceled) || took > 250*time.Millisecond {
+		t.Errorf("cancelled between two reads: %v after %s", err, took)
+	}
 	line := dial(t, scpi.Options{Timeout: timeout}, func(rw net.Conn, in *bufio.Scanner) {
 		in.Scan()
 		for range 10 {
