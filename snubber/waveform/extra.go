@@ -11,15 +11,32 @@ import (
 // addModes looks in what the curve leaves for a second tone and for a level still settling, and keeps what explains more
 // than noise would, once in ten thousand records, among all frequencies looked at.
 func (c coarse) addModes(ctx context.Context, at *curve, others []tone) *curve {
-	noise := c.noise(at)
+	if !hasSecond(at) {
+		at = c.addTone(ctx, at, others, c.noise(at))
+	}
 	if !hasPlain(at) {
-		at = c.addPlain(ctx, at, noise)
+		at = c.addPlain(ctx, at, c.noise(at))
 	}
 	if !hasSecond(at) {
-		at = c.addTone(ctx, at, others, noise)
-		if !hasPlain(at) {
-			at = c.addPlain(ctx, at, c.noise(at))
-		}
+		at = c.addTone(ctx, at, others, c.noise(at))
+	}
+	return c.dropPlain(ctx, at)
+}
+
+// dropPlain takes a plain exponential off again that is not worth its two numbers beside what else was found, or that is no more
+// than a slope or a sample.
+func (c coarse) dropPlain(ctx context.Context, at *curve) *curve {
+	if !hasPlain(at) {
+		return at
+	}
+	last := len(at.modes) - 1
+	less, ok := refine(ctx, c.series, at.modes[:last])
+	if !ok || !isRing(less.modes[0]) {
+		return at
+	}
+	noise, g := c.noise(at), at.modes[last].d
+	if g < 0.2/float64(len(c.y)) || g > 3 || less.rss-at.rss < noise*noise*worth(10, 2) {
+		return less
 	}
 	return at
 }
@@ -65,17 +82,15 @@ func (c coarse) addPlain(ctx context.Context, at *curve, noise float64) *curve {
 
 // addTone tries a second tone where the spectrum of what is left stands highest.
 func (c coarse) addTone(ctx context.Context, at *curve, others []tone, noise float64) *curve {
-	var starts []mode
-	if m, ok := c.leftTone(at, noise); ok {
-		starts = append(starts, m)
+	line, ok := c.leftTone(at, noise)
+	if !ok {
+		return at
 	}
+	starts := []mode{line}
 	for _, t := range others {
 		if w := t.w * float64(c.m); math.Abs(w-at.modes[0].w) > 0.05*at.modes[0].w && w < 2.5 && len(starts) < 3 {
 			starts = append(starts, mode{t.d * float64(c.m), w})
 		}
-	}
-	if len(starts) == 0 {
-		return at
 	}
 	var best *curve
 	for _, s := range starts {

@@ -18,14 +18,13 @@ func (p prefix) finish(ctx context.Context, c coarse, at *curve, least, to int, 
 	r := &ring{start: c.first, end: p.lasts(c, at, to, noise), noise: noise, misfit: misfit}
 	v := p.samples(r.start, r.end)
 	full, ok := refine(ctx, v, modes)
+	if k := len(modes) - 1; !ok && modes[k].w == 0 {
+		full, ok = refine(ctx, v, modes[:k])
+	}
 	if !ok || !isRing(full.modes[0]) {
 		return nil
 	}
-	if k := len(full.modes) - 1; hasPlain(full) && full.modes[k].d < 0.2/float64(len(v.y)) { // a slope without an end
-		if full, ok = refine(ctx, v, full.modes[:k]); !ok || !isRing(full.modes[0]) {
-			return nil
-		}
-	}
+	full = p.coarse(r.start, r.end, 1, step).dropPlain(ctx, full)
 	r.curve = full
 	if !misfit {
 		p.joins(ctx, r, least, step)
