@@ -200,8 +200,8 @@ func TestCaptureFails(t *testing.T) {
 
 // Voltages and times beyond all numbers.
 func TestCaptureBeyond(t *testing.T) {
-	for format, data := range map[acquire.Format]string{acquire.Uint8: "#14\x00bcd", acquire.ASCII: "0,2,3,4", acquire.Float32: "#216\x00\x00\x00\x00" + strings.Repeat("\x41\xf0\x00\x00", 3)} {
-		for key, huge := range map[string]float64{"volt_per_code": 1e308, "start_sample": 1e308, "zero_v": 1e308} {
+	for format, data := range map[acquire.Format]string{acquire.Uint8: "#14\x00bcd", acquire.ASCII: "0,98,3,4", acquire.Float32: "#216\x00\x00\x00\x00" + strings.Repeat("\x42\xc4\x00\x00", 3)} {
+		for key, huge := range map[string]float64{"volt_per_code": 1e306, "start_sample": 1e308, "zero_v": 1e308} {
 			rig := wave(acquiretest.Serve(t, waveScope(4, data).Answer), format, map[acquire.Format]acquire.ByteOrder{acquire.Float32: acquire.Big}[format])
 			w := rig.Instruments[0].Waveform
 			w.PreambleFields = []string{"points"}
