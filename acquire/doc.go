@@ -1,6 +1,6 @@
 // Package acquire turns instruments into readings: a rig file says which instruments there are and what
 // to ask each of them, a [Station] asks, repeats, and gives each quantity as a mean with its standard
-// uncertainty.
+// uncertainty, or the samples of a capture as a waveform.
 //
 // It is not a logbook and not a driver: it stores nothing, and knows of an instrument only what the rig
 // file says. The messages are those of package scpi, the links those of package wire.
