@@ -140,6 +140,10 @@ func (p prefix) strongestRing(ctx context.Context, v []float64, all []onset, ste
 		}
 		first := o
 		if got != nil {
+			if period := got.curve.modes[0].period(); float64(got.start-o.at) > 2*period { // the ring is of a later, smaller edge
+				edges = append(edges, o)
+				first = onset{at: got.start, scale: max(1, int(period/8)), size: got.amplitude()}
+			}
 			for len(edges) > 0 && edges[len(edges)-1].at+edges[len(edges)-1].scale > got.start {
 				first, edges = edges[len(edges)-1], edges[:len(edges)-1]
 				if found != nil && at == first {

@@ -9,29 +9,32 @@ import (
 )
 
 // quietShapes are records in which nothing rings; x runs from 0 to 1 over the record, the edge is at e.
-var quietShapes = map[string]func(x, e, width float64) float64{
-	"noise": func(x, e, width float64) float64 { return 0 },
-	"step": func(x, e, width float64) float64 {
+var quietShapes = []struct {
+	name string
+	at   func(x, e, width float64) float64
+}{
+	{"noise", func(x, e, width float64) float64 { return 0 }},
+	{"step", func(x, e, width float64) float64 {
 		if x < e {
 			return 0
 		}
 		return 1
-	},
-	"fall": func(x, e, width float64) float64 {
+	}},
+	{"fall", func(x, e, width float64) float64 {
 		if x < e {
 			return 1
 		}
 		return -0.2
-	},
-	"ramp":        func(x, e, width float64) float64 { return min(1, max(0, (x-e)/width)) },
-	"bell":        func(x, e, width float64) float64 { return math.Erf((x - e) / width) },
-	"exponential": func(x, e, width float64) float64 { return 1 - math.Exp(-max(0, x-e)/width) },
-	"two-pole": func(x, e, width float64) float64 {
+	}},
+	{"ramp", func(x, e, width float64) float64 { return min(1, max(0, (x-e)/width)) }},
+	{"bell", func(x, e, width float64) float64 { return math.Erf((x - e) / width) }},
+	{"exponential", func(x, e, width float64) float64 { return 1 - math.Exp(-max(0, x-e)/width) }},
+	{"two-pole", func(x, e, width float64) float64 {
 		y := max(0, x-e) / width
 		return 1 - (1+y)*math.Exp(-y)
-	},
-	"decay": func(x, e, width float64) float64 { return math.Exp(-x / width / 3) },
-	"slope": func(x, e, width float64) float64 { return x },
+	}},
+	{"decay", func(x, e, width float64) float64 { return math.Exp(-x / width / 3) }},
+	{"slope", func(x, e, width float64) float64 { return x }},
 }
 
 // quiet makes such a record: 300 to 3000 samples, noise of 1 V/2000 to 1 V/10.
@@ -56,12 +59,12 @@ func TestQuietDoesNotRing(t *testing.T) {
 	rng := rand.New(rand.NewPCG(8, 8))
 	alarms, n := 0, 0
 	for range 100 {
-		for name, shape := range quietShapes {
+		for _, shape := range quietShapes {
 			for _, bits := range []int{0, 8} {
 				n++
-				if e := readEdge(t, quiet(rng, shape, bits)); e.Ringing {
+				if e := readEdge(t, quiet(rng, shape.at, bits)); e.Ringing {
 					alarms++
-					t.Logf("%s, %d bits: said to ring at %g Hz, %g dB", name, bits, e.RingHz.Value, e.SNRdB)
+					t.Logf("%s, %d bits: said to ring at %g Hz, %g dB", shape.name, bits, e.RingHz.Value, e.SNRdB)
 				}
 			}
 		}
@@ -74,18 +77,18 @@ func TestQuietDoesNotRing(t *testing.T) {
 
 // Without noise at all, and in records of special lengths.
 func TestQuietWithoutNoise(t *testing.T) {
-	for name, shape := range quietShapes {
+	for _, shape := range quietShapes {
 		for _, n := range []int{1, 2, 3, 15, 16, 17, 100, 1000} {
 			v := make([]float64, n)
 			for i := range v {
-				v[i] = 5 * shape(float64(i)/float64(n), 0.4, 0.02)
+				v[i] = 5 * shape.at(float64(i)/float64(n), 0.4, 0.02)
 			}
 			e := readEdge(t, waveform.Record{Interval: 1e-9, Volts: v})
 			if e.Ringing || e.RingHz != nil || e.DecayS != nil || e.DampingRatio != nil {
-				t.Errorf("%s of %d samples: said to ring at %v", name, n, *e.RingHz)
+				t.Errorf("%s of %d samples: said to ring at %v", shape.name, n, *e.RingHz)
 			}
 			if len(e.Warnings) == 0 || e.PeakV == nil {
-				t.Errorf("%s of %d samples: no warning, or no peak", name, n)
+				t.Errorf("%s of %d samples: no warning, or no peak", shape.name, n)
 			}
 		}
 	}

@@ -140,9 +140,14 @@ func (c coarse) stands(next, at *curve, noise float64) bool {
 	if at.rss-next.rss < noise*noise*worth(len(c.y), 4) {
 		return false
 	}
-	return isRing(one) && isRing(two) && two.d > 0 && one.d > 0 && two.d < two.w && two.w*float64(len(c.y)) > 2*math.Pi &&
-		math.Abs(one.w-two.w) > 0.8*(one.d+two.d) && math.Abs(one.w-two.w) > 0.03*one.w && two.w < 0.9*math.Pi &&
-		cmplx.Abs(next.amp[0])+cmplx.Abs(next.amp[1]) < 5*c.swing()
+	return twoTones(one, two, len(c.y)) && cmplx.Abs(next.amp[0])+cmplx.Abs(next.amp[1]) < 5*c.swing()
+}
+
+// twoTones says whether two modes are two: each swings and dies away, the second within the samples, and they are further
+// apart than they are wide.
+func twoTones(one, two mode, n int) bool {
+	return isRing(one) && isRing(two) && one.d > 0 && two.d > 0 && two.d < two.w && two.w*float64(n) > 2*math.Pi &&
+		math.Abs(one.w-two.w) > 0.8*(one.d+two.d) && math.Abs(one.w-two.w) > 0.03*one.w && two.w < 0.9*math.Pi
 }
 
 // swing is half of the highest less the lowest, V.

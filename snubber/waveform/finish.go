@@ -21,6 +21,9 @@ func (p prefix) finish(ctx context.Context, c coarse, at *curve, least, to int, 
 	if k := len(modes) - 1; !ok && modes[k].w == 0 {
 		full, ok = refine(ctx, v, modes[:k])
 	}
+	if ok && hasSecond(full) && !twoTones(full.modes[0], full.modes[1], len(v.y)) { // it has turned into the first's twin
+		full, ok = refine(ctx, v, append([]mode{modes[0]}, full.modes[2:]...))
+	}
 	if !ok || !isRing(full.modes[0]) {
 		return nil
 	}

@@ -106,7 +106,7 @@ func (p prefix) rising(top onset) []onset {
 		if q := j - short; q >= 0 {
 			before.push(q, size(q))
 		}
-		if here >= left && here > right && here >= 0.35*top.size && here > 1.4*before.top() {
+		if here >= left && here > right && here >= 0.2*top.size && here > 1.4*before.top() {
 			out = append(out, onset{at: k + j*stride, scale: k, size: here})
 		}
 	}
