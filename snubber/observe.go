@@ -14,6 +14,13 @@ const (
 	unstatedDecay = 0.05
 	unstatedPeak  = 0.02
 	unstatedTol   = 0.05
+
+	// How well one loop of constant parts describes a real node, for readings that samples give to parts in ten thousand:
+	// its capacitance changes with the swing, and what of the ring is read with how fast it dies (common practice; seen on
+	// the simulated bench, whose node is half a junction).
+	modelRing  = 0.002
+	modelDecay = 0.01
+	modelPeak  = 0.003
 )
 
 // observed is one trial as the fit sees it: what was read, with its standard uncertainty, and the parts behind it. A
@@ -127,6 +134,9 @@ func observe(trials []Trial) (*observations, error) {
 			if u == 0 {
 				u = [3]float64{unstatedRing, unstatedDecay, unstatedPeak}[k] * r.Value
 				unstated[k]++
+			}
+			if r.FromWaveform {
+				u = math.Hypot(u, [3]float64{modelRing, modelDecay, modelPeak}[k]*r.Value)
 			}
 			x.value[k], x.u[k], any = r.Value, u, true
 			if n := len(r.Repeats); n > 1 {

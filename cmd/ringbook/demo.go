@@ -21,8 +21,9 @@ import (
 const (
 	demoBoard    = "tide-gate winch"
 	demoRevision = "B"
-	demoRating   = 100.0 // V
-	demoProbe    = 3.9e-12
+	demoRating   = 100.0   // V
+	demoProbe    = 3.9e-12 // F
+	demoCaptures = 4       // of the edge, averaged
 )
 
 // demoSeries is the bag of capacitors; 0 is the bare node.
@@ -138,11 +139,11 @@ func (d *demo) prove(ctx context.Context, src recipes.Source, fit *snubber.FitRe
 
 // trial fits a network on the bench, reads it and logs it.
 func (d *demo) trial(ctx context.Context, n snubber.Network) error {
-	t, _, err := d.take(ctx, d.station, snubber.Trial{Board: demoBoard, Revision: demoRevision, Session: "demonstration", Network: n, ProbeC: demoProbe})
+	t, records, _, err := d.take(ctx, d.station, snubber.Trial{Board: demoBoard, Revision: demoRevision, Session: "demonstration", Network: n, ProbeC: demoProbe}, demoCaptures)
 	if err != nil {
 		return err
 	}
-	id, err := d.lb.Add(ctx, t)
+	id, err := d.lb.AddWithWaveforms(ctx, t, records)
 	if err != nil {
 		return err
 	}

@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"math"
 	"strings"
 	"time"
 
@@ -11,27 +12,53 @@ import (
 	"ringbook/acquire/wire"
 	"ringbook/snubber"
 	"ringbook/snubber/quantity"
+	"ringbook/snubber/waveform"
 )
 
 // take fits the trial's network where the station can, reads every instrument, and gives the trial with its
-// readings.
-func (a *app) take(ctx context.Context, station *acquire.Station, t snubber.Trial) (snubber.Trial, []string, error) {
+// readings. With captures of the edge asked for, these come along, and the trial's ring, decay and peak are theirs.
+func (a *app) take(ctx context.Context, station *acquire.Station, t snubber.Trial, captures int) (snubber.Trial, []waveform.Record, []string, error) {
 	if station.CanFit() {
 		if err := station.Fit(ctx, t.Network); err != nil {
-			return t, nil, once(err)
+			return t, nil, nil, once(err)
 		}
 	}
 	t.At = time.Now()
+	var records []waveform.Record
+	var warnings []string
+	if captures > 0 {
+		var err error
+		if records, err = station.Capture(ctx, captures); err != nil {
+			return t, nil, nil, once(err)
+		}
+		if warnings, err = fromCaptures(ctx, &t, records); err != nil {
+			return t, nil, nil, err
+		}
+	}
 	result, err := station.Take(ctx, nil)
 	if err != nil {
-		return t, nil, once(err)
+		return t, nil, nil, once(err)
 	}
-	if len(result.Readings) == 0 {
-		return t, result.Warnings, fmt.Errorf("no instrument gave a reading (%s)", strings.Join(result.Warnings, "; "))
+	for _, r := range result.Readings {
+		switch own, seen := t.Reading(r.Quantity); {
+		case seen && math.Abs(own.Value-r.Value) > otherReading*own.Value:
+			warnings = append(warnings, fmt.Sprintf("%s: the waveform gives %.4g and %s's own figure is %.4g, which is left out; look at what it triggers on", r.Quantity, own.Value, r.Instrument, r.Value))
+		case seen:
+		case captures > 0 && (r.Quantity == snubber.RingHz || r.Quantity == snubber.DecayS):
+			warnings = append(warnings, fmt.Sprintf("%s: %s gives %.4g and the waveform none, so it is left out", r.Quantity, r.Instrument, r.Value))
+		default:
+			t.Readings = append(t.Readings, r)
+		}
 	}
-	t.Readings = result.Readings
-	return t, result.Warnings, nil
+	warnings = append(warnings, result.Warnings...)
+	if len(t.Readings) == 0 {
+		return t, nil, warnings, fmt.Errorf("no instrument gave a reading (%s)", strings.Join(warnings, "; "))
+	}
+	return t, records, warnings, nil
 }
+
+// otherReading is by how much of itself an instrument's own figure may differ from the waveform's before a word is said.
+const otherReading = 0.05
 
 // once leaves out what an error about a link that did not open would say twice: the address.
 func once(err error) error {

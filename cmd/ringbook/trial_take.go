@@ -13,20 +13,34 @@ import (
 func trialTake(a *app) *cobra.Command {
 	var setup setupFlags
 	var rigFile string
+	var withWaveform bool
+	captures := 1
 	cmd := &cobra.Command{
 		Use:   "take",
 		Short: "Read the instruments now and log one trial",
 		Long: `take asks every instrument of the rig for its readings, repeats them, and logs one trial with their means and
 standard uncertainties. Where an instrument of the rig fits networks by command, it fits this one first.
 
+With --waveform the samples of the edge are captured, logged with the trial, and read: ring frequency, decay and peak are
+then the waveform's, and no longer the instrument's own figures, which often are of the switching or of a noisy sample.
+
 Fit the network with the supply off and the bus discharged.`,
 		Example: `  ringbook trial take --board winch-drive --revision B --network bare --probe-c 3p9
-  ringbook trial take --board winch-drive --revision B --network c --c 470p --c-tol 5% --rig rig.toml`,
+  ringbook trial take --board winch-drive --revision B --network c --c 470p --c-tol 5% --rig rig.toml
+  ringbook trial take --board winch-drive --revision B --network bare --probe-c 3p9 --waveform --captures 8`,
 		Args: words(0, 0),
 		RunE: func(cmd *cobra.Command, args []string) (err error) {
 			t, err := setup.trial()
 			if err != nil {
 				return err
+			}
+			switch {
+			case captures < 1 || captures > mostCaptures:
+				return usagef("--captures %d: it must be 1 to %d", captures, mostCaptures)
+			case !withWaveform && cmd.Flags().Changed("captures"):
+				return usagef("--captures %d is given without --waveform: add it, or leave --captures out", captures)
+			case !withWaveform:
+				captures = 0
 			}
 			ctx := cmd.Context()
 			rig, err := acquire.LoadRig(rigFile)
@@ -47,11 +61,11 @@ Fit the network with the supply off and the bus discharged.`,
 					err = e
 				}
 			}()
-			t, warnings, err := a.take(ctx, station, t)
+			t, records, warnings, err := a.take(ctx, station, t, captures)
 			if err != nil {
 				return unlogged(err)
 			}
-			id, err := lb.Add(ctx, t)
+			id, err := lb.AddWithWaveforms(ctx, t, records)
 			if err != nil {
 				return unlogged(err)
 			}
@@ -71,7 +85,12 @@ Fit the network with the supply off and the bus discharged.`,
 	}
 	setup.add(cmd)
 	cmd.Flags().StringVar(&rigFile, "rig", "rig.toml", "`FILE` with the instruments and what to ask of them")
+	cmd.Flags().BoolVar(&withWaveform, "waveform", false, "capture the edge's samples too, log them, and read the ring from them")
+	cmd.Flags().IntVar(&captures, "captures", captures, "`NUMBER` of captures to average")
 	return cmd
 }
+
+// mostCaptures is the most captures of one trial: what is averaged away of the noise goes with the root of their number.
+const mostCaptures = 100
 
 func unlogged(err error) error { return fmt.Errorf("trial take: nothing was logged: %w", err) }
