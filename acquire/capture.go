@@ -61,6 +61,14 @@ func (s *Station) Capture(ctx context.Context, n int) ([]waveform.Record, error)
 	return records, nil
 }
 
+// CaptureAccuracy is what the rig states of the accuracy of captured volts; zero where it states none.
+func (s *Station) CaptureAccuracy() Accuracy {
+	if in := s.sampler(); in != nil {
+		return in.Waveform.Accuracy
+	}
+	return Accuracy{}
+}
+
 func (s *Station) sampler() *instrument {
 	for _, in := range s.instruments {
 		if in.Waveform != nil {

@@ -36,6 +36,7 @@
 //	preamble_fields = ["points", "-", "interval_s", "start_s", "start_sample", "volt_per_code", "zero_v"]
 //	zero_code       = "CAPTure:ZERO:CODE?"  # each may be a preamble's field, a query or a number
 //	scale           = 10               # what volts are multiplied by, as above
+//	accuracy        = { percent = 2, fixed = 0.4 }  # of volts, as above
 //
 //	[instrument.supply]
 //	address    = "serial:///dev/ttyUSB0?baud=115200"

@@ -51,6 +51,17 @@ type Accuracy struct {
 // Bound is the half-width of the interval the accuracy allows round v, in v's unit.
 func (a Accuracy) Bound(v float64) float64 { return a.Percent/100*math.Abs(v) + a.Fixed }
 
+// check gives the part that cannot be, by its key in the file.
+func (a Accuracy) check() (key string, err error) {
+	if v := a.Percent; !(v >= 0) || math.IsInf(v, 0) {
+		return "accuracy.percent", fmt.Errorf("%g: it must be zero or a positive, finite number", v)
+	}
+	if v := a.Fixed; !(v >= 0) || math.IsInf(v, 0) {
+		return "accuracy.fixed", fmt.Errorf("%g: it must be zero or a positive, finite number", v)
+	}
+	return "", nil
+}
+
 // RigError is the first thing in a rig that cannot be.
 type RigError struct {
 	File string // "" for a rig that was not read from a file
@@ -176,11 +187,8 @@ func (q Query) check() (key string, err error) {
 	if math.IsNaN(q.Scale) || math.IsInf(q.Scale, 0) {
 		return "scale", fmt.Errorf("%g: it must be a finite number", q.Scale)
 	}
-	if v := q.Accuracy.Percent; !(v >= 0) || math.IsInf(v, 0) {
-		return "accuracy.percent", fmt.Errorf("%g: it must be zero or a positive, finite number", v)
-	}
-	if v := q.Accuracy.Fixed; !(v >= 0) || math.IsInf(v, 0) {
-		return "accuracy.fixed", fmt.Errorf("%g: it must be zero or a positive, finite number", v)
+	if key, err := q.Accuracy.check(); err != nil {
+		return key, err
 	}
 	if q.Repeats < 0 || q.Repeats > 1000 {
 		return "repeats", fmt.Errorf("%d: it must be 1 to 1000", q.Repeats)

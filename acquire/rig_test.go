@@ -32,7 +32,7 @@ func TestLoadRig(t *testing.T) {
 			Waveform: &acquire.Waveform{
 				Take: []string{"CAPTure", "*OPC?"}, Query: "CAPTure:DATA?", Format: acquire.Int16, ByteOrder: acquire.Big, Preamble: "CAPTure:PREamble?",
 				PreambleFields: []string{"points", "-", "interval_s", "start_s", "start_sample", "volt_per_code", "zero_v"},
-				Scaling:        map[string]acquire.Scaler{"zero_code": {Query: "CAPTure:ZERO:CODE?"}}, Scale: 10,
+				Scaling:        map[string]acquire.Scaler{"zero_code": {Query: "CAPTure:ZERO:CODE?"}}, Scale: 10, Accuracy: acquire.Accuracy{Percent: 2, Fixed: 0.4},
 			},
 		},
 		{
@@ -85,7 +85,7 @@ volt_per_code = 0.5
 `
 	with := func(old, new string) string { return strings.Replace(wave, old, new, 1) }
 	for name, c := range map[string]struct{ text, want string }{
-		"waveform key":         {wave + "points = 5\n", "line 12: instrument.scope.waveform.points: there is no such key: a waveform has take, query, format, byte_order, preamble, preamble_fields, scale, start_s, start_sample, interval_s, zero_v, zero_code, volt_per_code"},
+		"waveform key":         {wave + "points = 5\n", "line 12: instrument.scope.waveform.points: there is no such key: a waveform has take, query, format, byte_order, preamble, preamble_fields, scale, accuracy, start_s, start_sample, interval_s, zero_v, zero_code, volt_per_code"},
 		"waveform no query":    {with("query = \"CAPTure:DATA?\"\n", ""), "line 7: instrument.scope.waveform: its query is missing"},
 		"waveform query":       {with("DATA?", "DATA"), `line 8: instrument.scope.waveform.query: "CAPTure:DATA" is no query`},
 		"waveform two queries": {with("DATA?", "DATA?;*RST"), "line 8: instrument.scope.waveform.query: message"},

@@ -43,13 +43,15 @@ type instrumentFile struct {
 }
 
 type readingFile struct {
-	Query    string   `toml:"query"`
-	Scale    *float64 `toml:"scale"`
-	Repeats  *int     `toml:"repeats"`
-	Accuracy struct {
-		Percent float64 `toml:"percent"`
-		Fixed   float64 `toml:"fixed"`
-	} `toml:"accuracy"`
+	Query    string       `toml:"query"`
+	Scale    *float64     `toml:"scale"`
+	Repeats  *int         `toml:"repeats"`
+	Accuracy accuracyFile `toml:"accuracy"`
+}
+
+type accuracyFile struct {
+	Percent float64 `toml:"percent"`
+	Fixed   float64 `toml:"fixed"`
 }
 
 // ParseRig reads a rig file's text; name is for errors, which are *RigError and give the line. Unknown
@@ -139,7 +141,7 @@ func keysAt(key toml.Key) string {
 	case len(key) == 3:
 		return "an instrument has address, timeout, terminator, error_queue, setup, fit, [instrument.NAME.waveform] and [instrument.NAME.reading.QUANTITY] tables"
 	case len(key) > 3 && key[2] == "waveform":
-		return "a waveform has take, query, format, byte_order, preamble, preamble_fields, scale, " + strings.Join(scalings(), ", ")
+		return "a waveform has take, query, format, byte_order, preamble, preamble_fields, scale, accuracy, " + strings.Join(scalings(), ", ")
 	case len(key) == 5:
 		return "a reading has query, scale, accuracy and repeats"
 	}

@@ -24,6 +24,7 @@ type Waveform struct {
 	PreambleFields []string          // what each field is: "points" or a key of Scaling; "" or "-": nothing of use
 	Scaling        map[string]Scaler // by start_s, start_sample, interval_s, zero_v, zero_code, volt_per_code
 	Scale          float64           // what volts are multiplied by, as for a reading; 0: 1
+	Accuracy       Accuracy          // of volts, the instrument's stated bound; zero: not stated
 }
 
 // Scaler is a number, or the query that is answered with it.
@@ -96,6 +97,9 @@ func (w Waveform) check() (key string, err error) {
 		return "byte_order", fmt.Errorf("%s has none: take the key out", w.Format)
 	case math.IsNaN(w.Scale) || math.IsInf(w.Scale, 0):
 		return "scale", fmt.Errorf("%g: it must be a finite number", w.Scale)
+	}
+	if key, err := w.Accuracy.check(); err != nil {
+		return key, err
 	}
 	if key, err := w.checkPreamble(); err != nil {
 		return key, err

@@ -4,24 +4,25 @@ import "fmt"
 
 // waveformFile is [instrument.NAME.waveform]. What may be of two types is read as any.
 type waveformFile struct {
-	Take           any      `toml:"take"`
-	Query          string   `toml:"query"`
-	Format         string   `toml:"format"`
-	ByteOrder      string   `toml:"byte_order"`
-	Preamble       string   `toml:"preamble"`
-	PreambleFields []string `toml:"preamble_fields"`
-	StartS         any      `toml:"start_s"`
-	StartSample    any      `toml:"start_sample"`
-	IntervalS      any      `toml:"interval_s"`
-	ZeroV          any      `toml:"zero_v"`
-	ZeroCode       any      `toml:"zero_code"`
-	VoltPerCode    any      `toml:"volt_per_code"`
-	Scale          *float64 `toml:"scale"`
+	Take           any          `toml:"take"`
+	Query          string       `toml:"query"`
+	Format         string       `toml:"format"`
+	ByteOrder      string       `toml:"byte_order"`
+	Preamble       string       `toml:"preamble"`
+	PreambleFields []string     `toml:"preamble_fields"`
+	StartS         any          `toml:"start_s"`
+	StartSample    any          `toml:"start_sample"`
+	IntervalS      any          `toml:"interval_s"`
+	ZeroV          any          `toml:"zero_v"`
+	ZeroCode       any          `toml:"zero_code"`
+	VoltPerCode    any          `toml:"volt_per_code"`
+	Scale          *float64     `toml:"scale"`
+	Accuracy       accuracyFile `toml:"accuracy"`
 }
 
 // waveform makes a description of it, or says which key is wrong.
 func (f waveformFile) waveform() (w Waveform, key string, err error) {
-	w = Waveform{Query: f.Query, Format: Format(f.Format), ByteOrder: ByteOrder(f.ByteOrder), Preamble: f.Preamble, PreambleFields: f.PreambleFields}
+	w = Waveform{Query: f.Query, Format: Format(f.Format), ByteOrder: ByteOrder(f.ByteOrder), Preamble: f.Preamble, PreambleFields: f.PreambleFields, Accuracy: Accuracy(f.Accuracy)}
 	if w.Take, err = messages(f.Take); err != nil {
 		return w, "take", err
 	}

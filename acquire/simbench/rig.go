@@ -28,6 +28,7 @@ query           = "CAPTure:DATA?"
 format          = "uint8"
 preamble        = "CAPTure:PREamble?"
 preamble_fields = ["points", "start_s", "interval_s", "zero_v", "volt_per_code", "zero_code"]
+accuracy        = { percent = 0.5, fixed = 0.1 }
 
 [instrument.supply]
 address = "@supply"

@@ -34,6 +34,14 @@ func (a *app) take(ctx context.Context, station *acquire.Station, t snubber.Tria
 		if warnings, err = fromCaptures(ctx, &t, records); err != nil {
 			return t, nil, nil, err
 		}
+		for i := range t.Readings {
+			if r := &t.Readings[i]; r.Quantity == snubber.PeakV {
+				r.U = math.Hypot(r.U, station.CaptureAccuracy().Bound(r.Value)/math.Sqrt(3)) // a bound, as in GUM 4.3.7
+			}
+		}
+	}
+	if captures == 0 && len(station.Provides()) == 0 {
+		return t, nil, nil, errors.New("the rig has no readings, only a waveform: add --waveform, or a table [instrument.NAME.reading.QUANTITY] to the rig file")
 	}
 	result, err := station.Take(ctx, nil)
 	if err != nil {
