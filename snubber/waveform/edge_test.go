@@ -187,3 +187,22 @@ func TestEdgeErrors(t *testing.T) {
 		t.Error("a cancelled context gave an answer")
 	}
 }
+
+// A glitch of one sample, before the edge, in the ring or long after, does not lead astray.
+func TestGlitch(t *testing.T) {
+	for _, at := range []int{100, 340, 520, 533, 1500} {
+		for _, size := range []float64{-40, 20, 45} {
+			m := made{hz: 30e6, q: 10, to: 48, rest: true, perCycle: 40, n: 3000, before: 300, noise: 0.2}
+			r, _ := m.record(rand.New(rand.NewPCG(7, 7)))
+			r.Volts[at] += size
+			e := readEdge(t, r)
+			if !e.Ringing || e.DecayS == nil {
+				t.Errorf("glitch of %g V at sample %d: no ring: %q", size, at, e.Warnings)
+				continue
+			}
+			_, d := m.rate()
+			near(t, "ring_hz", e.RingHz.Value, m.hz, 0.004)
+			near(t, "decay_s", e.DecayS.Value, 1/d, 0.08)
+		}
+	}
+}

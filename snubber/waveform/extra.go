@@ -6,6 +6,7 @@ import (
 	"math/cmplx"
 
 	"gonum.org/v1/gonum/dsp/fourier"
+	"gonum.org/v1/gonum/floats"
 )
 
 // addModes looks in what the curve leaves for a second tone and for a level still settling, and keeps what explains more
@@ -68,7 +69,7 @@ func (c coarse) addPlain(ctx context.Context, at *curve, noise float64) *curve {
 		return at
 	}
 	next, ok := refine(ctx, c.series, append(at.modes[:len(at.modes):len(at.modes)], bestMode))
-	if !ok || at.rss-next.rss < noise*noise*worth(10, 2) || !isRing(next.modes[0]) {
+	if !ok || at.rss-next.rss < noise*noise*worth(10, 2) || !isRing(next.modes[0]) || !c.spreads(at, next, noise*noise*worth(10, 2)) {
 		return at
 	}
 	if g := next.modes[len(next.modes)-1].d; g < 0.2/n || g > 3 { // a slope without an end, or two samples
@@ -140,7 +141,32 @@ func (c coarse) stands(next, at *curve, noise float64) bool {
 	if at.rss-next.rss < noise*noise*worth(len(c.y), 4) {
 		return false
 	}
-	return twoTones(one, two, len(c.y)) && cmplx.Abs(next.amp[0])+cmplx.Abs(next.amp[1]) < 5*c.swing()
+	return twoTones(one, two, len(c.y)) && c.spreads(at, next, noise*noise*worth(len(c.y), 4)) && cmplx.Abs(next.amp[0])+cmplx.Abs(next.amp[1]) < 5*c.swing()
+}
+
+// spreads says whether next leaves less than at not only around a few samples, as a curve bent towards a glitch does: without the
+// four samples that gain most there must be enough, and a third of the whole.
+func (c coarse) spreads(at, next *curve, enough float64) bool {
+	gain := make([]float64, 0, len(c.y))
+	at.walk(c.series, func(_ int, e []float64) {
+		for _, v := range e {
+			gain = append(gain, v*v)
+		}
+	})
+	whole := 0.0
+	next.walk(c.series, func(t int, e []float64) {
+		for i, v := range e {
+			gain[t+i] -= v * v
+			whole += gain[t+i]
+		}
+	})
+	rest := whole
+	for range 4 {
+		k := floats.MaxIdx(gain)
+		rest -= max(gain[k], 0)
+		gain[k] = 0
+	}
+	return rest > enough && rest > whole/3
 }
 
 // twoTones says whether two modes are two: each swings and dies away, the second within the samples, and they are further

@@ -33,6 +33,9 @@ func (p prefix) finish(ctx context.Context, c coarse, at *curve, least, to int, 
 		p.joins(ctx, r, least, step)
 	}
 	r.curve = r.curve.ordered(p.samples(r.start, r.end))
+	if r.curve.modes[0].d*float64(r.end-r.start) < -1 { // what grows is no ring
+		return nil
+	}
 	if !p.standsOut(ctx, r, step) {
 		return nil
 	}

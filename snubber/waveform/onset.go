@@ -42,6 +42,16 @@ func (p prefix) jump(i, k int) float64 { return (p.sum[i+k] - 2*p.sum[i] + p.sum
 // samples i to j-1, to fit.
 func (p prefix) samples(i, j int) series { return series{p.v[i:j], p.ref, p.room} }
 
+// change is the size of the jump at i, V. At the shortest lengths it is at most 1.1 times that at twice the length, so that a glitch
+// of a sample or two does not pose as an edge.
+func (p prefix) change(i, k int) float64 {
+	a := math.Abs(p.jump(i, k))
+	if k <= 2 && i >= 2*k && i+2*k < len(p.sum) {
+		a = min(a, 1.1*math.Abs(p.jump(i, 2*k)))
+	}
+	return a
+}
+
 // onset is where the voltage begins to move: near sample at, within some scale samples.
 type onset struct {
 	at, scale int
@@ -60,7 +70,7 @@ func (p prefix) onsets(most int) []onset {
 	for k := 1; 2*k <= n && k <= max(1, n/4); k *= 2 {
 		top := onset{scale: k, at: k}
 		for i := k; i+k <= n; i += max(1, k/4) {
-			if a := math.Abs(p.jump(i, k)); a > top.size {
+			if a := p.change(i, k); a > top.size {
 				top.at, top.size = i, a
 			}
 		}
@@ -88,7 +98,7 @@ func (p prefix) rising(top onset) []onset {
 	n, k := len(p.sum)-1, top.scale
 	stride := max(1, k/4)
 	last := (n - 2*k) / stride
-	size := func(j int) float64 { return math.Abs(p.jump(k+j*stride, k)) }
+	size := func(j int) float64 { return p.change(k+j*stride, k) }
 	const back, near = 40, 6 // strides: ten and one and a half times a long scale
 	long, short := back, near
 	if k < 4 {

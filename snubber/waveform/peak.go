@@ -12,7 +12,6 @@ func (r *reader) peak() {
 			top = i
 		}
 	}
-	r.top = top
 	r.e.PeakSampleV = v[top]
 	value, u, by := r.peakByRing()
 	local, localU, ok := r.peakLocally(top)
