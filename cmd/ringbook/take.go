@@ -58,7 +58,13 @@ func (a *app) take(ctx context.Context, station *acquire.Station, t snubber.Tria
 			t.Readings = append(t.Readings, r)
 		}
 	}
-	warnings = append(warnings, result.Warnings...)
+	for _, w := range result.Warnings {
+		quantity, _, _ := strings.Cut(w, " ")
+		if r, ok := t.Reading(snubber.Quantity(strings.TrimSuffix(quantity, ":"))); ok && r.FromWaveform {
+			continue // of a figure that the waveform has
+		}
+		warnings = append(warnings, w)
+	}
 	if len(t.Readings) == 0 {
 		return t, nil, warnings, fmt.Errorf("no instrument gave a reading (%s)", strings.Join(warnings, "; "))
 	}
