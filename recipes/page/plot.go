@@ -61,7 +61,6 @@ type layer interface {
 type Series struct {
 	name  string
 	looks look
-	fixed bool // a style was chosen
 	err   error
 }
 
@@ -71,7 +70,7 @@ func (s *Series) series() *Series { return s }
 // a series that stands for the same thing in two panels. There are seven; n beyond begins anew.
 func (s *Series) Style(n int) *Series {
 	n = ((n % styles) + styles) % styles
-	s.looks, s.fixed = look{n, n, n}, true
+	s.looks = look{n, n, n}
 	return s
 }
 

@@ -7,6 +7,7 @@ import (
 	"math/rand/v2"
 	"os"
 	"path/filepath"
+	"strings"
 	"testing"
 
 	"ringbook/recipes/page"
@@ -161,7 +162,24 @@ func gallery() map[string]*page.Plot {
 		all.Line(fmt.Sprintf("line %d", i), xs, ys).Style(i)
 		all.Points(fmt.Sprintf("points %d", i), xs, ys).Style(i)
 	}
+	crowded := page.NewPlot("Crowded", page.CategoryAxis("session at the bench, with a long name that goes on and on and on and on and on and on and on and on", "session",
+		strings.Split(strings.Repeat("first sitting,second,a third one with a long name,", 12)+"last", ",")...),
+		page.LogAxis("a long name for the node's quality factor, which does not fit beside so low a figure", quantity.Ratio, "q"))
+	for k := range 3 {
+		var v, low, high []float64
+		for i := range 37 {
+			v = append(v, math.Pow(10, 3*rng.Float64()))
+			low, high = append(low, v[i]*(rng.Float64()-0.2)), append(high, v[i]*(1+rng.Float64()))
+		}
+		crowded.Points(fmt.Sprintf("sample %d of a board with a long name, measured with the long probe", k), nil, v).Interval95(low, high)
+	}
+	crowded.Across("a limit with a long name", 300)
+	one := page.NewPlot("One point", page.LinearAxis("added capacitance", quantity.Capacitance, "added_f"),
+		page.LogAxis("ring frequency", quantity.Frequency, "ring_hz"))
+	one.Points("trial", []float64{470e-12}, []float64{30.1e6}).K1([]float64{0.2e6})
+	one.Mark("the only one", 470e-12, 30.1e6)
 	return map[string]*page.Plot{
+		"crowded": crowded, "one": one,
 		"substitution": substitutionPlot(), "waveforms": waveformPlot(2000), "contours": contourPlot(),
 		"spectrum": spectrumPlot(), "revisions": revisionPlot(), "empty": empty, "many": many, "looks": all,
 		"million": waveformPlot(1_000_000),

@@ -82,20 +82,20 @@ func TestAxisTexts(t *testing.T) {
 	for _, c := range []struct {
 		axis      Axis
 		low, high float64
-		label     string
+		unit      string
 		ticks     string
 	}{
-		{LinearAxis("C", quantity.Capacitance, ""), 0, 2.2e-9, "C / nF", "0.0 0.5 1.0 1.5 2.0"},
-		{LinearAxis("C", quantity.Capacitance, ""), 0, 470e-12, "C / pF", "0 50 100 150 200 250 300 350 400 450"},
-		{LinearAxis("v", quantity.Voltage, ""), -0.3, 0.3, "v / mV", "−300 −200 −100 0 100 200 300"},
-		{LinearAxis("lc", quantity.Ratio, "").In("ns²", 1e18), 0, 9.3e-17, "lc / ns²", "0 10 20 30 40 50 60 70 80 90"},
-		{LinearAxis("share", quantity.Ratio, ""), 0, 1, "share", "0.0 0.1 0.2 0.3 0.4 0.5 0.6 0.7 0.8 0.9 1.0"},
-		{LinearAxis("share", quantity.Ratio, ""), 0, 3e-8, "share / 1e-9", "0 5 10 15 20 25 30"},
-		{LogAxis("f", quantity.Frequency, ""), 150e3, 300e6, "f / MHz", "0.2 0.5 1 2 5 10 20 50 100 200"},
-		{LogAxis("R", quantity.Resistance, ""), 1, 100, "R / Ω", "1 2 5 10 20 50 100"},
-		{LogAxis("C", quantity.Capacitance, ""), 100e-12, 10e-9, "C / nF", "0.1 0.2 0.5 1 2 5 10"},
-		{LogAxis("f", quantity.Frequency, ""), 40e6, 44e6, "f / MHz", "40 41 42 43 44"},
-		{LogAxis("f", quantity.Frequency, ""), 1, 1e9, "f / kHz", "0.01 1 100 10000 1e6"},
+		{LinearAxis("C", quantity.Capacitance, ""), 0, 2.2e-9, "nF", "0.0 0.5 1.0 1.5 2.0"},
+		{LinearAxis("C", quantity.Capacitance, ""), 0, 470e-12, "pF", "0 50 100 150 200 250 300 350 400 450"},
+		{LinearAxis("v", quantity.Voltage, ""), -0.3, 0.3, "mV", "−300 −200 −100 0 100 200 300"},
+		{LinearAxis("lc", quantity.Ratio, "").In("ns²", 1e18), 0, 9.3e-17, "ns²", "0 10 20 30 40 50 60 70 80 90"},
+		{LinearAxis("share", quantity.Ratio, ""), 0, 1, "", "0.0 0.1 0.2 0.3 0.4 0.5 0.6 0.7 0.8 0.9 1.0"},
+		{LinearAxis("share", quantity.Ratio, ""), 0, 3e-8, "1e-9", "0 5 10 15 20 25 30"},
+		{LogAxis("f", quantity.Frequency, ""), 150e3, 300e6, "MHz", "0.2 0.5 1 2 5 10 20 50 100 200"},
+		{LogAxis("R", quantity.Resistance, ""), 1, 100, "Ω", "1 2 5 10 20 50 100"},
+		{LogAxis("C", quantity.Capacitance, ""), 100e-12, 10e-9, "nF", "0.1 0.2 0.5 1 2 5 10"},
+		{LogAxis("f", quantity.Frequency, ""), 40e6, 44e6, "MHz", "40 41 42 43 44"},
+		{LogAxis("f", quantity.Frequency, ""), 1, 1e9, "kHz", "0.01 1 100 10000 1e6"},
 	} {
 		r := newRuler(c.axis, reach{low: c.low, high: c.high, any: true}, func(s string) float64 { return 0.014 * float64(len([]rune(s))+3) })
 		var labels []string
@@ -107,8 +107,8 @@ func TestAxisTexts(t *testing.T) {
 				t.Errorf("%s from %g: tick %q at %g, off the axis", c.axis.name, c.low, k.label, k.at)
 			}
 		}
-		if got := strings.Join(labels, " "); got != c.ticks || r.label != c.label {
-			t.Errorf("%g to %g: label %q, ticks %q; want %q, %q", c.low, c.high, r.label, got, c.label, c.ticks)
+		if got := strings.Join(labels, " "); got != c.ticks || r.symbol != c.unit {
+			t.Errorf("%g to %g: in %q, ticks %q; want %q, %q", c.low, c.high, r.symbol, got, c.unit, c.ticks)
 		}
 	}
 }
@@ -213,7 +213,7 @@ func TestContourOfACircle(t *testing.T) {
 func TestTextStaysText(t *testing.T) {
 	evil := `</text><script>alert("1")</script> & 'x' ` + "\x1b[31m\u202e\x00\n" + strings.Repeat("ü", 10_000)
 	p := NewPlot(evil, CategoryAxis(evil, "c", evil, "=b"), LinearAxis(evil, quantity.Voltage, "v").In(evil, 1))
-	p.Points(evil, nil, []float64{1, 2})
+	p.Points(evil, nil, []float64{1, 2}).K1([]float64{1, 1})
 	p.Across(evil, 1.5)
 	p.Upright(evil, 0.5)
 	p.Mark(evil, 1, 1)
@@ -225,6 +225,9 @@ func TestTextStaysText(t *testing.T) {
 	}
 	if !strings.Contains(svg, "&lt;/text&gt;&lt;script") {
 		t.Error("the markup is not on the figure as text")
+	}
+	if !strings.Contains(svg, "… (bars: k\u00a0=\u00a01)</text>") {
+		t.Error("a long name hides what the bars are")
 	}
 	records, err := p.csv()
 	if err != nil || records[2][1] != "'=b" {

@@ -6,8 +6,11 @@ import (
 )
 
 // Alt says in one sentence what the plot shows, for readers who do not see it: title, axes, the series with their
-// ranges, reference lines and marks.
+// ranges, reference lines and marks. Of a plot with a mistake it says the mistake.
 func (p *Plot) Alt() string {
+	if err := p.check(); err != nil {
+		return err.Error()
+	}
 	var b strings.Builder
 	if p.title != "" {
 		b.WriteString(p.title + ": ")

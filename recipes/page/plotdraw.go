@@ -193,7 +193,11 @@ func newFrame(s *sheet, q *Panel, xAxis Axis, x *ruler, last bool, height length
 		}
 		a.axis.Tick.Marker = ticks
 		if a.shown {
-			a.axis.Label.Text = s.fit(a.ruler.label, textSize, a.across*0.95)
+			unit := ""
+			if a.ruler.symbol != "" {
+				unit = " / " + s.fit(a.ruler.symbol, textSize, a.across*0.4)
+			}
+			a.axis.Label.Text = s.fit(a.ruler.axis.name, textSize, a.across*0.95-s.width(unit, textSize)) + unit
 		}
 	}
 	f.Add(plotterFunc(func(c draw.Canvas) {

@@ -17,6 +17,7 @@ type legend struct {
 type legendEntry struct {
 	layer layer
 	name  string
+	about string // what stands behind the name and is never cut
 }
 
 // legend lists the series that have a name and a sample. One that looks alike in two panels is listed once.
@@ -31,24 +32,24 @@ func (p *Plot) legend() *legend {
 	for _, q := range p.panels() {
 		for _, l := range q.layers {
 			s := l.series()
-			name := s.name
+			name, about := s.name, ""
 			switch l := l.(type) {
 			case *markLayer, *ruleLayer: // named where they stand
 				continue
 			case *Points:
-				if l.bars != "" && name != "" {
-					name += " (bars: " + l.bars + ")"
+				if l.bars != "" {
+					about = " (bars: " + l.bars + ")"
 				}
-				if len(l.y) > manyPoints && name != "" {
-					name += " (thinned)"
+				if len(l.y) > manyPoints {
+					about += " (thinned)"
 				}
 			}
-			id := seen{name, s.looks, depth(l)}
+			id := seen{name + about, s.looks, depth(l)}
 			if name == "" || known[id] {
 				continue
 			}
 			known[id] = true
-			k.entries = append(k.entries, legendEntry{l, name})
+			k.entries = append(k.entries, legendEntry{l, name, about})
 		}
 	}
 	return k
@@ -68,7 +69,7 @@ func (k *legend) layOut(s *sheet, width length) length {
 	var row []legendEntry
 	used := length(0)
 	for i, e := range k.entries {
-		e.name = s.fit(e.name, textSize, width-lineSample-betweenNames)
+		e.name = s.fit(e.name, textSize, width-lineSample-betweenNames-s.width(e.about, textSize)) + e.about
 		w := k.entryWidth(s, e)
 		if len(row) > 0 && used+w > width {
 			if k.rows, row, used = append(k.rows, row), nil, 0; len(k.rows) == mostRows {

@@ -11,7 +11,7 @@ import (
 // so many of them. Less than half a decade has the ticks of a linear axis.
 func (r *ruler) logTicks(room measure) {
 	factor, symbol := r.axis.shownLog(r.low, r.high)
-	r.label = axisLabel(r.axis.name, symbol)
+	r.symbol = symbol
 	offset := math.Log10(factor)
 	low, high := r.low+offset, r.high+offset // of the shown values
 	if high-low < 0.8 {

@@ -69,8 +69,8 @@ func (s *Points) draw(p *pane) {
 	for _, i := range keep {
 		p.busy.point(pts[i])
 		if s.bars != "" {
-			low, high := p.at(xs[i]+p.dodge, s.low[i]), p.at(xs[i]+p.dodge, s.high[i])
-			addBar(p, &bars, pts[i], low, high, len(keep) <= manyPoints)
+			p.addBar(&bars, pts[i], s.low[i], p.Min.Y, len(keep) <= manyPoints)
+			p.addBar(&bars, pts[i], s.high[i], p.Max.Y, len(keep) <= manyPoints)
 		}
 		switch {
 		case len(keep) > manyPoints:
@@ -96,28 +96,26 @@ func (s *Points) draw(p *pane) {
 // manyPoints is how many points keep their marker; more are dots.
 const manyPoints = 2000
 
-// addBar adds an error bar with caps. An end that cannot be shown, such as one below zero on a logarithmic axis,
-// is drawn to the edge without a cap.
-func addBar(p *pane, path *vg.Path, at, low, high vg.Point, caps bool) {
-	const half = length(2.4)
-	if math.IsNaN(float64(high.Y)) && math.IsNaN(float64(low.Y)) {
+// addBar adds half an error bar, from a point to the end at v, with a cap. An end that the axis cannot show, such as
+// one below zero on a logarithmic axis, is drawn to the edge without a cap; one that is no number is left out.
+func (p *pane) addBar(path *vg.Path, at vg.Point, v float64, edge length, capped bool) {
+	if math.IsNaN(v) {
 		return
 	}
-	for _, end := range []struct {
-		at   vg.Point
-		edge length
-	}{{low, p.Min.Y}, {high, p.Max.Y}} {
-		y, cap := end.at.Y, caps
-		if !(y >= p.Min.Y && y <= p.Max.Y) {
-			y, cap = end.edge, false
-		}
-		path.Move(at)
-		path.Line(vg.Point{X: at.X, Y: y})
-		p.busy.line(at, vg.Point{X: at.X, Y: y})
-		if cap && y != at.Y {
-			path.Move(vg.Point{X: at.X - half, Y: y})
-			path.Line(vg.Point{X: at.X + half, Y: y})
-		}
+	const half = length(2.4)
+	end := vg.Point{X: at.X, Y: p.Y(p.y.at(v))}
+	if !(end.Y >= p.Min.Y && end.Y <= p.Max.Y) {
+		end.Y, capped = edge, false
+	}
+	if end == at {
+		return
+	}
+	path.Move(at)
+	path.Line(end)
+	p.busy.line(at, end)
+	if capped {
+		path.Move(end.Sub(vg.Point{X: half}))
+		path.Line(end.Add(vg.Point{X: half}))
 	}
 }
 

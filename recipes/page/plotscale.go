@@ -17,7 +17,7 @@ type tick struct {
 type ruler struct {
 	axis      Axis
 	low, high float64 // of the value, or of its decadic logarithm
-	label     string
+	symbol    string  // the unit shown, with its prefix
 	ticks     []tick
 	empty     bool
 }
@@ -42,15 +42,14 @@ type measure func(label string) float64
 
 // newRuler fits an axis around what it must show and marks round values on it, as many as there is room for.
 func newRuler(a Axis, r reach, room measure) *ruler {
-	u := &ruler{axis: a, label: a.name, empty: !r.any}
+	u := &ruler{axis: a, empty: !r.any}
 	switch {
 	case a.scale == category:
 		u.categories(room)
 		return u
 	case u.empty:
 		u.low, u.high = 0, 1
-		_, symbol := a.shown(0)
-		u.label = axisLabel(a.name, symbol)
+		_, u.symbol = a.shown(0)
 		return u
 	}
 	low, high := r.low, r.high
@@ -108,18 +107,10 @@ func (a Axis) shown(v float64) (factor float64, symbol string) {
 	return factor, symbol
 }
 
-// axisLabel is "quantity / unit".
-func axisLabel(name, symbol string) string {
-	if symbol == "" {
-		return name
-	}
-	return name + " / " + symbol
-}
-
 // linearTicks marks multiples of 1, 2 or 5 times a power of ten in the unit shown.
 func (r *ruler) linearTicks(room measure) {
 	factor, symbol := r.axis.shown(math.Max(math.Abs(r.low), math.Abs(r.high)))
-	r.label = axisLabel(r.axis.name, symbol)
+	r.symbol = symbol
 	low, high := r.low*factor, r.high*factor
 	for e := int(math.Floor(math.Log10(high-low))) - 2; ; e++ {
 		for _, m := range []int{1, 2, 5} {
