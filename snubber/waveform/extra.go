@@ -17,9 +17,9 @@ func (c coarse) addModes(ctx context.Context, at *curve, others []tone) *curve {
 	}
 	if !hasPlain(at) {
 		at = c.addPlain(ctx, at, c.noise(at))
-	}
-	if !hasSecond(at) {
-		at = c.addTone(ctx, at, others, c.noise(at))
+		if hasPlain(at) && !hasSecond(at) { // which it may have hidden
+			at = c.addTone(ctx, at, others, c.noise(at))
+		}
 	}
 	return c.dropPlain(ctx, at)
 }
