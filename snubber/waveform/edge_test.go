@@ -191,7 +191,7 @@ func TestEdgeErrors(t *testing.T) {
 // A glitch of one sample, before the edge, in the ring or long after, does not lead astray.
 func TestGlitch(t *testing.T) {
 	for _, at := range []int{100, 340, 520, 533, 1500} {
-		for _, size := range []float64{-40, 20, 45} {
+		for _, size := range []float64{-40, 20, 45, 75} {
 			m := made{hz: 30e6, q: 10, to: 48, rest: true, perCycle: 40, n: 3000, before: 300, noise: 0.2}
 			r, _ := m.record(rand.New(rand.NewPCG(7, 7)))
 			r.Volts[at] += size
