@@ -199,10 +199,14 @@ func TestContourOfACircle(t *testing.T) {
 	if math.Abs(float64(rest)-100*math.Pi) > 1 {
 		t.Errorf("outside the upper half there are %g, want %g", rest, 100*math.Pi)
 	}
-	// A saddle and a hole: no line ends within the grid, and none is lost.
-	z[30][30] = math.NaN()
+	// What is no number is not joined across.
+	z[30][30], z[2][2] = math.NaN(), math.NaN()
 	if lines := contour(at, z, 1); len(lines) != 1 {
-		t.Errorf("%d lines around a hole that they do not touch, want 1", len(lines))
+		t.Errorf("%d lines on a grid with holes that the line does not touch, want 1", len(lines))
+	}
+	z[45][30] = math.NaN() // at x = 1, y = 0
+	if lines := contour(at, z, 1); len(lines) != 1 || lines[0][0] == lines[0][len(lines[0])-1] || runLength(lines[0]) > 620 {
+		t.Errorf("%d lines of %v around a circle with a hole in it, want one that is open", len(lines), runLength(lines[0]))
 	}
 	saddle := contour([][]vg.Point{{{}, {Y: 100}}, {{X: 100}, {X: 100, Y: 100}}}, [][]float64{{1, 0}, {0, 1}}, 0.5)
 	if len(saddle) != 2 {
@@ -260,6 +264,11 @@ func TestMistakesAreErrors(t *testing.T) {
 			p.Line("a", nil, one)
 			return p
 		},
+		"x is 2 at index 0, and there are 2 categories": func() *Plot {
+			p := NewPlot("T", CategoryAxis("x", "x", "a", "b"), xy("").y)
+			p.Line("a", two[1:], one)
+			return p
+		},
 		"give a factor from 1e-30":                          func() *Plot { return NewPlot("T", LinearAxis("x", quantity.Ratio, "x").In("u", 0), xy("").y) },
 		`plot "T": series 2, "b": 2 values of x for 1 of y`: func() *Plot { p := xy("T"); p.Line("a", one, one); p.Line("b", two, one); return p },
 	} {
@@ -292,6 +301,30 @@ func TestGaps(t *testing.T) {
 		if !slices.Contains(texts(mustSVG(t, c)), "no data") {
 			t.Error("a plot of nothing does not say so")
 		}
+	}
+}
+
+// Values that are all equal stand in the middle of an axis that still has ticks.
+func TestEqualValues(t *testing.T) {
+	for _, a := range []Axis{LinearAxis("a", quantity.Voltage, ""), LogAxis("a", quantity.Voltage, "")} {
+		r := newRuler(a, reach{low: 5, high: 5, any: true}, func(string) float64 { return 0.1 })
+		if at := r.at(5); math.Abs(at-0.5) > 1e-9 || len(r.ticks) < 2 {
+			t.Errorf("5 stands at %g among %d ticks", at, len(r.ticks))
+		}
+	}
+}
+
+// An error bar that reaches below zero on a logarithmic axis goes to the edge; its point and its axis stay.
+func TestBarBeyondLogAxis(t *testing.T) {
+	p := NewPlot("T", LinearAxis("x", quantity.Ratio, "x"), LogAxis("y", quantity.Voltage, "y"))
+	p.Points("", []float64{1, 2}, []float64{1, 10}).Interval95([]float64{-1, 8}, []float64{3, 12})
+	svg := mustSVG(t, p)
+	bars := regexp.MustCompile(`stroke-width=".9" d="([^"]*)"`).FindStringSubmatch(svg)
+	if bars == nil || strings.Count(bars[1], "M") != 7 { // four halves, three caps
+		t.Errorf("bars %q, want four halves and three caps", bars)
+	}
+	if !slices.Contains(texts(svg), "10") || strings.Count(svg, "z\"/>") != 1 {
+		t.Errorf("texts %q", texts(svg))
 	}
 }
 

@@ -30,11 +30,7 @@ func (r *ruler) at(v float64) float64 {
 	if r.axis.scale == logarithmic {
 		v = math.Log10(v)
 	}
-	at := (v - r.low) / (r.high - r.low)
-	if !(at > -1 && at < 2) { // far off the sheet, where some surfaces would go on drawing for ever
-		return math.NaN()
-	}
-	return at
+	return (v - r.low) / (r.high - r.low)
 }
 
 // measure is how much of the axis a label takes, with the room around it, as a fraction.
