@@ -122,12 +122,25 @@ func spread(v []float64) float64 {
 // strongestRing reads the ring after each edge, to the next one, and takes the strongest. Where nothing rings, at is the
 // largest edge. edges are those left: one that a later fit grew back over was none, but a swing of that ring.
 func (p prefix) strongestRing(ctx context.Context, v []float64, all []onset, step float64) (found *ring, at onset, edges []onset, err error) {
-	for i, o := range all {
+	for i := 0; i < len(all); i++ {
+		o := all[i]
 		to := len(p.sum) - 1
 		if i+1 < len(all) {
 			to = max(all[i+1].at-2*all[i+1].scale, o.at)
 		}
 		got := p.findRing(ctx, o, 0, to, step)
+		for j := i + 1; got != nil && j < len(all); j++ { // the next may be no edge, but the ring's own beat or noise
+			beyond := len(p.sum) - 1
+			if j+1 < len(all) {
+				beyond = max(all[j+1].at-2*all[j+1].scale, o.at)
+			}
+			on := p.findRing(ctx, o, 0, beyond, step)
+			if on == nil || on.misfit || on.meanSquare() > 1.3*got.meanSquare() {
+				break
+			}
+			got = on
+			got.past = j
+		}
 		if got != nil {
 			if c := got.clipped(v, o.at, step, p.ref); c.end > got.start {
 				if after := p.findRing(ctx, onset{at: c.end, scale: 1, size: o.size}, c.end, to, step); after != nil {
@@ -152,6 +165,9 @@ func (p prefix) strongestRing(ctx context.Context, v []float64, all []onset, ste
 			}
 		}
 		edges = append(edges, first)
+		if got != nil {
+			i = max(i, got.past)
+		}
 		if got != nil && (found == nil || got.amplitude() > found.amplitude()) {
 			found, at = got, first
 		}

@@ -82,5 +82,6 @@ func (c *curve) walk(in series, use func(t int, e []float64)) {
 func (r residuals) quiet() float64 {
 	p := append([]float64(nil), r.parts...)
 	sort.Float64s(p)
-	return math.Sqrt(p[len(p)/2])
+	n := float64(max(1, r.n/len(p))) // squares of n samples: their median lies below their mean (Wilson and Hilferty, from memory)
+	return math.Sqrt(p[len(p)/2] / math.Pow(1-2/(9*n), 3))
 }

@@ -11,8 +11,12 @@ type ring struct {
 	start, end int
 	curve      *curve
 	noise      float64 // V: of one sample, standard deviation
+	past       int     // the last onset that the fit went over, where it did
 	misfit     bool    // the samples after the start do not follow the curve as closely as the later ones
 }
+
+// meanSquare of what the fit leaves, V^2.
+func (r *ring) meanSquare() float64 { return r.curve.rss / float64(r.curve.n) }
 
 // amplitude of the ring at its start, V.
 func (r *ring) amplitude() float64 { return cmplx.Abs(r.curve.amp[0]) }
@@ -189,16 +193,13 @@ func (c coarse) growBack(ctx context.Context, at *curve, least int) (coarse, *cu
 			break
 		}
 		c, at = grown, next
-		if take < chunk {
-			break
-		}
 	}
 	return c, at
 }
 
 // onCurve is how many of the chunk means before the curve's start follow it. Each lies off by the noise and by what the
 // curve, drawn on past its samples, may be wrong by. The squares of that, less three, are summed from nought up
-// (Page, "Continuous inspection schemes", Biometrika 41, 100 (1954), from memory): at 16 the curve is left, and it
+// (Page, "Continuous inspection schemes", Biometrika 41, 100 (1954), from memory): at 25 the curve is left, and it
 // was left where the sum began to grow.
 func (c coarse) onCurve(at *curve, chunk int) int {
 	noise := c.noise(at)
@@ -220,7 +221,7 @@ func (c coarse) onCurve(at *curve, chunk int) int {
 		if sum <= 0 {
 			sum, began = 0, k
 		}
-		if sum > 16 {
+		if sum > 25 {
 			return began
 		}
 	}
