@@ -12,7 +12,8 @@
 // Open makes or opens a logbook; Add logs one trial, AddWithWaveforms one with the captures behind its readings, AddAll many
 // or none; Trials streams those in a Scope, Trial finds one by its id or the end of it, Waveforms gives its captures, Strike
 // marks one as wrong. AddDecision logs what was recommended with the trials it rests on
-// and their TrialsDigest, Decisions and Decision give it back, DecisionTrials its trials. ReadCSV and WriteCSV carry trials in and out as CSV. What a person
+// and their TrialsDigest, Decisions and Decision give it back, DecisionTrials its trials. A Monitor tells whether anything was
+// written since it was last asked. ReadCSV and WriteCSV carry trials in and out as CSV. What a person
 // has to know of a file that cannot be used is a Fault: the path, what is wrong, and the cure.
 //
 // # The file
