@@ -1,6 +1,7 @@
 package page_test
 
 import (
+	_ "embed"
 	"fmt"
 	"io"
 	"testing"
@@ -54,3 +55,25 @@ func BenchmarkPage(b *testing.B) {
 		}
 	}
 }
+
+// A woven page whose recipe says 10,000 things: each is brought to its place.
+func BenchmarkWeave(b *testing.B) {
+	b.ReportAllocs()
+	for b.Loop() {
+		p := page.New("Said")
+		talkative(p, 10000)
+		if err := p.HTML(io.Discard); err != nil {
+			b.Fatal(err)
+		}
+	}
+}
+
+func talkative(p *page.Page, n int) {
+	p.Weave(benchSource)
+	for i := range n {
+		p.Say("said %d", i)
+	}
+}
+
+//go:embed bench_test.go
+var benchSource string

@@ -3,6 +3,7 @@ package page
 import (
 	"fmt"
 	"strings"
+	"sync"
 	"unicode/utf8"
 
 	"github.com/yuin/goldmark/ast"
@@ -36,15 +37,15 @@ const (
 )
 
 // inlineParser reads a paragraph with code spans and emphasis and takes everything else (headings, lists,
-// links, raw HTML) as text.
-func inlineParser() parser.Parser {
+// links, raw HTML) as text. Making it costs more than a sentence does, so there is one; it keeps nothing of what it read.
+var inlineParser = sync.OnceValue(func() parser.Parser {
 	return parser.NewParser(
 		parser.WithBlockParsers(util.Prioritized(parser.NewParagraphParser(), 1)),
 		parser.WithInlineParsers(
 			util.Prioritized(parser.NewCodeSpanParser(), 1),
 			util.Prioritized(parser.NewEmphasisParser(), 2),
 		))
-}
+})
 
 // inline formats args into format and splits the result into spans.
 func inline(format string, args []any) []span {

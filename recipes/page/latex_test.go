@@ -49,6 +49,9 @@ func readLaTeX(t failer, src string) string {
 		switch c {
 		default:
 			out.WriteByte(c)
+			if len(rest) > 1 && rest[1] == c && strings.IndexByte("-,'", c) >= 0 {
+				fail("two signs that become one", rest)
+			}
 		case '{':
 			depth++
 		case '}':
@@ -82,6 +85,9 @@ func readLaTeX(t failer, src string) string {
 					out.WriteByte(rest[0])
 				} else {
 					out.WriteByte(' ')
+					if after := strings.TrimSpace(rest[1:]); strings.HasPrefix(after, "[") || strings.HasPrefix(after, "*") {
+						fail("an argument of the line's end", rest)
+					}
 				}
 				rest = rest[1:]
 			case name == "begin", name == "end":
@@ -144,6 +150,17 @@ func TestAnyTextSurvivesLaTeX(t *testing.T) {
 			t.Errorf("%q is lost in\n%s", s, text)
 		}
 	})
+}
+
+// A row or a line of code that begins with a bracket or a star is no argument to the end of the one before.
+func TestLaTeXLinesBeginWithText(t *testing.T) {
+	p := page.New("T")
+	tb := page.NewTable("", page.Label("label", "label"))
+	for _, s := range []string{"first", "[2pt] x", "*", "[", ""} {
+		tb.Row(s)
+	}
+	p.Table(tb)
+	readLaTeX(t, write(t, p, "tex"))
 }
 
 func TestLaTeXNumbersAndUnits(t *testing.T) {

@@ -249,7 +249,8 @@ func (broken) Write([]byte) (int, error) { return 0, io.ErrShortWrite }
 
 func TestWriteErrorsAreReported(t *testing.T) {
 	p := trialsPage()
-	for _, err := range []error{p.Text(broken{}, page.TextOptions{}), p.Markdown(broken{}, page.MarkdownOptions{}), p.CSV(broken{})} {
+	for _, err := range []error{p.Text(broken{}, page.TextOptions{}), p.Markdown(broken{}, page.MarkdownOptions{}), p.CSV(broken{}),
+		p.HTML(broken{}), p.LaTeX(broken{}, page.LaTeXOptions{})} {
 		if !errors.Is(err, io.ErrShortWrite) || !strings.Contains(err.Error(), `page "Substitution`) {
 			t.Errorf("got %v", err)
 		}

@@ -20,9 +20,8 @@ func (p *Page) Run(recipe func() error) (err error) {
 		if r == nil { // runtime.Goexit, or a panic of nil
 			return
 		}
-		f := stack(1)
-		at := place{len(p.recipes), p.within(f)}
-		err = fmt.Errorf("the recipe panicked%s: %s", where(f), cause(r))
+		at := place{len(p.recipes), p.within(stack(1))}
+		err = fmt.Errorf("the recipe panicked%s: %s", where(stack(1)), cause(r))
 		p.items = append(p.items, item{at, &failure{plain(err.Error())}})
 	}()
 	err = recipe()
@@ -49,9 +48,11 @@ func cause(r any) string {
 }
 
 // where is the function and line that panicked: the first below the run-time library's own.
-func where(stack []runtime.Frame) string {
+func where(stack *runtime.Frames) string {
 	panicking := false
-	for _, f := range stack {
+	for more := true; more; {
+		var f runtime.Frame
+		f, more = stack.Next()
 		own := strings.HasPrefix(f.Function, "runtime.")
 		if panicking && !own {
 			return fmt.Sprintf(" in %s, line %d of %s", shortName(f.Function), f.Line, path.Base(f.File))

@@ -42,11 +42,8 @@ type place struct {
 // after the other on a page are shown one after the other. A text that is not the file's makes rendering fail.
 func (p *Page) Weave(source string) {
 	stack := stack(1)
-	if len(stack) == 0 {
-		return
-	}
-	caller := stack[0]
-	if p.within(stack[1:]) != 0 {
+	caller, _ := stack.Next()
+	if p.within(stack) != 0 {
 		return
 	}
 	p.recipes = append(p.recipes, recipe{source, caller.Function, caller.File, caller.Line})
@@ -62,14 +59,15 @@ func (p *Page) here() place {
 
 // within is the line of the latest recipe's body that the stack goes through; 0 where it does not. Of a recipe
 // that calls itself the outermost call counts: its statements are the ones shown.
-func (p *Page) within(stack []runtime.Frame) int {
+func (p *Page) within(stack *runtime.Frames) int {
 	line := 0
 	if len(p.recipes) == 0 {
 		return line
 	}
 	r := p.recipes[len(p.recipes)-1]
-	for _, f := range stack {
-		if f.Function == r.function && f.File == r.file {
+	for more := true; more; {
+		var f runtime.Frame
+		if f, more = stack.Next(); f.Function == r.function && f.File == r.file {
 			line = f.Line
 		}
 	}
@@ -77,24 +75,17 @@ func (p *Page) within(stack []runtime.Frame) int {
 }
 
 // stack is the call stack, innermost first, above the function that calls it and skip more.
-func stack(skip int) []runtime.Frame {
-	pcs := make([]uintptr, 64)
-	n := runtime.Callers(skip+2, pcs)
-	for n == len(pcs) {
-		pcs = make([]uintptr, 4*len(pcs))
+func stack(skip int) *runtime.Frames {
+	var few [64]uintptr
+	n := runtime.Callers(skip+2, few[:])
+	pcs := few[:n:n]
+	for size := len(few); n == size; {
+		size *= 4
+		pcs = make([]uintptr, size)
 		n = runtime.Callers(skip+2, pcs)
+		pcs = pcs[:n]
 	}
-	frames := runtime.CallersFrames(pcs[:n])
-	var all []runtime.Frame
-	for {
-		f, more := frames.Next()
-		if f.PC != 0 {
-			all = append(all, f)
-		}
-		if !more {
-			return all
-		}
-	}
+	return runtime.CallersFrames(pcs)
 }
 
 // woven is the page with its recipes around the results.
