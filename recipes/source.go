@@ -4,6 +4,7 @@ import (
 	"context"
 
 	"ringbook/snubber"
+	"ringbook/snubber/waveform"
 	"ringbook/store"
 )
 
@@ -13,9 +14,11 @@ type Source struct {
 	Scope   store.Scope
 	Limits  Request
 	OnHand  []float64 // F: the capacitors on hand, for what to fit next; nil: the E6 series
+
+	used *used // what was read, for the digest at a page's foot; nil: nobody asks
 }
 
-// Trials are all the trials in scope, in the order they were read.
+// Trials are all the trials in scope, in the order they were read. They count as used in the digest at the page's foot.
 func (s Source) Trials(ctx context.Context) ([]snubber.Trial, error) {
 	var all []snubber.Trial
 	for t, err := range s.Logbook.Trials(ctx, s.Scope) {
@@ -24,6 +27,7 @@ func (s Source) Trials(ctx context.Context) ([]snubber.Trial, error) {
 		}
 		all = append(all, t)
 	}
+	s.used.add(all)
 	return all, nil
 }
 
@@ -39,4 +43,15 @@ func (s Source) Fit(ctx context.Context, trials []snubber.Trial) (*snubber.FitRe
 	}
 	fit.Suggestion = fit.Next(on)
 	return fit, nil
+}
+
+// captures are the records logged with a trial.
+func (s Source) captures(ctx context.Context, trial string) (records []waveform.Record, err error) {
+	for w, err := range s.Logbook.Waveforms(ctx, trial) {
+		if err != nil {
+			return nil, err
+		}
+		records = append(records, w.Record)
+	}
+	return records, nil
 }

@@ -1,11 +1,10 @@
 package main
 
 import (
-	"context"
-	"fmt"
-	"strings"
+	"errors"
 	"time"
 
+	"ringbook/recipes"
 	"ringbook/store"
 
 	"github.com/spf13/cobra"
@@ -55,58 +54,10 @@ func day(flag, text string, days int) (time.Time, error) {
 	return t.AddDate(0, 0, days), nil
 }
 
-// oneRevision narrows a scope to the one board revision it holds, and refuses one that holds several.
-func oneRevision(ctx context.Context, lb *store.Logbook, s store.Scope) (store.Scope, error) {
-	revs, err := revisions(ctx, lb, s)
-	if err != nil {
-		return s, err
+// severalIsUsage makes it a matter of the command line that more board revisions are in scope than were to be.
+func severalIsUsage(err error) error {
+	if errors.Is(err, recipes.ErrSeveral) {
+		return &usageError{err}
 	}
-	if len(revs) > 1 {
-		return s, usagef("%d board revisions are in scope (%s), each with a loop of its own; name one with --board and --revision", len(revs), some(revs))
-	}
-	s.Board, s.Revision = revs[0].Board, revs[0].Name
-	return s, nil
-}
-
-// revisions are the board revisions with a trial in scope, one at least.
-func revisions(ctx context.Context, lb *store.Logbook, s store.Scope) ([]store.Revision, error) {
-	revs, err := lb.Revisions(ctx, s)
-	if err != nil || len(revs) > 0 {
-		return revs, err
-	}
-	all, err := lb.Revisions(ctx, store.Scope{IncludeStruck: true})
-	if err != nil {
-		return nil, err
-	}
-	if len(all) == 0 {
-		return nil, fmt.Errorf("logbook %s holds no trial; log one with `ringbook trial take`, `trial enter` or `trial import`", lb.Path())
-	}
-	var asked string
-	if s.Board != "" {
-		asked += fmt.Sprintf(" of board %q", s.Board)
-	}
-	if s.Revision != "" {
-		asked += fmt.Sprintf(" of revision %q", s.Revision)
-	}
-	if !s.Since.IsZero() || !s.Until.IsZero() {
-		asked += " in that time"
-	}
-	if !s.IncludeStruck {
-		asked += " that stands"
-	}
-	return nil, fmt.Errorf("logbook %s holds no trial%s; it has trials of %s", lb.Path(), asked, some(all))
-}
-
-// some names a few board revisions, and says how many more there are.
-func some(revs []store.Revision) string {
-	const most = 6
-	var names []string
-	for i, r := range revs {
-		if i == most {
-			names = append(names, fmt.Sprintf("and %d more", len(revs)-most))
-			break
-		}
-		names = append(names, r.Board+" "+r.Name)
-	}
-	return strings.Join(names, ", ")
+	return err
 }

@@ -17,9 +17,9 @@ func (a *app) source(ctx context.Context, flags *scopeFlags) (recipes.Source, er
 	if err != nil {
 		return recipes.Source{}, err
 	}
-	scope, err = oneRevision(ctx, lb, scope)
+	scope, err = recipes.OneRevision(ctx, lb, scope)
 	if err != nil {
-		return recipes.Source{}, errors.Join(err, lb.Close())
+		return recipes.Source{}, errors.Join(severalIsUsage(err), lb.Close())
 	}
 	return recipes.Source{Logbook: lb, Scope: scope}, nil
 }

@@ -28,7 +28,7 @@ func trialList(a *app) *cobra.Command {
 				return err
 			}
 			defer closing(lb, &err)
-			revs, err := revisions(ctx, lb, scope)
+			revs, err := recipes.Revisions(ctx, lb, scope)
 			if err != nil {
 				return err
 			}

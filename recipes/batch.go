@@ -1,0 +1,125 @@
+package recipes
+
+import (
+	"errors"
+	"fmt"
+	"io/fs"
+	"math/rand/v2"
+	"os"
+	"path/filepath"
+)
+
+// batch is files that shall all be written or none.
+type batch []*staged
+
+// staged is a file that is on the disk under another name.
+type staged struct {
+	path   string // what it shall be called
+	part   string // what it is called until then; "" once that name is gone
+	before string // what keeps the file that was called so; "" for nothing
+	undone func() // takes its name from it again; nil where that cannot be
+}
+
+// stage writes a file under another name in the same folder, and waits until it is on the disk.
+func (b *batch) stage(path string, content []byte, replace bool) (err error) {
+	if err := free(path, replace); err != nil {
+		if errors.Is(err, ErrExists) {
+			return fmt.Errorf("%s: %w", path, err)
+		}
+		return err
+	}
+	mode := fs.FileMode(0o666) // less what the user's mask takes
+	if info, err := os.Stat(path); err == nil {
+		mode = info.Mode().Perm()
+	}
+	part := beside(path, "part")
+	f, err := os.OpenFile(part, os.O_WRONLY|os.O_CREATE|os.O_EXCL, mode)
+	if err != nil {
+		return cause(err)
+	}
+	*b = append(*b, &staged{path: path, part: part})
+	_, err = f.Write(content)
+	if err == nil {
+		err = f.Sync()
+	}
+	if e := f.Close(); err == nil {
+		err = e
+	}
+	return cause(err)
+}
+
+// commit gives each file its name, in the order they were staged. On an error it puts back what was there.
+func (b batch) commit(replace bool) (err error) {
+	defer func() {
+		if err != nil {
+			for _, s := range b { // what cannot be put back stays: err is what to tell
+				if s.undone != nil {
+					s.undone()
+				}
+			}
+		}
+	}()
+	for _, s := range b {
+		if err := s.place(replace, len(b) > 1); err != nil {
+			return cause(err)
+		}
+	}
+	if len(b) > 0 {
+		syncFolder(filepath.Dir(b[0].path))
+	}
+	return nil
+}
+
+// place gives a file its name. keep says that the file which had the name is to be kept until discard.
+func (s *staged) place(replace, keep bool) error {
+	remove := func() { os.Remove(s.path) }
+	if !replace {
+		// A link, other than a new name, never takes another file's place.
+		if os.Link(s.part, s.path) == nil {
+			s.undone = remove
+			return nil
+		}
+		if err := free(s.path, false); err != nil { // another program was faster
+			return err
+		}
+		// This file system has no links.
+	}
+	undone := remove
+	if replace && keep {
+		before := beside(s.path, "before")
+		switch err := os.Link(s.path, before); {
+		case err == nil:
+			s.before = before
+			undone = func() { os.Rename(before, s.path) }
+		case !errors.Is(err, fs.ErrNotExist):
+			undone = nil
+		}
+	}
+	if err := os.Rename(s.part, s.path); err != nil {
+		return err
+	}
+	s.part, s.undone = "", undone
+	return nil
+}
+
+// discard removes what is no longer needed.
+func (b batch) discard() {
+	for _, s := range b {
+		for _, name := range []string{s.part, s.before} {
+			if name != "" {
+				os.Remove(name) // it is in nobody's way
+			}
+		}
+	}
+}
+
+// beside is a name in the same folder that no file has.
+func beside(path, what string) string { return fmt.Sprintf("%s.%s-%08x", path, what, rand.Uint32()) }
+
+// syncFolder waits until the names in a folder are on the disk, where the system can.
+func syncFolder(path string) {
+	if d, err := os.Open(path); err == nil {
+		_ = d.Sync() // not every system syncs a folder
+		d.Close()
+	}
+}

@@ -1,0 +1,40 @@
+package recipes
+
+import (
+	"context"
+
+	"ringbook/recipes/page"
+)
+
+// Recipe is a page of the lab notebook that can be asked for by name.
+type Recipe struct {
+	Name   string // what it is asked for by
+	Short  string // what it shows, in a line
+	Title  string // of its page; the board revision follows: "Loop" gives "Loop of winch-drive B"
+	Single bool   // it is of one board revision; false: of all in scope
+	Struck bool   // trials marked as wrong are in its scope too
+	Limits bool   // it keeps Source.Limits
+	Weave  func(ctx context.Context, p *page.Page, src Source) error
+}
+
+// All are the recipes that `ringbook page` offers.
+func All() []Recipe {
+	return []Recipe{
+		{
+			Name: "substitution", Short: "the trials of a capacitor-substitution series, the line through them, the loop",
+			Title: "Loop", Single: true, Weave: Substitution,
+		},
+		{
+			Name: "choice", Short: "the network recommended, its ratings and losses, what else would do",
+			Title: "Network", Single: true, Limits: true, Weave: Choice,
+		},
+		{
+			Name: "proof", Short: "what was predicted against what was then measured",
+			Title: "Prediction and measurement", Single: true, Weave: Proof,
+		},
+		{
+			Name: "history", Short: "every trial in scope, struck ones with their reason",
+			Title: "History", Struck: true, Weave: History,
+		},
+	}
+}
