@@ -2,6 +2,7 @@ package recipes
 
 import (
 	"context"
+	_ "embed"
 	"errors"
 	"fmt"
 
@@ -77,18 +78,55 @@ func (s Source) ratedPeak(ctx context.Context, board string) (float64, error) {
 	return 0, fmt.Errorf("recommending a network: board %q has no voltage rating and no limit was given; give --max-peak, or the rating by `ringbook board add`", board)
 }
 
-// Choice is the page of a recommendation: the network, what it does, and what else would do.
+//go:embed choice.go
+var choiceSource string
+
+// Choice is the page of a recommendation: the network of least loss whose peak stays under the limit with its parts
+// anywhere in tolerance and the loop anywhere the trials allow.
 func Choice(ctx context.Context, p *page.Page, src Source) error {
-	// The loop as the trials have it, and the cheapest network that holds with its parts anywhere in tolerance.
+	p.Weave(choiceSource)
+
+	// ## The choice
+	//
+	// The loop is fitted from the trials; networks are then searched over the series, screened by their sensitivities and
+	// proven on draws of the fit with the parts at the corners of their tolerances.
 	fit, rec, err := Recommendation(ctx, src)
 	if err != nil {
 		return err
 	}
 	ChoicePage(p, fit, rec)
+
+	// ## With and without
+	//
+	// The closed form of the node's voltage after the switch lets go, for the loop as fitted.
+	network := src.network(rec)
+	p.Plot(withAndWithoutPlot(rec, network))
+
+	// ## What a lower peak costs
+	//
+	// Every alternative is the cheapest for its peak. The peak is that at worst, the loss that of ring and network.
+	p.Plot(frontPlot(rec))
+
+	// Peak and loss for any R and C, with parts as marked on them. The loss goes with C; R has its best value for each C.
+	grid, err := networkPlot(ctx, rec)
+	if err != nil {
+		return err
+	}
+	p.Plot(grid)
 	return nil
 }
 
-// ChoicePage puts a recommendation on a page.
+// network is the network chosen.
+func (s Source) network(rec *snubber.Recommendation) snubber.Network {
+	c := rec.Choice
+	n := snubber.Network{Kind: c.Network, C: c.C, R: c.R}
+	if c.Network == snubber.RCD {
+		n.DiodeDrop, n.DiodeOhm = s.Limits.DiodeDrop, s.Limits.DiodeOhm
+	}
+	return n
+}
+
+// ChoicePage puts a recommendation on a page: the networks side by side, what to buy, and what to mind.
 func ChoicePage(p *page.Page, fit *snubber.FitResult, rec *snubber.Recommendation) {
 	c := rec.Choice
 	if rec.Met {
@@ -96,20 +134,7 @@ func ChoicePage(p *page.Page, fit *snubber.FitResult, rec *snubber.Recommendatio
 	} else {
 		p.Say("**No network of these series keeps the limits.** The nearest miss is shown.")
 	}
-	t := choiceTable("Networks compared")
-	choiceRow(t, "bare", rec.Bare)
-	if rec.Met {
-		choiceRow(t, "recommended", c)
-	} else {
-		choiceRow(t, "nearest miss", c)
-	}
-	for i := range rec.Alternatives {
-		choiceRow(t, "alternative", &rec.Alternatives[i])
-	}
-	choiceRow(t, "rule of thumb", rec.RuleOfThumb).Note("R next to Z0 and C three times the loop's: common practice")
-	t.Note("at worst: what the worst corner of the parts' tolerances keeps on 99 %% of the loops that the trials allow")
-	t.Note("loss is that of the ring and the network: in R, in the switch at turn-on, in the loop")
-	p.Table(t)
+	p.Table(networksTable(rec))
 	if rec.Met {
 		p.Figures(ratingFigures(c.Ratings)...)
 		p.Say("Of its %s the network adds %s; %s the loop loses anyway, now mostly in the resistor.", quantity.Format(c.LossW, quantity.Power, 3), quantity.Format(c.AddedW, quantity.Power, 3), quantity.Format(c.AnywayW, quantity.Power, 3))

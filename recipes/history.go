@@ -2,6 +2,7 @@ package recipes
 
 import (
 	"context"
+	_ "embed"
 
 	"ringbook/recipes/page"
 	"ringbook/snubber/quantity"
@@ -10,9 +11,15 @@ import (
 	"ringbook/store"
 )
 
+//go:embed history.go
+var historySource string
+
 // History is the page of the logbook itself: every trial in scope, the latest last.
 func History(ctx context.Context, p *page.Page, src Source) error {
-	// The rows come in the order they were read. A struck trial stays, with its reason.
+	p.Weave(historySource)
+
+	// The rows come in the order they were read. A trial is never changed or deleted: one that was wrong is struck, and
+	// stays with its reason.
 	trials, err := src.Trials(ctx)
 	if err != nil {
 		return err

@@ -26,8 +26,9 @@ type Confirmation struct {
 	Verdict  string   `json:"verdict"`
 	Warnings []string `json:"warnings"`
 
-	decision store.Decision
-	trials   []snubber.Trial // those that measured it
+	decision   store.Decision
+	trials     []snubber.Trial // those that measured it
+	bareTrials []snubber.Trial // of those it rests on, with nothing fitted
 }
 
 // otherPoint is by how much of itself a bus voltage or a load current may differ for the operating point to be the same.
@@ -91,6 +92,9 @@ func (c *Confirmation) evidence(ctx context.Context, lb *store.Logbook) (load fl
 			return 0, err
 		}
 		trials = append(trials, t)
+		if t.Network.Kind == snubber.Bare && t.Struck == "" {
+			c.bareTrials = append(c.bareTrials, t)
+		}
 		load = math.Max(load, t.Operating().CurrentA)
 		if t.Struck != "" {
 			c.Warnings = append(c.Warnings, fmt.Sprintf("trial %s, which the decision rests on, has been struck (%s); recommend again without it", store.ShortID(t.ID), t.Struck))
@@ -162,17 +166,22 @@ func fits(want, got snubber.Network) bool {
 
 func apart(a, b float64) bool { return math.Abs(a-b) > otherPoint*math.Max(math.Abs(a), math.Abs(b)) }
 
-// Proof puts a prediction beside what was then measured.
-func Proof(p *page.Page, c *Confirmation) {
+// proofFigures are the prediction beside the measurement.
+func proofFigures(c *Confirmation) []page.Figure {
 	remark := ""
 	if u := math.Hypot(c.Measured.U, c.Predicted.U); math.Abs(c.ProbeV) > 0.3*u {
 		remark = fmt.Sprintf("the probe's capacitance makes %+.1g V of it", c.ProbeV)
 	}
-	p.Figures(
-		page.Figure{Name: "peak predicted", CSV: "predicted_v", Unit: quantity.Voltage, Value: c.Predicted},
-		page.Figure{Name: "peak measured", CSV: "measured_v", Unit: quantity.Voltage, Value: c.Measured, Remark: remark},
-		page.Figure{Name: "limit", CSV: "limit_v", Unit: quantity.Voltage, Value: c.LimitV},
-	)
+	return []page.Figure{
+		{Name: "peak predicted", CSV: "predicted_v", Unit: quantity.Voltage, Value: c.Predicted},
+		{Name: "peak measured", CSV: "measured_v", Unit: quantity.Voltage, Value: c.Measured, Remark: remark},
+		{Name: "limit", CSV: "limit_v", Unit: quantity.Voltage, Value: c.LimitV},
+	}
+}
+
+// ProofFigures puts a prediction beside what was then measured.
+func ProofFigures(p *page.Page, c *Confirmation) {
+	p.Figures(proofFigures(c)...)
 	if c.Confirmed {
 		p.Say("%s", c.Verdict)
 	} else {
@@ -183,10 +192,10 @@ func Proof(p *page.Page, c *Confirmation) {
 	}
 }
 
-// ProofPage is the page of a confirmation: what was decided, the prediction beside the measurement, and the trials.
+// ProofPage puts a confirmation on a page: what was decided, the prediction beside the measurement, and the trials.
 func ProofPage(p *page.Page, c *Confirmation) {
 	p.Say("Decision %s of %s, from %s: fit %s.", store.ShortID(c.Decision), c.decision.At.UTC().Format("2006-01-02 15:04 UTC"),
 		count(len(c.decision.Trials), "trial"), wording(c.decision.Network))
-	Proof(p, c)
+	ProofFigures(p, c)
 	p.Table(trialTable("Trials that fitted it since", c.trials))
 }

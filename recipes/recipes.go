@@ -33,6 +33,10 @@ func All() []Recipe {
 			Title: "Prediction and measurement", Single: true, Weave: Proof,
 		},
 		{
+			Name: "watts", Short: "what the supply gave with each network, against what was computed",
+			Title: "Power", Single: true, Weave: Watts,
+		},
+		{
 			Name: "history", Short: "every trial in scope, struck ones with their reason",
 			Title: "History", Struck: true, Weave: History,
 		},

@@ -94,3 +94,21 @@ func choiceTable(title string) *page.Table {
 		page.Number("in R", quantity.Power, "resistor_w"),
 	)
 }
+
+// networksTable puts the choice beside the bare node, what costs more for a lower peak, and the rule of thumb.
+func networksTable(rec *snubber.Recommendation) *page.Table {
+	t := choiceTable("Networks compared")
+	choiceRow(t, "bare", rec.Bare)
+	if rec.Met {
+		choiceRow(t, "recommended", rec.Choice)
+	} else {
+		choiceRow(t, "nearest miss", rec.Choice)
+	}
+	for i := range rec.Alternatives {
+		choiceRow(t, "alternative", &rec.Alternatives[i])
+	}
+	choiceRow(t, "rule of thumb", rec.RuleOfThumb).Note("R next to Z0 and C three times the loop's: common practice")
+	t.Note("at worst: what the worst corner of the parts' tolerances keeps on 99 %% of the loops that the trials allow")
+	t.Note("loss is that of the ring and the network: in R, in the switch at turn-on, in the loop")
+	return t
+}

@@ -175,7 +175,7 @@ func (d *demo) report(ctx context.Context, src recipes.Source, fit *snubber.FitR
 	recipes.ChoicePage(choice, fit, rec)
 	verdict := page.New("Prediction and measurement")
 	if proof != nil {
-		recipes.Proof(verdict, proof)
+		recipes.ProofFigures(verdict, proof)
 	} else {
 		verdict.Say("Nothing was fitted, so nothing is measured.")
 	}

@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"fmt"
 	"io"
+	"slices"
 	"strings"
 )
 
@@ -11,7 +12,7 @@ import (
 type TextOptions struct {
 	Width  int  // columns of the terminal; 0: 80. Below 40 is taken as 40.
 	Colour bool // bold heads and yellow warnings, by ECMA-48 sequences; false: plain text
-	Prose  bool // also what the recipe says around its results; false: the results alone
+	Prose  bool // also what the recipe says around its results, and its plots in words; false: figures and sentences alone
 	Code   bool // also the recipe's code; it implies Prose
 }
 
@@ -23,7 +24,7 @@ func (p *Page) Text(w io.Writer, o TextOptions) error {
 		o.Width = 80
 	}
 	t := &terminal{width: max(o.Width, 40), colour: o.Colour, code: o.Code}
-	bodies := p.results()
+	bodies := slices.DeleteFunc(p.results(), func(b body) bool { _, plot := b.(figure); return plot })
 	if o.Prose || o.Code {
 		var err error
 		if bodies, err = p.woven(); err != nil {
