@@ -3,11 +3,8 @@ package recipes
 import (
 	"context"
 	"fmt"
-	"math"
 
-	"ringbook/recipes/page"
 	"ringbook/snubber"
-	"ringbook/snubber/quantity"
 	"ringbook/snubber/waveform"
 )
 
@@ -95,59 +92,4 @@ func (c *Captured) Readings() []snubber.Reading {
 		}
 	}
 	return out
-}
-
-// estimated is a waveform's figure as a table's cell.
-func estimated(f *waveform.Figure) any {
-	if f == nil {
-		return nil
-	}
-	return snubber.Estimate{Value: f.Value, U: f.U, Low: f.Low, High: f.High}
-}
-
-// Waveform is the page of a captured edge.
-func Waveform(p *page.Page, c *Captured) {
-	span := float64(c.Samples) * c.Interval
-	what := fmt.Sprintf("%d samples, %s apart, %s in all", c.Samples, quantity.Format(c.Interval, quantity.Time, 3), quantity.Format(span, quantity.Time, 3))
-	if c.Captures > 1 {
-		what = fmt.Sprintf("the mean of %d captures: ", c.Captures) + what
-	}
-	p.Say("%s.", upper(what))
-	edge := "falling"
-	if c.Rising {
-		edge = "rising"
-	}
-	if !c.Ringing {
-		p.Say("**No ring stands out of the noise.**")
-	}
-	remark := ""
-	if c.PeakV != nil && math.Abs(c.PeakFitV-c.PeakSampleV) > 3*math.Max(c.PeakV.U, c.NoiseV) {
-		remark = fmt.Sprintf("by the curve; the highest sample is %s", quantity.Format(c.PeakSampleV, quantity.Voltage, 4))
-	}
-	figures := []page.Figure{
-		{Name: "ring frequency, as seen", CSV: "ring_hz", Unit: quantity.Frequency, Value: estimated(c.RingHz)},
-		{Name: "decay, 1/e", CSV: "decay_s", Unit: quantity.Time, Value: estimated(c.DecayS)},
-		{Name: "damping ratio", CSV: "damping_ratio", Unit: quantity.Ratio, Value: estimated(c.DampingRatio)},
-		{Name: "peak", CSV: "peak_v", Unit: quantity.Voltage, Value: estimated(c.PeakV), Remark: remark},
-		{Name: "settled", CSV: "settled_v", Unit: quantity.Voltage, Value: estimated(c.SettledV)},
-		{Name: "edge at", CSV: "edge_s", Unit: quantity.Time, Value: c.EdgeS, Remark: edge},
-	}
-	if c.Ringing {
-		figures = append(figures, page.Figure{Name: "ring over noise", CSV: "snr_db", Value: fmt.Sprintf("%.1f dB", c.SNRdB), Remark: "amplitude squared over twice the noise's variance"})
-	}
-	if s := c.Second; s != nil {
-		figures = append(figures, page.Figure{Name: "second ring", CSV: "second_hz", Unit: quantity.Frequency, Value: estimated(&s.Hz),
-			Remark: fmt.Sprintf("%s of %s", quantity.Format(s.AmplitudeV, quantity.Voltage, 3), quantity.Format(c.AmplitudeV, quantity.Voltage, 3))})
-	}
-	if c.Line != nil {
-		figures = append(figures, page.Figure{Name: "its line in the spectrum", CSV: "line_v", Unit: quantity.Voltage, Value: c.Line.V,
-			Remark: fmt.Sprintf("%.1f dB(µV) rms at %s, %v window over the whole record", c.Line.DBuV, quantity.Format(c.Line.Hz, quantity.Frequency, 4), c.Spectrum.Window)})
-	}
-	p.Figures(figures...)
-	if x := c.Change; x != nil {
-		p.Say("At %s the spectrum lies %.1f dB %s that of %s.", quantity.Format(x.Hz, quantity.Frequency, 4), math.Abs(x.DB), map[bool]string{true: "below", false: "above"}[x.DB < 0], x.Origin)
-	}
-	for _, w := range c.Warnings {
-		p.Warn("%s.", w)
-	}
 }

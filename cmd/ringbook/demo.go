@@ -40,7 +40,7 @@ func demoCommand(a *app) *cobra.Command {
 		Short: "The whole job on a simulated bench over TCP: about ten seconds, no hardware",
 		Long: `demo serves a simulated bench on the loopback interface, runs a capacitor-substitution series on it, fits the loop,
 recommends a network, fits that network, and holds the peak it then measures against the prediction. The logbook goes
-to a new folder unless --logbook names a file.`,
+to a new folder unless --logbook names a file. The pages of the lab notebook are woven from it and left beside it.`,
 		Example: `  ringbook demo
   ringbook demo --logbook demo.db --json`,
 		Args: words(0, 0),
@@ -163,8 +163,12 @@ func (d *demo) trial(ctx context.Context, n snubber.Network) error {
 
 func (d *demo) report(ctx context.Context, src recipes.Source, fit *snubber.FitResult, rec *snubber.Recommendation, proof *recipes.Confirmation) error {
 	hidden := d.bench.Truth()
+	pages, err := d.pages(ctx, src)
+	if err != nil {
+		return err
+	}
 	if d.json {
-		return d.printJSON(map[string]any{"fit": fit, "recommendation": rec, "confirmation": proof, "logbook": d.lb.Path(),
+		return d.printJSON(map[string]any{"pages": pages, "fit": fit, "recommendation": rec, "confirmation": proof, "logbook": d.lb.Path(),
 			"hidden": map[string]float64{"inductance_h": hidden.Inductance, "capacitance_f": hidden.CapacitanceBus, "resistance_ohm": hidden.Resistance, "excitation_a": hidden.Apparent}})
 	}
 	loop := page.New("The loop of " + demoBoard + " " + demoRevision)
@@ -199,5 +203,13 @@ func (d *demo) report(ctx context.Context, src recipes.Source, fit *snubber.FitR
 			return err
 		}
 	}
-	return d.say("The logbook is %s\nLook on with: ringbook history --logbook %q", d.lb.Path(), d.lb.Path())
+	if err := d.say("The logbook is %s\nLook on with: ringbook history --logbook %q\n\nIts pages, woven from it:", d.lb.Path(), d.lb.Path()); err != nil {
+		return err
+	}
+	for _, name := range pages {
+		if err := d.say("  %s", name); err != nil {
+			return err
+		}
+	}
+	return nil
 }

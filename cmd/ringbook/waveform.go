@@ -2,6 +2,7 @@ package main
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"os"
 
@@ -15,7 +16,8 @@ import (
 )
 
 func waveformCommand(a *app) *cobra.Command {
-	var trial, against string
+	var trial, against, out string
+	var force bool
 	cmd := &cobra.Command{
 		Use:   "waveform [FILE...]",
 		Short: "Ring frequency, decay, peak and spectrum of a captured edge",
@@ -28,11 +30,20 @@ Several files are captures of one edge and are averaged, aligned to a fraction o
 that are logged with a trial, in place of files: the trial's own readings stay as they are.`,
 		Example: `  ringbook waveform edge.csv
   ringbook waveform edge-1.csv.gz edge-2.csv.gz edge-3.csv.gz --json
-  ringbook waveform with-snubber.csv --against bare.csv
+  ringbook waveform with-snubber.csv --against bare.csv -o with-snubber.html
   ringbook waveform --trial 8e1c04`,
 		Args: words(0, 1000),
 		RunE: func(cmd *cobra.Command, args []string) error {
 			ctx := cmd.Context()
+			var file *recipes.File
+			if out != "" {
+				var err error
+				if file, err = recipes.NewFile(out, force); errors.Is(err, recipes.ErrEnding) {
+					return &usageError{err}
+				} else if err != nil {
+					return fmt.Errorf("waveform: %w", err)
+				}
+			}
 			var records []waveform.Record
 			var err error
 			title := "The captured edge"
@@ -59,16 +70,23 @@ that are logged with a trial, in place of files: the trial's own readings stay a
 					return fmt.Errorf("waveform: %w", err)
 				}
 			}
+			p := page.New(title)
+			recipes.Waveform(p, got)
+			if file != nil {
+				if _, err := file.Write(p); err != nil {
+					return fmt.Errorf("waveform: %w", err)
+				}
+			}
 			if a.json {
 				return a.printJSON(got)
 			}
-			p := page.New(title)
-			recipes.Waveform(p, got)
 			return a.print(p)
 		},
 	}
 	cmd.Flags().StringVar(&trial, "trial", "", "`ID` of the trial whose logged captures to read")
 	cmd.Flags().StringVar(&against, "against", "", "`FILE` with the capture to compare the spectrum with, the bare node's, say")
+	cmd.Flags().StringVarP(&out, "out", "o", "", "write the page with its plots to `FILE` too: .html, .md, .csv, .tex or .txt")
+	cmd.Flags().BoolVar(&force, "force", false, "replace the file")
 	return cmd
 }
 
