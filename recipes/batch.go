@@ -9,6 +9,29 @@ import (
 	"path/filepath"
 )
 
+// Content is a file and what is to be in it.
+type Content struct {
+	Path string
+	Text []byte
+}
+
+// WriteAll writes all files, in one folder, or none: each under another name with .part in it, and when all are on the disk
+// each is given its own, the last one last. On an error everything is as it was. A program that is killed may leave files with
+// .part or .before in their names, and no file half written. Errors are ErrExists where a file exists and replace is false.
+func WriteAll(files []Content, replace bool) error {
+	var b batch
+	defer func() { b.discard() }()
+	for _, f := range files {
+		if err := b.stage(f.Path, f.Text, replace); err != nil {
+			return fmt.Errorf("write %q: %w; nothing was written", f.Path, err)
+		}
+	}
+	if err := b.commit(replace); err != nil {
+		return fmt.Errorf("write %q: %w; nothing was written", files[len(files)-1].Path, err)
+	}
+	return nil
+}
+
 // batch is files that shall all be written or none.
 type batch []*staged
 
@@ -23,9 +46,6 @@ type staged struct {
 // stage writes a file under another name in the same folder, and waits until it is on the disk.
 func (b *batch) stage(path string, content []byte, replace bool) (err error) {
 	if err := free(path, replace); err != nil {
-		if errors.Is(err, ErrExists) {
-			return fmt.Errorf("%s: %w", path, err)
-		}
 		return err
 	}
 	mode := fs.FileMode(0o666) // less what the user's mask takes

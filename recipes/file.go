@@ -90,9 +90,7 @@ func free(path string, replace bool) error {
 // Write writes the page, and the plots of Markdown (SVG) and LaTeX (PNG) beside it: those of loop.md are loop-1.svg,
 // loop-2.svg and so on. It gives the files' paths, the page's first.
 //
-// No file is ever half written: each is written under another name, with .part in it, and given its own when all are on
-// the disk, the page last. On an error everything is as it was. A program that is killed may leave files with .part or
-// .before in their names, and some new plots beside an old page.
+// They are written as by WriteAll, the page last: a program that is killed may leave some new plots beside an old page.
 func (f *File) Write(p *page.Page) (paths []string, err error) {
 	// What is replaced may be a link to a file; that file is meant.
 	path := f.path
@@ -101,33 +99,22 @@ func (f *File) Write(p *page.Page) (paths []string, err error) {
 	}
 	dir, ending := filepath.Dir(path), filepath.Ext(path)
 	stem := strings.TrimSuffix(filepath.Base(path), ending)
-	type content struct {
-		path string
-		text []byte
-	}
-	var all []content
+	var all []Content
 	var text bytes.Buffer
 	if err := f.form(p, &text, func(name string, plot []byte) (string, error) {
 		name = stem + strings.TrimPrefix(name, "plot")
-		all = append(all, content{filepath.Join(dir, name), plot})
+		all = append(all, Content{filepath.Join(dir, name), plot})
 		return name, nil
 	}); err != nil {
 		return nil, err
 	}
-	all = append(all, content{path, text.Bytes()})
-	var batch batch
-	defer batch.discard()
-	for _, c := range all {
-		if err := batch.stage(c.path, c.text, f.replace); err != nil {
-			return nil, fmt.Errorf("write the page to %q: %w; nothing was written", f.path, err)
-		}
-	}
-	if err := batch.commit(f.replace); err != nil {
-		return nil, fmt.Errorf("write the page to %q: %w; nothing was written", f.path, err)
+	all = append(all, Content{path, text.Bytes()})
+	if err := WriteAll(all, f.replace); err != nil {
+		return nil, err
 	}
 	paths = []string{f.path}
 	for _, c := range all[:len(all)-1] {
-		paths = append(paths, c.path)
+		paths = append(paths, c.Path)
 	}
 	return paths, nil
 }

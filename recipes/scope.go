@@ -14,9 +14,9 @@ import (
 var ErrSeveral = errors.New("each with a loop of its own")
 
 // OneRevision narrows a scope to the one board revision it holds. Errors are ErrSeveral where it holds several, and those of
-// Revisions.
+// RevisionsInScope.
 func OneRevision(ctx context.Context, lb *store.Logbook, s store.Scope) (store.Scope, error) {
-	revs, err := Revisions(ctx, lb, s)
+	revs, err := RevisionsInScope(ctx, lb, s)
 	if err != nil {
 		return s, err
 	}
@@ -27,9 +27,9 @@ func OneRevision(ctx context.Context, lb *store.Logbook, s store.Scope) (store.S
 	return s, nil
 }
 
-// Revisions are the board revisions with a trial in scope, one at least: where there is none, the error says what the
+// RevisionsInScope are the board revisions with a trial in scope, one at least: where there is none, the error says what the
 // logbook holds instead.
-func Revisions(ctx context.Context, lb *store.Logbook, s store.Scope) ([]store.Revision, error) {
+func RevisionsInScope(ctx context.Context, lb *store.Logbook, s store.Scope) ([]store.Revision, error) {
 	revs, err := lb.Revisions(ctx, s)
 	if err != nil || len(revs) > 0 {
 		return revs, err

@@ -21,7 +21,7 @@ type Woven struct {
 }
 
 // Page weaves the recipe's page, with its foot. An error or a panic of the recipe is given back with the page, where it
-// stands at its place. Without a page come: the errors of Revisions, and of OneRevision for a recipe of a single one; and
+// stands at its place. Without a page come: the errors of RevisionsInScope, and of OneRevision for a recipe of a single one; and
 // the end of ctx.
 func (r Recipe) Page(ctx context.Context, src Source) (*Woven, error) {
 	src.Scope.IncludeStruck = src.Scope.IncludeStruck || r.Struck
@@ -29,7 +29,7 @@ func (r Recipe) Page(ctx context.Context, src Source) (*Woven, error) {
 	if r.Single {
 		src.Scope, err = OneRevision(ctx, src.Logbook, src.Scope)
 	} else {
-		_, err = Revisions(ctx, src.Logbook, src.Scope)
+		_, err = RevisionsInScope(ctx, src.Logbook, src.Scope)
 	}
 	if err != nil {
 		return nil, err

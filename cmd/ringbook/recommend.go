@@ -7,8 +7,6 @@ import (
 	"ringbook/recipes"
 	"ringbook/recipes/page"
 	"ringbook/snubber"
-	"ringbook/snubber/preferred"
-	"ringbook/snubber/quantity"
 	"ringbook/store"
 
 	"github.com/spf13/cobra"
@@ -16,18 +14,7 @@ import (
 
 func recommendCommand(a *app) *cobra.Command {
 	var scope scopeFlags
-	var maxPeak quantity.Volt
-	var derate, minDamping, cTol, rTol quantity.Fraction
-	var maxLoss quantity.Watt
-	var hz quantity.Hertz
-	cSeries, rSeries := preferred.E12, preferred.E24
-	network := "rc"
-	var cOnHand, rOnHand []string
-	var settle quantity.Second
-	var band quantity.Fraction
-	var drop quantity.Volt
-	var diodeOhm quantity.Ohm
-	var ambient float64
+	var limits limitsFlags
 	var noRecord bool
 	cmd := &cobra.Command{
 		Use:   "recommend",
@@ -44,40 +31,16 @@ measured against; asked the same of the same trials, the decision stands. With -
 		Args: words(0, 0),
 		RunE: func(cmd *cobra.Command, args []string) (err error) {
 			ctx := cmd.Context()
-			kinds, ok := map[string][]snubber.Kind{"rc": {snubber.RC}, "c": {snubber.C}, "rcd": {snubber.RCD}, "any": {snubber.C, snubber.RC, snubber.RCD}}[network]
-			if !ok {
-				return usagef("--network %q: it must be one of rc, c, rcd, any", network)
-			}
-			cs, err := partsOnHand("c-on-hand", cOnHand, func() flagValue { return new(quantity.Farad) })
+			keep, err := limits.read()
 			if err != nil {
 				return err
-			}
-			rs, err := partsOnHand("r-on-hand", rOnHand, func() flagValue { return new(quantity.Ohm) })
-			if err != nil {
-				return err
-			}
-			for _, tol := range []struct {
-				flag  string
-				value quantity.Fraction
-			}{{"c-tol", cTol}, {"r-tol", rTol}} {
-				if tol.value >= 1 {
-					return usagef("--%s %v: a part of that tolerance may be nothing at all; write for example 5%%", tol.flag, tol.value)
-				}
 			}
 			src, err := a.source(ctx, &scope)
 			if err != nil {
 				return err
 			}
 			defer closing(src.Logbook, &err)
-			src.Limits = recipes.Request{
-				Limits: snubber.Limits{
-					MaxPeak: float64(maxPeak), MinDamping: float64(minDamping), MaxLoss: float64(maxLoss),
-					SwitchingHz: float64(hz), CSeries: cSeries, RSeries: rSeries, CTol: float64(cTol), RTol: float64(rTol),
-					Kinds: kinds, OnHandC: cs, OnHandR: rs, SettleS: float64(settle), SettleBand: float64(band),
-					DiodeDrop: float64(drop), DiodeOhm: float64(diodeOhm), AmbientC: ambient,
-				},
-				Derate: float64(derate),
-			}
+			src.Limits = keep
 			fit, rec, err := recipes.Recommendation(ctx, src)
 			if err != nil {
 				return err
@@ -105,49 +68,9 @@ measured against; asked the same of the same trials, the decision stands. With -
 		},
 	}
 	scope.add(cmd)
-	f := cmd.Flags()
-	f.Var(&maxPeak, "max-peak", "highest voltage allowed across the switch")
-	f.Var(&derate, "derate", "share of the device's rating taken as the limit without --max-peak (80%)")
-	f.Var(&minDamping, "min-damping", "least damping ratio of the ring")
-	f.Var(&maxLoss, "max-loss", "most power the ring and the network may lose")
-	f.Var(&hz, "switching-hz", "switching frequency, where the trials state none or another is meant")
-	f.Var(&cTol, "c-tol", "tolerance of the capacitor to buy, such as 5%")
-	f.Var(&rTol, "r-tol", "tolerance of the resistor to buy, such as 1%")
-	f.Var(&cSeries, "c-series", "IEC 60063 series of the capacitor")
-	f.Var(&rSeries, "r-series", "IEC 60063 series of the resistor")
-	f.BoolVar(&noRecord, "no-record", false, "log no decision")
-	f.StringVar(&network, "network", network, "`KIND` to recommend: rc, c, rcd, or any of them")
-	f.StringSliceVar(&cOnHand, "c-on-hand", nil, "choose among these `CAPACITORS` alone, such as 270p,330p")
-	f.StringSliceVar(&rOnHand, "r-on-hand", nil, "choose among these `RESISTORS` alone, such as 4R7,10R")
-	f.Var(&settle, "settle-s", "time from which the node must stay near the bus")
-	f.Var(&band, "settle-band", "how near, as a share of the bus (5%)")
-	f.Var(&drop, "diode-drop", "forward drop of the diode of an rcd network (0.8V)")
-	f.Var(&diodeOhm, "diode-ohm", "its on-resistance (100m)")
-	f.Float64Var(&ambient, "ambient-c", 25, "temperature where the resistor is, degrees Celsius")
-	completes(cmd, "network", "rc", "c", "rcd", "any")
+	limits.add(cmd)
+	cmd.Flags().BoolVar(&noRecord, "no-record", false, "log no decision")
 	return cmd
-}
-
-type flagValue interface {
-	Set(string) error
-}
-
-// partsOnHand reads the values of the parts on hand; nil where none is named.
-func partsOnHand(flag string, texts []string, make func() flagValue) ([]float64, error) {
-	var values []float64
-	for _, text := range texts {
-		v := make()
-		if err := v.Set(text); err != nil {
-			return nil, usagef("--%s: %w", flag, err)
-		}
-		switch v := v.(type) {
-		case *quantity.Farad:
-			values = append(values, float64(*v))
-		case *quantity.Ohm:
-			values = append(values, float64(*v))
-		}
-	}
-	return values, nil
 }
 
 // decide logs the recommendation as a decision and says so. The answer does not depend on the log: where it cannot be

@@ -28,7 +28,7 @@ func trialList(a *app) *cobra.Command {
 				return err
 			}
 			defer closing(lb, &err)
-			revs, err := recipes.Revisions(ctx, lb, scope)
+			revs, err := recipes.RevisionsInScope(ctx, lb, scope)
 			if err != nil {
 				return err
 			}
