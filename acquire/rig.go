@@ -27,8 +27,14 @@ type Instrument struct {
 	Timeout      time.Duration // longest wait for one reply; 0: scpi.DefaultTimeout
 	Terminator   string        // what ends a message sent: "\n", "\r\n", "\r"; "": "\n"
 	NoErrorQueue bool          // it does not know SYSTem:ERRor?
-	Setup        []string      // messages sent once, when the rig is opened
+	Pace         time.Duration // least time between one message's end and the next one's beginning; 0: none
+	Prompt       string        // what it writes before or behind its replies; "": nothing
+	Echo         bool          // it repeats each message before it answers
+	Reopen       time.Duration // how long a lost link is opened again; 0: DefaultReopen; below 0: it is not
+	NoSelfTest   bool          // an instrument check does not ask for *TST?
+	Setup        []string      // messages sent when the link is opened, and when it is opened again
 	Fit          string        // the command that fits a network, with {network}, {c} and {r}; "": none
+	Output       *BusSwitch    // how it switches the bus; nil: it does not
 	Readings     []Query       // what it reads
 	Waveform     *Waveform     // how its samples are had; nil: it gives none
 }
@@ -92,7 +98,7 @@ func (e *RigError) Unwrap() error { return e.Err }
 func (r Rig) Check() error {
 	names := map[string]bool{}
 	provider := map[snubber.Quantity]string{}
-	fitter, sampler := "", ""
+	fitter, sampler, switcher := "", "", ""
 	for _, in := range r.Instruments {
 		if names[in.Name] {
 			return in.wrong("", "a second instrument of this name")
@@ -112,6 +118,12 @@ func (r Rig) Check() error {
 		}
 		if in.Fit != "" {
 			fitter = in.Name
+		}
+		if in.Output != nil && switcher != "" {
+			return in.wrong("output", "%s switches the bus already: take one of the two out", switcher)
+		}
+		if in.Output != nil {
+			switcher = in.Name
 		}
 		if in.Waveform != nil && sampler != "" {
 			return in.wrong("waveform", "%s takes the waveform already: take one of the two out", sampler)
@@ -146,6 +158,9 @@ func (in Instrument) check() error {
 	if !slices.Contains([]string{"", "\n", "\r\n", "\r"}, in.Terminator) {
 		return in.wrong("terminator", "%q: it must be LF, CR LF or CR", in.Terminator)
 	}
+	if key, err := in.checkManners(); err != nil {
+		return in.wrong(key, "%w", err)
+	}
 	for _, m := range in.Setup {
 		if _, _, err := scpi.ParseUnit(m); err != nil {
 			return in.wrong("setup", "%w", err)
@@ -154,6 +169,11 @@ func (in Instrument) check() error {
 	if in.Fit != "" {
 		if _, err := fitMessage(in.Fit, snubber.Network{Kind: snubber.RC, C: 1e-9, R: 10}); err != nil {
 			return in.wrong("fit", "%w", err)
+		}
+	}
+	if in.Output != nil {
+		if key, err := in.Output.check(); err != nil {
+			return in.wrong(strings.TrimSuffix("output."+key, "."), "%w", err)
 		}
 	}
 	for _, q := range in.Readings {

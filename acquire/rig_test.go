@@ -21,7 +21,7 @@ func TestLoadRig(t *testing.T) {
 		t.Fatal(err)
 	}
 	want := acquire.Rig{Instruments: []acquire.Instrument{
-		{Name: "jig", Address: "tcp://192.0.2.12", NoErrorQueue: true, Fit: "ROUTe:NETWork {network},{c},{r}"},
+		{Name: "jig", Address: "tcp://192.0.2.12", NoErrorQueue: true, NoSelfTest: true, Fit: "ROUTe:NETWork {network},{c},{r}"},
 		{
 			Name: "scope", Address: "tcp://192.0.2.10:5025", Timeout: 8 * time.Second, Setup: []string{"*CLS", "MEASure:SOURce CHANnel1"},
 			Readings: []acquire.Query{

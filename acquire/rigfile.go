@@ -7,7 +7,6 @@ import (
 	"os"
 	"slices"
 	"strings"
-	"time"
 
 	"github.com/BurntSushi/toml"
 
@@ -36,10 +35,17 @@ type instrumentFile struct {
 	Timeout    *string                `toml:"timeout"`
 	Terminator *string                `toml:"terminator"`
 	ErrorQueue *bool                  `toml:"error_queue"`
+	Pace       *string                `toml:"pace"`
+	Prompt     *string                `toml:"prompt"`
+	Echo       bool                   `toml:"echo"`
+	Reopen     *string                `toml:"reopen"`
+	SelfTest   *bool                  `toml:"self_test"`
+	Follows    *string                `toml:"follows"`
 	Setup      []string               `toml:"setup"`
 	Fit        *string                `toml:"fit"`
 	Reading    map[string]readingFile `toml:"reading"`
 	Waveform   *waveformFile          `toml:"waveform"`
+	Output     *outputFile            `toml:"output"`
 }
 
 type readingFile struct {
@@ -89,19 +95,8 @@ func ParseRig(name string, data []byte) (Rig, error) {
 
 func (f instrumentFile) instrument(name string) (Instrument, error) {
 	in := Instrument{Name: name, Address: f.Address, Setup: f.Setup, NoErrorQueue: f.ErrorQueue != nil && !*f.ErrorQueue}
-	if f.Timeout != nil {
-		d, err := time.ParseDuration(*f.Timeout)
-		if err != nil || d <= 0 {
-			return in, in.wrong("timeout", "%q: write a time longer than nothing with its unit, such as 500ms or 8s", *f.Timeout)
-		}
-		in.Timeout = d
-	}
-	if f.Terminator != nil {
-		end, ok := map[string]string{"lf": "\n", "crlf": "\r\n", "cr": "\r"}[*f.Terminator]
-		if !ok {
-			return in, in.wrong("terminator", "%q: it must be lf, crlf or cr", *f.Terminator)
-		}
-		in.Terminator = end
+	if key, err := f.manners(&in); err != nil {
+		return in, in.wrong(key, "%w", err)
 	}
 	if f.Fit != nil {
 		if in.Fit = *f.Fit; in.Fit == "" {
@@ -111,6 +106,12 @@ func (f instrumentFile) instrument(name string) (Instrument, error) {
 	for _, quantity := range slices.Sorted(maps.Keys(f.Reading)) {
 		r := f.Reading[quantity]
 		q := Query{Quantity: snubber.Quantity(quantity), Query: r.Query, Accuracy: Accuracy(r.Accuracy)}
+		if q.Query == "" && f.Follows != nil {
+			var err error
+			if q.Query, err = measureTree(q.Quantity); err != nil {
+				return in, in.wrong("reading."+quantity, "%w", err)
+			}
+		}
 		if r.Scale != nil {
 			if q.Scale = *r.Scale; q.Scale == 0 {
 				return in, in.wrong("reading."+quantity+".scale", "0: every reading would be nothing")
@@ -130,6 +131,13 @@ func (f instrumentFile) instrument(name string) (Instrument, error) {
 		}
 		in.Waveform = &w
 	}
+	if f.Output != nil {
+		o, key, err := f.Output.output()
+		if err != nil {
+			return in, in.wrong("output."+key, "%w", err)
+		}
+		in.Output = &o
+	}
 	return in, nil
 }
 
@@ -139,7 +147,10 @@ func keysAt(key toml.Key) string {
 	case len(key) == 1:
 		return "the file holds [instrument.NAME] tables"
 	case len(key) == 3:
-		return "an instrument has address, timeout, terminator, error_queue, setup, fit, [instrument.NAME.waveform] and [instrument.NAME.reading.QUANTITY] tables"
+		return "an instrument has address, timeout, terminator, pace, prompt, echo, error_queue, self_test, reopen, setup, follows, fit, " +
+			"[instrument.NAME.output], [instrument.NAME.waveform] and [instrument.NAME.reading.QUANTITY] tables"
+	case len(key) > 3 && key[2] == "output":
+		return "an output has on, off, state and settle"
 	case len(key) > 3 && key[2] == "waveform":
 		return "a waveform has take, query, format, byte_order, preamble, preamble_fields, scale, accuracy, " + strings.Join(scalings(), ", ")
 	case len(key) == 5:

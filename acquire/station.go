@@ -21,6 +21,7 @@ type instrument struct {
 	Instrument
 	identity string // its *IDN? answer
 	conn     *scpi.Conn
+	left     *scpi.InstrumentError // what its error queue held when it was opened; nil: nothing
 }
 
 // Opener opens the link an address names, as wire.Open does.
@@ -91,7 +92,9 @@ func (in *instrument) open(ctx context.Context, open Opener) error {
 	if err != nil {
 		return err
 	}
-	in.conn, err = scpi.NewConn(link, scpi.Options{Timeout: in.Timeout, Terminator: in.Terminator, NoErrorQueue: in.NoErrorQueue})
+	in.conn, err = scpi.NewConn(link, scpi.Options{
+		Timeout: in.Timeout, Terminator: in.Terminator, Pace: in.Pace, Prompt: in.Prompt, Echo: in.Echo, NoErrorQueue: in.NoErrorQueue,
+	})
 	if err != nil {
 		link.Close()
 		return err
@@ -116,6 +119,7 @@ func (in *instrument) greet(ctx context.Context) (err error) {
 		}
 		in.identity, err = in.conn.Identity(ctx)
 	case errors.As(err, &left):
+		in.left = left
 		in.identity, err = in.conn.Identity(ctx)
 	}
 	if err != nil {

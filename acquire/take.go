@@ -60,7 +60,7 @@ func (in *instrument) repeat(ctx context.Context, q Query, progress func(Progres
 	}
 	var values []float64
 	for i := range q.repeats() {
-		v, err := in.once(ctx, q)
+		v, _, err := in.once(ctx, q)
 		if err != nil && !errors.Is(err, scpi.ErrNoReading) {
 			return nil, err
 		}
@@ -74,26 +74,25 @@ func (in *instrument) repeat(ctx context.Context, q Query, progress func(Progres
 	return values, nil
 }
 
-// once asks once. Without a reading it gives NaN and ErrNoReading.
-func (in *instrument) once(ctx context.Context, q Query) (v float64, err error) {
+// once asks once, and gives the reply as it came too. Without a reading it gives NaN and ErrNoReading.
+func (in *instrument) once(ctx context.Context, q Query) (v float64, raw string, err error) {
 	header, args, err := scpi.ParseUnit(q.Query)
 	if err != nil {
-		return math.NaN(), err
+		return math.NaN(), "", err
 	}
-	var raw string
 	err = in.conn.QueryFunc(ctx, func(reply string) (err error) {
 		raw = reply
 		v, err = scpi.ParseNumber(reply)
 		return err
 	}, header, args...)
 	if err != nil {
-		return math.NaN(), err
+		return math.NaN(), raw, err
 	}
 	v *= q.scale()
 	if why := impossible(q.Quantity, v); why != "" {
-		return math.NaN(), fmt.Errorf("reply %q to %q is %s = %g: %s", raw, q.Query, q.Quantity, v, why)
+		return math.NaN(), raw, fmt.Errorf("reply %q to %q is %s = %g: %s", raw, q.Query, q.Quantity, v, why)
 	}
-	return v, nil
+	return v, raw, nil
 }
 
 // impossible says why a quantity cannot have this value; "" when it can.

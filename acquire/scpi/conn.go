@@ -24,6 +24,10 @@ type Options struct {
 	MaxReply     int           // longest reply kept here, bytes; 0: DefaultMaxReply
 	MaxErrors    int           // most reads of the error queue after one message; 0: DefaultMaxErrors
 	NoErrorQueue bool          // the instrument does not know SYSTem:ERRor?; see Staying in step for the price
+	Pace         time.Duration // least time between the end of one exchange and the next message; 0: none
+	Prompt       string        // what it writes before or behind its replies, such as ">"; "": nothing
+	Echo         bool          // it repeats each message, as a line, before it answers
+	Identity     string        // the *IDN? answer that Resync shall hear; "": the first that was heard
 }
 
 // Conn is a dialogue with one instrument. It is for one goroutine at a time; only Close may be called
@@ -33,11 +37,13 @@ type Conn struct {
 	link     deadliner // nil where rwc has no deadlines
 	r        *bufio.Reader
 	opt      Options
-	identity string  // the first *IDN? answer
-	lost     error   // why replies can no longer be told apart; nil: in step
-	wait     *wait   // the one under way; nil: none
-	patient  bool    // every read has the whole timeout anew
-	skipped  *string // where line puts the blanks before the next line; nil: nowhere
+	identity string    // the first *IDN? answer
+	lost     error     // why replies can no longer be told apart; nil: in step
+	wait     *wait     // the one under way; nil: none
+	patient  bool      // every read has the whole timeout anew
+	skipped  *string   // where line puts the blanks before the next line; nil: nowhere
+	clearing bool      // Resync is under way, and echoes are as good as anything
+	idle     time.Time // when the last exchange ended
 }
 
 // NewConn starts a dialogue over rwc, which the Conn then owns. Where rwc has SetDeadline, as a net.Conn
@@ -50,11 +56,8 @@ func NewConn(rwc io.ReadWriteCloser, opt Options) (*Conn, error) {
 	default:
 		return nil, fmt.Errorf("terminator %q: it must be LF, CR LF or CR", opt.Terminator)
 	}
-	if opt.Timeout < 0 || opt.MaxReply < 0 || opt.MaxErrors < 0 {
-		return nil, errors.New("timeout, longest reply and most errors must not be negative; 0 means the default")
-	}
-	if opt.Timeout == 0 {
-		opt.Timeout = DefaultTimeout
+	if opt.Timeout < 0 || opt.MaxReply < 0 || opt.MaxErrors < 0 || opt.Pace < 0 {
+		return nil, errors.New("timeout, longest reply, most errors and pace must not be negative; 0 means the default")
 	}
 	if opt.MaxReply == 0 {
 		opt.MaxReply = DefaultMaxReply
@@ -63,9 +66,18 @@ func NewConn(rwc io.ReadWriteCloser, opt Options) (*Conn, error) {
 		opt.MaxErrors = DefaultMaxErrors
 	}
 	link, _ := rwc.(deadliner)
-	c := &Conn{rwc: rwc, link: link, opt: opt}
+	c := &Conn{rwc: rwc, link: link, opt: opt, identity: opt.Identity}
+	c.SetTimeout(opt.Timeout)
 	c.r = bufio.NewReader(pulse{c})
 	return c, nil
+}
+
+// SetTimeout changes Options.Timeout for the exchanges to come, as for a self-test; 0 or less: DefaultTimeout.
+func (c *Conn) SetTimeout(d time.Duration) {
+	if d <= 0 {
+		d = DefaultTimeout
+	}
+	c.opt.Timeout = d
 }
 
 // Close closes the link.
@@ -111,21 +123,28 @@ func (c *Conn) fall(err error) error {
 }
 
 func (c *Conn) send(ctx context.Context, msg string) error {
-	err := c.within(ctx, c.opt.Timeout, func() error {
-		_, err := io.WriteString(c.rwc, msg+c.opt.Terminator)
+	if err := c.pause(ctx); err != nil {
 		return err
-	})
-	if err != nil {
-		return c.fall(&LinkError{Command: msg, Err: err})
 	}
-	return nil
+	err := c.within(ctx, c.opt.Timeout, func() error { return c.say(msg) })
+	var nonsense *ReplyError
+	switch {
+	case err == nil:
+		return nil
+	case errors.As(err, &nonsense):
+		return c.fall(&ReplyError{Command: msg, Reply: nonsense.Reply, Err: nonsense.Err})
+	}
+	return c.fall(&LinkError{Command: msg, Err: err})
 }
 
 // ask sends msg and reads its reply with read, which gives what it got even when it fails.
 func (c *Conn) ask(ctx context.Context, msg string, timeout time.Duration, read func() ([]byte, error)) (string, error) {
+	if err := c.pause(ctx); err != nil {
+		return "", err
+	}
 	var got []byte
 	err := c.within(ctx, timeout, func() error {
-		if _, err := io.WriteString(c.rwc, msg+c.opt.Terminator); err != nil {
+		if err := c.say(msg); err != nil {
 			return err
 		}
 		var err error
@@ -142,9 +161,12 @@ func (c *Conn) ask(ctx context.Context, msg string, timeout time.Duration, read 
 	default:
 		return "", c.fall(&LinkError{Command: msg, Got: string(got), Err: err})
 	}
+	if string(got) == strings.Trim(msg, blanks) {
+		return "", c.fall(&ReplyError{Command: msg, Reply: string(got), Err: ErrEcho})
+	}
 	// More at once after a reply means that one of the two was for an earlier question. Which, nobody can say.
 	extra, _ := c.r.Peek(c.r.Buffered())
-	if more := strings.Trim(string(extra), "\r\n \t\x00"); more != "" {
+	if more := strings.Trim(c.withoutPrompt(string(extra)), blanks); more != "" {
 		return "", c.fall(&ReplyError{Command: msg, Reply: string(got), Err: fmt.Errorf("more came at once after it: %s", quote(more))})
 	}
 	return string(got), nil
@@ -152,6 +174,9 @@ func (c *Conn) ask(ctx context.Context, msg string, timeout time.Duration, read 
 
 // line reads a reply that is one line of text.
 func (c *Conn) line() ([]byte, error) {
+	if err := c.skipPrompt(); err != nil {
+		return nil, err
+	}
 	head, skipped, err := skipBlanks(c.r)
 	if c.skipped != nil {
 		*c.skipped, c.skipped = skipped, nil

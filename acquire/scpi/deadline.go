@@ -38,6 +38,9 @@ func (c *Conn) within(ctx context.Context, timeout time.Duration, do func() erro
 	})
 	err := do()
 	c.wait = nil
+	if c.opt.Pace > 0 {
+		c.idle = time.Now()
+	}
 	if !stop() {
 		<-ended // or its deadline in the past could fall upon the next exchange
 	}

@@ -18,6 +18,15 @@ var ErrNoReading = errors.New("no reading")
 // Resync the Conn, or open the link again.
 var ErrOutOfStep = errors.New("link out of step")
 
+// ErrOtherInstrument says that another instrument answers than before.
+var ErrOtherInstrument = errors.New("another instrument answers than before")
+
+// ErrEcho says that what answers only repeats what it is sent.
+var ErrEcho = errors.New("it only repeats what was sent")
+
+// ErrUnasked says that something came before it was asked for.
+var ErrUnasked = errors.New("it came before anything was asked")
+
 // InstrumentError is an error out of the instrument's own error queue.
 type InstrumentError struct {
 	Command string            // the program message after which the queue was read
@@ -27,12 +36,35 @@ type InstrumentError struct {
 	Endless bool              // the queue was not empty after the most reads allowed
 }
 
-// Error quotes every entry, with the class of the first.
+// Entries gives what stood in the queue as the instrument wrote it, number and text, oldest first.
+func (e *InstrumentError) Entries() []string {
+	all := []string{e.entry()}
+	for _, t := range e.Then {
+		all = append(all, t.entry())
+	}
+	return all
+}
+
+func (e *InstrumentError) entry() string {
+	return fmt.Sprintf("%d,\"%s\"", e.Number, harmless(e.Text))
+}
+
+// harmless takes out of a text what might upset a terminal.
+func harmless(s string) string {
+	return strings.Map(func(c rune) rune {
+		if c < ' ' || c > 0x7e {
+			return '.'
+		}
+		return c
+	}, s)
+}
+
+// Error gives every entry in the instrument's words, with the class of the first.
 func (e *InstrumentError) Error() string {
 	var b strings.Builder
-	fmt.Fprintf(&b, "instrument error %d %s (%s) after %s", e.Number, quote(e.Text), ClassOf(e.Number), quote(e.Command))
+	fmt.Fprintf(&b, "instrument error %d \"%s\" (%s) after %s", e.Number, harmless(e.Text), ClassOf(e.Number), quote(e.Command))
 	for _, t := range e.Then {
-		fmt.Fprintf(&b, ", then %d %s", t.Number, quote(t.Text))
+		fmt.Fprintf(&b, ", then %d \"%s\"", t.Number, harmless(t.Text))
 	}
 	if e.overflowed() {
 		b.WriteString("; the queue overflowed, so later errors are lost")

@@ -78,6 +78,9 @@ func (c *Conn) query(ctx context.Context, read func() ([]byte, error), parse fun
 	if err != nil {
 		return err
 	}
+	if err := c.unasked(ctx, msg); err != nil {
+		return err
+	}
 	reply, err := c.ask(ctx, msg, c.opt.Timeout, read)
 	if err != nil {
 		if why := c.whySilent(ctx, msg, err); why != nil {
@@ -85,7 +88,7 @@ func (c *Conn) query(ctx context.Context, read func() ([]byte, error), parse fun
 		}
 		return err
 	}
-	perr := parse(reply)
+	perr := parse(stripHeader(msg, reply))
 	if perr != nil && !errors.Is(perr, ErrNoReading) {
 		return c.fall(&ReplyError{Command: msg, Reply: reply, Err: perr})
 	}

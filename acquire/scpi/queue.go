@@ -8,6 +8,15 @@ import (
 // errorQuery is the long form: SCPI-1999, Volume 2, 21.8.8.
 const errorQuery = "SYSTem:ERRor?"
 
+// ReadErrors empties the error queue. What stood there is the *InstrumentError returned; nil: nothing, or the
+// instrument has no queue.
+func (c *Conn) ReadErrors(ctx context.Context) error {
+	if err := c.ready(ctx); err != nil {
+		return err
+	}
+	return c.emptyQueue(ctx, errorQuery)
+}
+
 // emptyQueue reads the error queue until it says 0. What stood there is the *InstrumentError returned.
 func (c *Conn) emptyQueue(ctx context.Context, msg string) error {
 	if c.opt.NoErrorQueue {
@@ -23,7 +32,7 @@ func (c *Conn) readQueue(ctx context.Context, msg string, timeout time.Duration)
 		if err != nil {
 			return err
 		}
-		number, text, err := ParseErrorEntry(reply)
+		number, text, err := ParseErrorEntry(stripHeader(errorQuery, reply))
 		if err != nil {
 			return c.fall(&ReplyError{Command: errorQuery, Reply: reply, Err: err})
 		}

@@ -30,6 +30,8 @@ func (c *Conn) Resync(ctx context.Context) error {
 	if err := c.discard(ctx); err != nil {
 		return fmt.Errorf("clear the link: %w", c.fall(&LinkError{Command: "*IDN?", Err: err}))
 	}
+	c.clearing = true
+	defer func() { c.clearing = false }()
 	id, err := c.ask(ctx, c.opt.Terminator+"*IDN?", c.opt.Timeout, c.identityLine)
 	if err != nil {
 		return fmt.Errorf("clear the link: %w", err)
@@ -46,13 +48,20 @@ func (c *Conn) Resync(ctx context.Context) error {
 // it on the same line.
 func (c *Conn) identityLine() ([]byte, error) {
 	var line []byte
+	var other string // an identity that is another's
 	var err error
 	for range staleLines {
 		line, err = readLine(c.r, c.opt.MaxReply, nil, "\r\n")
+		if err != nil && other != "" && errors.Is(err, os.ErrDeadlineExceeded) {
+			return line, &ReplyError{Reply: other, Err: fmt.Errorf("%w, which was %s", ErrOtherInstrument, quote(c.identity))}
+		}
 		if err != nil {
 			return line, midway(err)
 		}
-		text := strings.Trim(string(line), " \t")
+		text := strings.Trim(strings.TrimPrefix(string(line), c.opt.Prompt), blanks)
+		if c.identity != "" && checkText(text) == nil && checkIdentity(text) == nil {
+			other = text
+		}
 		if c.identity != "" && strings.HasSuffix(text, c.identity) {
 			return []byte(c.identity), nil
 		}

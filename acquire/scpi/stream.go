@@ -55,13 +55,19 @@ func (c *Conn) stream(ctx context.Context, open func(*bufio.Reader) (*incoming, 
 	if err != nil {
 		return err
 	}
+	if err := c.pause(ctx); err != nil {
+		return err
+	}
 	in := &incoming{}
 	err = c.within(ctx, c.opt.Timeout, func() error {
-		if _, err := io.WriteString(c.rwc, msg+c.opt.Terminator); err != nil {
+		if err := c.say(msg); err != nil {
 			return err
 		}
 		c.patient = true
 		defer func() { c.patient = false }()
+		if err := c.skipPrompt(); err != nil {
+			return err
+		}
 		var err error
 		if in, err = open(c.r); errors.Is(err, errNotBlock) {
 			return &ReplyError{Reply: in.head + c.restOfLine(), Err: err}

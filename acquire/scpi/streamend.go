@@ -18,7 +18,7 @@ func (c *Conn) checkEnd(ctx context.Context, msg string, in *incoming) error {
 		}
 	}
 	behind, _ := c.r.Peek(c.r.Buffered())
-	if err := in.surplus(string(behind)); err != nil {
+	if err := in.surplus(c.withoutPrompt(string(behind))); err != nil {
 		return c.fall(&ReplyError{Command: msg, Reply: in.head, Err: err})
 	}
 	var before string
