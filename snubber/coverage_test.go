@@ -37,3 +37,43 @@ func TestCoverageFactor(t *testing.T) {
 		}
 	}
 }
+
+// The probability inside an interval: 95 % within the factor, Student's and the normal's where they are meant, and that of
+// draws elsewhere (to what 400,000 of them tell).
+func TestLawInside(t *testing.T) {
+	rng := rand.New(rand.NewPCG(3, 2))
+	for _, l := range []law{{}, {dof: 4}, {shares: []float64{0.95}}, {shares: []float64{0.7, -0.6}}, {shares: []float64{0.9}, dof: 6}} {
+		if p := l.inside(l.factor()); math.Abs(p-0.95) > 1e-5 {
+			t.Errorf("%+v: %g within the factor", l, p)
+		}
+		if l.inside(0) > 1e-9 || l.inside(40) < 0.9999 || l.inside(7) < l.inside(5)-1e-9 {
+			t.Errorf("%+v: %g at 0, %g at 5, %g at 7, %g at 40", l, l.inside(0), l.inside(5), l.inside(7), l.inside(40))
+		}
+		if l.dof > 0 {
+			continue
+		}
+		rest := 1.0
+		for _, w := range l.shares {
+			rest -= w * w
+		}
+		for _, z := range []float64{0.3, 1, 2} {
+			const n = 400_000
+			held := 0
+			for range n {
+				x := math.Sqrt(rest) * rng.NormFloat64()
+				for _, w := range l.shares {
+					x += w * math.Sqrt(3) * (2*rng.Float64() - 1)
+				}
+				if math.Abs(x) <= z {
+					held++
+				}
+			}
+			if got, want := l.inside(z), float64(held)/n; math.Abs(got-want) > 0.004 {
+				t.Errorf("%+v: %.4f within %g, draws %.4f", l, got, z, want)
+			}
+		}
+	}
+	if p, want := (law{dof: 4}).inside(3), 0.960058; math.Abs(p-want) > 1e-6 { // Student's t, 4 degrees of freedom: 1 - 2 * 0.019971
+		t.Errorf("Student's: %.7f", p)
+	}
+}

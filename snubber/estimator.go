@@ -7,7 +7,6 @@ import (
 
 	"gonum.org/v1/gonum/floats"
 	"gonum.org/v1/gonum/mat"
-	"gonum.org/v1/gonum/stat/distuv"
 )
 
 // estimator turns derivatives by the fit's shared parameters into estimates with their 95 % intervals.
@@ -28,48 +27,52 @@ type readRow struct {
 
 // relative is an estimate of a positive quantity whose logarithm has gradient g: its interval is even in ratio.
 func (e *estimator) relative(value float64, g []float64) *Estimate {
-	u, k, dof := e.spread(g)
-	return &Estimate{Value: value, U: value * u, Low: value * math.Exp(-k*u), High: value * math.Exp(k*u), DOF: dof}
+	u, law := e.spread(g, 0)
+	k := law.factor()
+	return &Estimate{Value: value, U: value * u, Low: value * math.Exp(-k*u), High: value * math.Exp(k*u), DOF: law.dof}
 }
 
 // absolute is an estimate of a quantity with gradient g.
 func (e *estimator) absolute(value float64, g []float64) *Estimate {
-	u, k, dof := e.spread(g)
-	x := estimate(value, u, k)
-	x.DOF = dof
+	u, law := e.spread(g, 0)
+	return law.estimate(value, u)
+}
+
+// estimate is a value with its standard uncertainty, whose error has the law.
+func (l law) estimate(value, u float64) *Estimate {
+	x := estimate(value, u, l.factor())
+	x.DOF = l.dof
 	return x
 }
 
-// spread is the standard uncertainty of the combination g of the shared parameters (GUM 5.2.2), the coverage factor of its
-// 95 % interval and its effective degrees of freedom (0: very many).
-func (e *estimator) spread(g []float64) (u, k, dof float64) {
+// spread is the standard uncertainty of the combination g of the shared parameters and of one more, independent and normal,
+// component (GUM 5.2.2), and the law of its error.
+func (e *estimator) spread(g []float64, more float64) (u float64, l law) {
 	variance := leastsq.Propagate(e.fit.Cov, mat.NewDense(1, len(g), g)).At(0, 0)
-	if !(variance > 0) {
-		return 0, normal95, 0
+	fitted := math.Sqrt(math.Max(variance, 0)) * e.widen
+	if u = math.Hypot(fitted, more); !(u > 0) {
+		return 0, law{}
 	}
-	u = math.Sqrt(variance)
 	if e.student > 0 {
-		return u * e.widen, distuv.StudentsT{Sigma: 1, Nu: e.student}.Quantile(0.975), e.student
+		return u, law{dof: e.student * math.Pow(u/fitted, 4)}
 	}
 	e.prepare()
-	var shares []float64
 	for j, c := range e.cross {
 		if j < len(e.model.obs.caps) && !e.model.obs.caps[j].bound {
 			continue // measured: a normal error
 		}
-		shares = append(shares, floats.Dot(g, c)/u)
+		l.shares = append(l.shares, floats.Dot(g, c)/u)
 	}
-	k = coverageFactor(shares)
 	// Welch and Satterthwaite's formula over the parts that rest on the scatter of repeats (GUM G.4.1, equation G.2b).
 	sum := 0.0
 	for _, r := range e.rows {
 		part := floats.Dot(g, r.moves) / u
 		sum += math.Pow(part*part*r.typeA, 2) / r.dof
 	}
-	if dof = 1 / sum; sum == 0 || dof > 200 {
-		return u, k, 0
+	if l.dof = 1 / sum; sum == 0 || l.dof > 200 {
+		l.dof = 0
 	}
-	return u, k * distuv.StudentsT{Sigma: 1, Nu: dof}.Quantile(0.975) / normal95, dof
+	return u, l
 }
 
 // prepare fills what every estimate needs.
@@ -89,16 +92,21 @@ func (e *estimator) prepare() {
 			continue
 		}
 		m.eval(x, e.fit.P, e.fit.D, true, &b)
-		row := 0
-		for k, v := range x.value {
-			if math.IsNaN(v) {
-				continue
-			}
-			if x.dof[k] > 0 {
-				e.rows = append(e.rows, readRow{moves: e.moves(&b, row), typeA: x.typeA[k], dof: x.dof[k]})
-			}
-			row++
+		e.repeats(x, &b)
+	}
+}
+
+// repeats takes in the readings of a trial that rest on few repeats; its derivatives are b.
+func (e *estimator) repeats(x *observed, b *leastsq.Block) {
+	row := 0
+	for k, v := range x.value {
+		if math.IsNaN(v) {
+			continue
 		}
+		if x.dof[k] > 0 {
+			e.rows = append(e.rows, readRow{moves: e.moves(b, row), typeA: x.typeA[k], dof: x.dof[k]})
+		}
+		row++
 	}
 }
 

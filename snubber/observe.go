@@ -52,6 +52,7 @@ type physicalPart struct {
 	bound bool    // known by a tolerance's bound (rectangular) and not by a measurement (normal)
 	first int     // the first trial it served in
 	uses  int     // how many trials it served in
+	key   partKey // what makes it this part
 }
 
 // operating is one operating point: trials at it share their excitation.
@@ -208,6 +209,7 @@ func use(index map[partKey]int, parts *[]physicalPart, key partKey, p physicalPa
 	if !ok {
 		i = len(*parts)
 		index[key] = i
+		p.key = key
 		*parts = append(*parts, p)
 	}
 	(*parts)[i].uses++

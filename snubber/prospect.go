@@ -46,45 +46,21 @@ func (f *FitResult) Ahead(at OperatingPoint, n int, seed uint64) (p *Prospect, n
 		return nil, nil, errors.New("predicting from a fit: the bus voltage is not known; state bus_v with the trials, or read it")
 	}
 	m, fit := f.state.model, f.state.fit
-	point := -1
-	for i, x := range m.obs.points {
-		if x.same(at) && (m.amps[i] >= 0 || x.still) {
-			point = i
-		}
-	}
 	if f.Loop.Resistance == nil {
-		notes = append(notes, "no decay was read, so the loop was taken as free of loss, which overstates the peak a little; read decay_s")
+		notes = append(notes, noteNoLoss)
 	}
-	var amps, ampsU float64
-	switch {
-	case point >= 0 && m.obs.points[point].still:
-		for _, x := range f.Excitations {
-			if m.obs.points[point].same(OperatingPoint{BusV: x.BusV, CurrentA: x.CurrentA}) {
-				amps, ampsU = 0, x.Excitation.U
-			}
-		}
-	case point >= 0:
-		amps = math.Abs(fit.P[m.amps[point]])
-	case at.CurrentA > 0:
-		amps, ampsU = at.CurrentA, loadShare*at.CurrentA
-		notes = append(notes, fmt.Sprintf("no peak was read at this operating point, so the load current of %.3g A was taken for the loop current at turn-off; read peak_v on the bare node", at.CurrentA))
-	default:
-		return nil, nil, errors.New("predicting from a fit: neither a peak nor a load current is known, so the excitation is not; read peak_v on the bare node")
+	point, amps, ampsU, err := f.driving(at)
+	if err != nil {
+		return nil, nil, fmt.Errorf("predicting from a fit: %w", err)
+	}
+	if point < 0 {
+		notes = append(notes, noteLoad(at))
 	}
 	chol, err := widened(f.state)
 	if err != nil {
 		return nil, nil, err
 	}
-	values := func(p []float64, amps, rest float64) circuitValues {
-		l := m.loop(p)
-		v := circuitValues{atL: l.Inductance, atC: l.Capacitance * rest, atR: l.Resistance, atE: at.BusV, atI0: amps, atRef: math.Max(m.ref, at.BusV)}
-		for e, k := range m.effect {
-			if k >= 0 {
-				v[effectAt[e]] = math.Exp(p[k])
-			}
-		}
-		return v
-	}
+	values := func(p []float64, amps, rest float64) circuitValues { return m.driven(p, at.BusV, amps, rest) }
 	p = &Prospect{point: point, nominal: values(fit.P, amps, 1)}
 	p.Loop = Loop{p.nominal[atL], p.nominal[atC], p.nominal[atR]}
 	p.Excitation = Excitation{Bus: at.BusV, Current: amps}
@@ -125,6 +101,50 @@ func (f *FitResult) Ahead(at OperatingPoint, n int, seed uint64) (p *Prospect, n
 		p.drawn = append(p.drawn, values(q, a, 1+atRest*rng.NormFloat64()))
 	}
 	return p, notes, nil
+}
+
+const noteNoLoss = "no decay was read, so the loop was taken as free of loss, which overstates the peak a little; read decay_s"
+
+func noteLoad(at OperatingPoint) string {
+	return fmt.Sprintf("no peak was read at this operating point, so the load current of %.3g A was taken for the loop current at turn-off; read peak_v on the bare node", at.CurrentA)
+}
+
+// driving is what the loop carries at an operating point: the index of the fit's own point and the current it has there; or
+// -1 and the load current in its stead. Where the current is none of the fit's parameters it has an uncertainty of its own.
+func (f *FitResult) driving(at OperatingPoint) (point int, amps, ampsU float64, err error) {
+	m := f.state.model
+	point = -1
+	for i, x := range m.obs.points {
+		if x.same(at) && (m.amps[i] >= 0 || x.still) {
+			point = i
+		}
+	}
+	switch {
+	case point >= 0 && m.obs.points[point].still:
+		for _, x := range f.Excitations {
+			if m.obs.points[point].same(OperatingPoint{BusV: x.BusV, CurrentA: x.CurrentA}) {
+				ampsU = x.Excitation.U
+			}
+		}
+		return point, 0, ampsU, nil
+	case point >= 0:
+		return point, math.Abs(f.state.fit.P[m.amps[point]]), 0, nil
+	case at.CurrentA > 0:
+		return -1, at.CurrentA, loadShare * at.CurrentA, nil
+	}
+	return -1, 0, 0, errors.New("neither a peak nor a load current is known, so the excitation is not; read peak_v on the bare node")
+}
+
+// driven is the circuit at parameters p with its capacitance times rest, at a bus and a current.
+func (m *model) driven(p []float64, bus, amps, rest float64) circuitValues {
+	l := m.loop(p)
+	v := circuitValues{atL: l.Inductance, atC: l.Capacitance * rest, atR: l.Resistance, atE: bus, atI0: amps, atRef: math.Max(m.ref, bus)}
+	for e, k := range m.effect {
+		if k >= 0 {
+			v[effectAt[e]] = math.Exp(p[k])
+		}
+	}
+	return v
 }
 
 // widened is the Cholesky factor of the fit's covariance of its shared parameters, widened as its intervals are.
