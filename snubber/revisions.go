@@ -71,8 +71,8 @@ type SharedPart struct {
 // A revision whose trials scatter more than they state enters with its uncertainties widened as its own fit has them; where
 // all together still scatter more, all are widened likewise.
 //
-// Intervals of differences take each capacitance at the bus to be known no better than what one revision's ring tells of a
-// node at rest, and independently so: two revisions with the same switch may be closer than said.
+// What Fit allows for between a node's capacitance as it rings and at rest (half a percent, where a bus is stated) counts for
+// each revision by itself: two with the same switch may be closer known than said.
 //
 // The operating point is where the currents and bare peaks are compared. Where a revision read no peak there, its peak is the
 // prediction of Ahead with the load current, and a warning says so; where that is not known either there is none.
