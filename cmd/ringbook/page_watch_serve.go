@@ -104,12 +104,13 @@ func watched(html []byte, version string) ([]byte, error) {
 func (s *site) serve(ctx context.Context, l net.Listener) error {
 	var links atomic.Int64
 	server := &http.Server{
-		Handler:           s,
-		ReadHeaderTimeout: readWithin,
-		WriteTimeout:      writeWithin, // from the request on; tell puts it off
-		IdleTimeout:       time.Minute,
-		MaxHeaderBytes:    16 << 10,
-		ErrorLog:          log.New(io.Discard, "", 0), // a browser that goes away is no news
+		Handler:                      s,
+		DisableGeneralOptionsHandler: true, // ServeHTTP answers all
+		ReadHeaderTimeout:            readWithin,
+		WriteTimeout:                 writeWithin, // from the request on; tell puts it off
+		IdleTimeout:                  time.Minute,
+		MaxHeaderBytes:               16 << 10,
+		ErrorLog:                     log.New(io.Discard, "", 0), // a browser that goes away is no news
 		ConnState: func(c net.Conn, state http.ConnState) {
 			switch state {
 			case http.StateNew:
