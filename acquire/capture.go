@@ -34,7 +34,8 @@ func (s *Station) CanCapture() bool { return s.sampler() != nil }
 // where 16-bit codes leave lower ones at zero; 0 for float32 and ASCII without volt_per_code.
 //
 // Without an instrument that gives samples the error is ErrNoWaveform. An instrument that refuses, is silent or sends
-// what cannot be its samples ends it with a *Fault; no record is given then. The next exchange clears its link first.
+// what cannot be its samples ends it with a *Fault; no record is given then. The next exchange clears its link first. A
+// lost link is opened again and the captures begun again from the first; see Station.
 func (s *Station) Capture(ctx context.Context, n int) ([]waveform.Record, error) {
 	in := s.sampler()
 	if in == nil {
@@ -47,16 +48,23 @@ func (s *Station) Capture(ctx context.Context, n int) ([]waveform.Record, error)
 		return nil, in.fault(fmt.Sprintf("capture %d waveforms", n), unfit("give it in the rig file, as in take = \"CAPTure\"", "there is no take to make each anew, and the same capture might be read again"))
 	}
 	var records []waveform.Record
-	for i := range n {
-		r, err := in.capture(ctx)
-		if err != nil {
-			doing := "capture a waveform"
-			if n > 1 {
-				doing = fmt.Sprintf("capture waveform %d of %d", i+1, n)
+	err := s.again(ctx, func() error {
+		records = nil
+		for i := range n {
+			r, err := in.capture(ctx)
+			if err != nil {
+				doing := "capture a waveform"
+				if n > 1 {
+					doing = fmt.Sprintf("capture waveform %d of %d", i+1, n)
+				}
+				return in.fault(doing, err)
 			}
-			return nil, in.fault(doing, err)
+			records = append(records, r)
 		}
-		records = append(records, r)
+		return nil
+	})
+	if err != nil {
+		return nil, err
 	}
 	return records, nil
 }

@@ -43,9 +43,9 @@ func CheckRig(ctx context.Context, rig Rig, progress func(Verdict)) ([]Verdict, 
 	}
 	c := checking{progress: progress}
 	for _, description := range rig.Instruments {
-		in := &instrument{Instrument: description}
+		in := &instrument{Instrument: description, station: &Station{open: wire.Open}}
 		begun := time.Now()
-		err := in.open(ctx, wire.Open)
+		err := in.open(ctx)
 		c.say(in, "open", "", time.Since(begun), err)
 		if err == nil {
 			err = c.instrument(ctx, in)

@@ -46,14 +46,18 @@ func (s *Station) Read(ctx context.Context, q snubber.Quantity) (float64, error)
 	if in == nil {
 		return math.NaN(), notProvided(q)
 	}
-	if err := in.ready(ctx); err != nil {
-		return math.NaN(), in.fault("read "+string(q), err)
-	}
-	v, _, err := in.once(ctx, query)
-	if err != nil {
-		return math.NaN(), in.fault("read "+string(q), err)
-	}
-	return v, nil
+	v := math.NaN()
+	err := s.again(ctx, func() error {
+		err := in.ready(ctx)
+		if err == nil {
+			v, _, err = in.once(ctx, query)
+		}
+		if err != nil {
+			return in.fault("read "+string(q), err)
+		}
+		return nil
+	})
+	return v, err
 }
 
 // lookAgain is how long Discharged waits between two readings.

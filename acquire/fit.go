@@ -30,13 +30,21 @@ func (s *Station) Fit(ctx context.Context, n snubber.Network) error {
 	if err != nil {
 		return fmt.Errorf("fit a network: %w", err)
 	}
-	if err := in.ready(ctx); err != nil {
-		return in.fault("fit a network", err)
+	in.holds = "" // until it was heard
+	err = s.again(ctx, func() error {
+		err := in.ready(ctx)
+		if err == nil {
+			err = in.send(ctx, message)
+		}
+		if err != nil {
+			return in.fault("fit a network", err)
+		}
+		return nil
+	})
+	if err == nil {
+		in.holds = message
 	}
-	if err := in.send(ctx, message); err != nil {
-		return in.fault("fit a network", err)
-	}
-	return nil
+	return err
 }
 
 func (s *Station) fitter() *instrument {

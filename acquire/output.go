@@ -66,12 +66,21 @@ func (s *Station) Switch(ctx context.Context, on bool) error {
 	if on {
 		doing = "switch the bus on"
 	}
-	if err := in.ready(ctx); err != nil {
-		return in.fault(doing, err)
+	in.switched = nil // not known, until it was heard
+	err := s.again(ctx, func() error {
+		err := in.ready(ctx)
+		if err == nil {
+			err = in.turn(ctx, on)
+		}
+		if err != nil {
+			return in.fault(doing, err)
+		}
+		return nil
+	})
+	if err != nil {
+		return err
 	}
-	if err := in.turn(ctx, on); err != nil {
-		return in.fault(doing, err)
-	}
+	in.switched = &on
 	if !on {
 		return nil
 	}

@@ -4,6 +4,8 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"net"
+	"os"
 	"slices"
 
 	"ringbook/acquire/scpi"
@@ -12,8 +14,17 @@ import (
 )
 
 // Station is an opened rig. It is for one goroutine at a time.
+//
+// A link that is lost under it is opened again, with growing waits, for as long as the rig says. The instrument that
+// answers then must give the identity of before; what comes of before is thrown away; its setup is sent again, and the
+// network that it held. What was being done is then done again from its start. An output is never switched for that: where
+// the rig has its state query and it is not as it was switched, the work ends with a *Fault. Nothing is lost of what was
+// read before, and nothing of before is taken for a reply.
 type Station struct {
 	instruments []*instrument
+	open        Opener
+	notices     []string // for the warnings of the next Take
+	told        func(message string)
 }
 
 // instrument is one of the station's, in dialogue.
@@ -22,6 +33,9 @@ type instrument struct {
 	identity string // its *IDN? answer
 	conn     *scpi.Conn
 	left     *scpi.InstrumentError // what its error queue held when it was opened; nil: nothing
+	station  *Station
+	holds    string // the command that fitted the network it holds; "": none
+	switched *bool  // how its output was switched last; nil: not at all
 }
 
 // Opener opens the link an address names, as wire.Open does.
@@ -36,10 +50,10 @@ func OpenWith(ctx context.Context, rig Rig, open Opener) (*Station, error) {
 	if err := rig.Check(); err != nil {
 		return nil, err
 	}
-	s := &Station{}
+	s := &Station{open: open}
 	for _, description := range rig.Instruments {
-		in := &instrument{Instrument: description}
-		if err := in.open(ctx, open); err != nil {
+		in := &instrument{Instrument: description, station: s}
+		if err := in.open(ctx); err != nil {
 			s.Close()
 			return nil, in.fault("open", err)
 		}
@@ -48,11 +62,13 @@ func OpenWith(ctx context.Context, rig Rig, open Opener) (*Station, error) {
 	return s, nil
 }
 
-// Close closes every link.
+// Close closes every link. A lost one is closed already.
 func (s *Station) Close() error {
 	var errs []error
 	for _, in := range s.instruments {
-		errs = append(errs, in.conn.Close())
+		if err := in.conn.Close(); !errors.Is(err, os.ErrClosed) && !errors.Is(err, net.ErrClosed) {
+			errs = append(errs, err)
+		}
 	}
 	return errors.Join(errs...)
 }
@@ -87,16 +103,12 @@ func (s *Station) provider(q snubber.Quantity) (*instrument, Query) {
 	return nil, Query{}
 }
 
-func (in *instrument) open(ctx context.Context, open Opener) error {
-	link, err := open(ctx, in.Address)
+func (in *instrument) open(ctx context.Context) error {
+	link, err := in.station.open(ctx, in.Address)
 	if err != nil {
 		return err
 	}
-	in.conn, err = scpi.NewConn(link, scpi.Options{
-		Timeout: in.Timeout, Terminator: in.Terminator, Pace: in.Pace, Prompt: in.Prompt, Echo: in.Echo, NoErrorQueue: in.NoErrorQueue,
-	})
-	if err != nil {
-		link.Close()
+	if in.conn, err = in.dialogue(link); err != nil {
 		return err
 	}
 	if err := in.greet(ctx); err != nil {
@@ -104,6 +116,18 @@ func (in *instrument) open(ctx context.Context, open Opener) error {
 		return err
 	}
 	return nil
+}
+
+// dialogue begins one over a link. An identity heard before is that which it shall hear again.
+func (in *instrument) dialogue(link wire.Link) (*scpi.Conn, error) {
+	conn, err := scpi.NewConn(link, scpi.Options{
+		Timeout: in.Timeout, Terminator: in.Terminator, Pace: in.Pace, Prompt: in.Prompt, Echo: in.Echo,
+		NoErrorQueue: in.NoErrorQueue, Identity: in.identity,
+	})
+	if err != nil {
+		link.Close()
+	}
+	return conn, err
 }
 
 // greet asks who the instrument is and sets it up. Errors that somebody else left in its queue are not
@@ -125,6 +149,11 @@ func (in *instrument) greet(ctx context.Context) (err error) {
 	if err != nil {
 		return err
 	}
+	return in.setUp(ctx)
+}
+
+// setUp sends the setup.
+func (in *instrument) setUp(ctx context.Context) error {
 	for _, m := range in.Setup {
 		if err := in.send(ctx, m); err != nil {
 			return fmt.Errorf("setup: %w", err)
@@ -144,12 +173,4 @@ func (in *instrument) send(ctx context.Context, message string) error {
 		return err
 	}
 	return in.conn.Command(ctx, header, args...)
-}
-
-// ready clears a link that an earlier failure left out of step.
-func (in *instrument) ready(ctx context.Context) error {
-	if in.conn.OutOfStep() == nil {
-		return nil
-	}
-	return in.conn.Resync(ctx)
 }

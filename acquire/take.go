@@ -2,7 +2,6 @@ package acquire
 
 import (
 	"context"
-	"errors"
 	"fmt"
 	"math"
 
@@ -21,7 +20,7 @@ type Progress struct {
 	Quantity   snubber.Quantity
 	Instrument string  // the rig's name for it
 	Repeat     int     // from 1
-	Repeats    int     // how many there will be
+	Repeats    int     // how many there will be; one more where one of them lies off
 	Value      float64 // in the quantity's unit; NaN when there was no reading
 }
 
@@ -29,49 +28,49 @@ type Progress struct {
 // each repeat; nil is allowed.
 //
 // A quantity with no reading (9.91E37) in more than half of its repeats is absent, with a warning; with
-// none in fewer, it is the mean of the rest, with a warning. An instrument that refuses, is silent or
-// talks nonsense ends the round with a *Fault. The next round clears its link first.
+// none in fewer, it is the mean of the rest, with a warning. A repeat that lies further off than the others' spread
+// allows is asked once more; both are kept, with a warning.
+//
+// An instrument that refuses, is silent twice or talks nonsense ends the round with a *Fault. The next round clears its
+// link first. A lost link is opened again and the round begun again from its start, which is a warning; progress then
+// counts anew.
 func (s *Station) Take(ctx context.Context, progress func(Progress)) (Result, error) {
+	var result Result
+	err := s.again(ctx, func() (err error) {
+		result, err = s.round(ctx, progress)
+		return err
+	})
+	if err != nil {
+		return Result{}, err
+	}
+	result.Warnings = append(s.notices, result.Warnings...)
+	s.notices = nil
+	return result, nil
+}
+
+// round reads every quantity.
+func (s *Station) round(ctx context.Context, progress func(Progress)) (Result, error) {
 	var result Result
 	for _, quantity := range snubber.Quantities() {
 		in, q := s.provider(quantity)
 		if in == nil {
 			continue
 		}
-		values, err := in.repeat(ctx, q, progress)
+		r, err := in.repeat(ctx, q, progress)
 		if err != nil {
 			return Result{}, in.fault("read "+string(quantity), err)
 		}
-		reading, warning := in.reading(q, values)
+		reading, warning := in.reading(q, r)
 		if reading != nil {
 			result.Readings = append(result.Readings, *reading)
 		}
-		if warning != "" {
-			result.Warnings = append(result.Warnings, warning)
+		for _, w := range []string{warning, r.warning(q, in.Name)} {
+			if w != "" {
+				result.Warnings = append(result.Warnings, w)
+			}
 		}
 	}
 	return result, nil
-}
-
-// repeat asks as often as q says and gives the values there were, in the quantity's unit.
-func (in *instrument) repeat(ctx context.Context, q Query, progress func(Progress)) ([]float64, error) {
-	if err := in.ready(ctx); err != nil {
-		return nil, err
-	}
-	var values []float64
-	for i := range q.repeats() {
-		v, _, err := in.once(ctx, q)
-		if err != nil && !errors.Is(err, scpi.ErrNoReading) {
-			return nil, err
-		}
-		if err == nil {
-			values = append(values, v)
-		}
-		if progress != nil {
-			progress(Progress{q.Quantity, in.Name, i + 1, q.repeats(), v})
-		}
-	}
-	return values, nil
 }
 
 // once asks once, and gives the reply as it came too. Without a reading it gives NaN and ErrNoReading.
@@ -111,8 +110,8 @@ func impossible(q snubber.Quantity, v float64) string {
 }
 
 // reading makes a reading of what the repeats gave, or says why not.
-func (in *instrument) reading(q Query, values []float64) (*snubber.Reading, string) {
-	none, n := q.repeats()-len(values), q.repeats()
+func (in *instrument) reading(q Query, r repeated) (*snubber.Reading, string) {
+	values, none, n := r.values, r.asked-len(r.values), r.asked
 	if len(values) == 0 || 2*len(values) < n {
 		return nil, fmt.Sprintf("%s is left out: %s gave no reading in %d of %d repeats; check its trigger, its range and the signal", q.Quantity, in.Name, none, n)
 	}

@@ -83,6 +83,9 @@ func (c *Conn) SetTimeout(d time.Duration) {
 // Close closes the link.
 func (c *Conn) Close() error { return c.rwc.Close() }
 
+// Abandon puts the Conn out of step because of err: it was closed, or its replies are of no more use.
+func (c *Conn) Abandon(err error) { c.fall(err) }
+
 // OutOfStep gives the error after which the Conn refuses to go on; nil when it is in step.
 func (c *Conn) OutOfStep() error { return c.lost }
 

@@ -81,7 +81,10 @@ func (c *Conn) withoutPrompt(behind string) string {
 	if c.opt.Prompt == "" {
 		return behind
 	}
-	return strings.TrimSuffix(strings.TrimRight(behind, " "), c.opt.Prompt)
+	if rest, ok := strings.CutSuffix(strings.TrimRight(behind, " \r\n"), c.opt.Prompt); ok {
+		return rest
+	}
+	return behind
 }
 
 // stripHeader takes the header off a reply of an instrument that answers FREQ? with FREQ 1.2E6 (IEEE 488.2, 8.3: a

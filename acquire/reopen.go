@@ -1,0 +1,189 @@
+package acquire
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"time"
+
+	"ringbook/acquire/scpi"
+)
+
+// DefaultReopen is how long a lost link is opened again when the rig does not say.
+const DefaultReopen = 30 * time.Second
+
+const (
+	firstWait   = 100 * time.Millisecond // between two attempts to open; it doubles
+	longestWait = 3 * time.Second
+	mostAgain   = 5 // most times that one piece of work is begun again after a lost link
+)
+
+// LostError says that a link was lost and did not come back.
+type LostError struct {
+	Within time.Duration // how long it was opened again
+	First  error         // how it was lost
+	Last   error         // why it did not open again
+}
+
+// Error is one sentence without a cure.
+func (e *LostError) Error() string {
+	return fmt.Sprintf("%v; the link was opened again for %s in vain: %v", e.First, e.Within, bare(e.Last))
+}
+
+// Unwrap gives both failures.
+func (e *LostError) Unwrap() []error { return []error{e.First, e.Last} }
+
+// again does a piece of work, and begins it again when the link of an instrument was lost under it and could be opened
+// anew, or when an instrument said nothing once and then answers again. Nothing of what came before is kept. What
+// happened is a notice.
+func (s *Station) again(ctx context.Context, work func() error) error {
+	silent := 0
+	for begun := 1; ; begun++ {
+		err := work()
+		var fault *Fault
+		var link *scpi.LinkError
+		var lost *LostError
+		switch {
+		case err == nil || ctx.Err() != nil || begun > mostAgain || errors.As(err, &lost):
+			return err
+		case !errors.As(err, &fault) || !errors.As(err, &link):
+			return err
+		case link.Timeout():
+			if silent++; silent > 1 {
+				return err
+			}
+		}
+		in := s.named(fault.Instrument)
+		if in == nil || in.conn.OutOfStep() == nil {
+			return err
+		}
+		if e := in.ready(ctx); e != nil {
+			if errors.As(e, &lost) || errors.Is(e, scpi.ErrOtherInstrument) || ctx.Err() != nil {
+				return in.fault(fault.Doing, e)
+			}
+			return err // what it was lost by tells more
+		}
+		s.notice("%v; what was begun was begun again from its start", err)
+	}
+}
+
+func (s *Station) named(name string) *instrument {
+	for _, in := range s.instruments {
+		if in.Name == name {
+			return in
+		}
+	}
+	return nil
+}
+
+// notice keeps what a person should know of, for the warnings of the next Take, and says it.
+func (s *Station) notice(format string, args ...any) {
+	text := fmt.Sprintf(format, args...)
+	s.notices = append(s.notices, text)
+	s.say(text)
+}
+
+// say tells what is going on to who asked to be told.
+func (s *Station) say(text string) {
+	if s.told != nil {
+		s.told(text)
+	}
+}
+
+// Notify has tell called with a sentence whenever a link was lost, is opened again, or came back: that takes a while,
+// and a person wants to know. It is called by the goroutine that works the station.
+func (s *Station) Notify(tell func(message string)) { s.told = tell }
+
+// ready brings a link in step that an earlier failure left out of it: what is under way is thrown away and the
+// identity compared; where that fails, the link is opened again.
+func (in *instrument) ready(ctx context.Context) error {
+	lost := in.conn.OutOfStep()
+	if lost == nil {
+		return nil
+	}
+	err := in.conn.Resync(ctx)
+	if err == nil || ctx.Err() != nil || errors.Is(err, scpi.ErrOtherInstrument) {
+		return err
+	}
+	return in.reopen(ctx, lost)
+}
+
+// reopen opens a lost link again, with growing waits, for as long as the rig says.
+func (in *instrument) reopen(ctx context.Context, lost error) error {
+	in.conn.Close()
+	within := in.Reopen
+	if within == 0 {
+		within = DefaultReopen
+	}
+	if within < 0 {
+		return lost
+	}
+	in.station.say(fmt.Sprintf("instrument %s at %s: %v; its link is opened again, for %s at most", in.Name, in.Address, lost, within))
+	begun := time.Now()
+	limited, cancel := context.WithTimeout(ctx, within)
+	defer cancel()
+	var last error
+	for wait := firstWait; ; wait = min(2*wait, longestWait) {
+		err := in.resume(limited)
+		var refused *scpi.InstrumentError
+		switch {
+		case err == nil:
+			in.station.say(fmt.Sprintf("instrument %s at %s: its link is open again after %s", in.Name, in.Address, time.Since(begun).Round(100*time.Millisecond)))
+			return nil
+		case ctx.Err() != nil:
+			return ctx.Err()
+		case errors.Is(err, scpi.ErrOtherInstrument), errors.As(err, &refused), errors.As(err, new(*stateError)):
+			return err // it is back, and something else is wrong
+		case last == nil || limited.Err() == nil:
+			last = err
+		}
+		if pause(limited, wait) != nil {
+			if ctx.Err() != nil {
+				return ctx.Err()
+			}
+			return &LostError{Within: within, First: lost, Last: last}
+		}
+	}
+}
+
+// resume opens the link once, throws away what comes of before, hears the same identity, and puts the instrument back
+// as it was: set up, with the network it held. An output is not switched: it must be as it was.
+func (in *instrument) resume(ctx context.Context) error {
+	link, err := in.station.open(ctx, in.Address)
+	if err != nil {
+		return err
+	}
+	conn, err := in.dialogue(link)
+	if err != nil {
+		return err
+	}
+	in.conn = conn
+	back := func() error {
+		if err := conn.Resync(ctx); err != nil {
+			return err
+		}
+		if err := in.setUp(ctx); err != nil {
+			return err
+		}
+		if in.holds != "" {
+			if err := in.send(ctx, in.holds); err != nil {
+				return err
+			}
+		}
+		if in.switched != nil {
+			return in.confirm(ctx, *in.switched)
+		}
+		return nil
+	}
+	if err := back(); err != nil {
+		conn.Close()
+		return in.stayLost(err)
+	}
+	return nil
+}
+
+// stayLost sees to it that a link which was closed is not taken for one in step.
+func (in *instrument) stayLost(err error) error {
+	in.conn.Abandon(err)
+	return err
+}
