@@ -7,6 +7,8 @@ import (
 	"fmt"
 	"net"
 	"net/netip"
+	"os"
+	"strconv"
 	"time"
 
 	"ringbook/recipes"
@@ -57,7 +59,10 @@ func (a *app) watchPage(ctx context.Context, w weaving, listen string) error {
 
 // listenLoopback listens at an address of this computer that no other one can reach.
 func listenLoopback(ctx context.Context, address string) (net.Listener, error) {
-	host, _, err := net.SplitHostPort(address)
+	host, port, err := net.SplitHostPort(address)
+	if err == nil {
+		_, err = strconv.ParseUint(port, 10, 16)
+	}
 	if err != nil {
 		return nil, usagef("--listen %q: write an address of this computer and a port, such as 127.0.0.1:8023", address)
 	}
@@ -68,7 +73,11 @@ func listenLoopback(ctx context.Context, address string) (net.Listener, error) {
 	var lc net.ListenConfig
 	l, err := lc.Listen(ctx, "tcp", address)
 	if err != nil {
-		return nil, fmt.Errorf("page: serving at %s: %w", address, err)
+		var sys *os.SyscallError
+		if errors.As(err, &sys) {
+			err = sys.Err
+		}
+		return nil, fmt.Errorf("page: serving at %s: %w; give another port, or 0 for a free one", address, err)
 	}
 	if at, ok := l.Addr().(*net.TCPAddr); !ok || !at.IP.IsLoopback() { // a hosts file can say anything of localhost
 		return nil, errors.Join(refuse, l.Close())
