@@ -33,6 +33,10 @@ func All() []Recipe {
 			Title: "Prediction and measurement", Single: true, Weave: Proof,
 		},
 		{
+			Name: "revisions", Short: "the revisions of a board side by side, with the differences and how sure they are",
+			Title: "Revisions", Weave: Revisions,
+		},
+		{
 			Name: "watts", Short: "what the supply gave with each network, against what was computed",
 			Title: "Power", Single: true, Weave: Watts,
 		},

@@ -14,6 +14,7 @@ type Source struct {
 	Scope   store.Scope
 	Limits  Request
 	OnHand  []float64 // F: the capacitors on hand, for what to fit next; nil: the E6 series
+	Compare []string  // the revisions to compare, the reference first; nil: all in scope
 
 	used *used // what was read, for the digest at a page's foot; nil: nobody asks
 }

@@ -138,7 +138,7 @@ func (f *FitResult) driving(at OperatingPoint) (point int, amps, ampsU float64, 
 // driven is the circuit at parameters p with its capacitance times rest, at a bus and a current.
 func (m *model) driven(p []float64, bus, amps, rest float64) circuitValues {
 	l := m.loop(p)
-	v := circuitValues{atL: l.Inductance, atC: l.Capacitance * rest, atR: l.Resistance, atE: bus, atI0: amps, atRef: math.Max(m.ref, bus)}
+	v := circuitValues{atL: l.Inductance, atC: l.Capacitance * rest, atR: l.Resistance, atE: bus, atI0: amps, atRef: m.ref}
 	for e, k := range m.effect {
 		if k >= 0 {
 			v[effectAt[e]] = math.Exp(p[k])

@@ -19,11 +19,13 @@ import (
 
 // The invented scenario: the motor drive of a tide gate's winch, second revision.
 const (
-	demoBoard    = "tide-gate winch"
-	demoRevision = "B"
-	demoRating   = 100.0   // V
-	demoProbe    = 3.9e-12 // F
-	demoCaptures = 4       // of the edge, averaged
+	demoBoard      = "tide-gate winch"
+	demoRevision   = "B"
+	demoFormer     = "A" // whose loop was longer
+	demoFormerLoop = 1.45
+	demoRating     = 100.0   // V
+	demoProbe      = 3.9e-12 // F
+	demoCaptures   = 4       // of the edge, averaged
 )
 
 // demoSeries is the bag of capacitors; 0 is the bare node.
@@ -58,40 +60,67 @@ to a new folder unless --logbook names a file. The pages of the lab notebook are
 				return err
 			}
 			defer closing(lb, &err)
-			cfg := simbench.Default()
-			cfg.ProbeF, cfg.Parts.CTol, cfg.Parts.RTol = demoProbe, demoCTol, demoRTol
-			bench, err := simbench.Start(ctx, cfg)
-			if err != nil {
+			d := &demo{app: a, lb: lb}
+			if err := d.formerRevision(ctx); err != nil {
 				return err
 			}
-			defer bench.Close()
-			d := &demo{app: a, lb: lb, bench: bench}
+			cfg := demoBench()
+			if d.bench, err = simbench.Start(ctx, cfg); err != nil {
+				return err
+			}
+			defer d.bench.Close()
 			return d.run(ctx)
 		},
 	}
 }
 
+func demoBench() simbench.Config {
+	cfg := simbench.Default()
+	cfg.ProbeF, cfg.Parts.CTol, cfg.Parts.RTol = demoProbe, demoCTol, demoRTol
+	return cfg
+}
+
+// formerRevision reads the board as it was before its loop was shortened, with the same bag of capacitors.
+func (d *demo) formerRevision(ctx context.Context) (err error) {
+	cfg := demoBench()
+	cfg.Board.Inductance *= demoFormerLoop
+	if d.bench, err = simbench.Start(ctx, cfg); err != nil {
+		return err
+	}
+	defer d.bench.Close()
+	if err := d.open(ctx, demoFormer); err != nil {
+		return err
+	}
+	defer d.station.Close()
+	return d.series(ctx, demoSeries[:5])
+}
+
 // demo is one run of the demonstration.
 type demo struct {
 	*app
-	lb      *store.Logbook
-	bench   *simbench.Bench
-	station *acquire.Station
+	lb       *store.Logbook
+	bench    *simbench.Bench
+	revision string // under test
+	station  *acquire.Station
 }
 
-func (d *demo) run(ctx context.Context) error {
-	if err := d.lb.AddBoard(ctx, store.Board{Name: demoBoard, DeviceV: demoRating, Revisions: []store.Revision{{Name: demoRevision}}}); err != nil {
+// open puts a revision on file and opens the rig of its bench. The caller closes the station.
+func (d *demo) open(ctx context.Context, revision string) error {
+	if err := d.lb.AddBoard(ctx, store.Board{Name: demoBoard, DeviceV: demoRating, Revisions: []store.Revision{{Name: revision}}}); err != nil {
 		return err
 	}
 	rig, err := acquire.ParseRig("the simulated bench", []byte(d.bench.RigTOML()))
 	if err != nil {
 		return err
 	}
-	if d.station, err = acquire.Open(ctx, rig); err != nil {
-		return err
-	}
-	defer d.station.Close()
-	for _, c := range demoSeries {
+	d.revision = revision
+	d.station, err = acquire.Open(ctx, rig)
+	return err
+}
+
+// series reads the bare node and each capacitor.
+func (d *demo) series(ctx context.Context, caps []float64) error {
+	for _, c := range caps {
 		n := snubber.Network{Kind: snubber.Bare}
 		if c > 0 {
 			n = snubber.Network{Kind: snubber.C, C: c, CTol: demoCTol}
@@ -99,6 +128,17 @@ func (d *demo) run(ctx context.Context) error {
 		if err := d.trial(ctx, n); err != nil {
 			return err
 		}
+	}
+	return nil
+}
+
+func (d *demo) run(ctx context.Context) error {
+	if err := d.open(ctx, demoRevision); err != nil {
+		return err
+	}
+	defer d.station.Close()
+	if err := d.series(ctx, demoSeries[:]); err != nil {
+		return err
 	}
 	src := recipes.Source{Logbook: d.lb, Scope: store.Scope{Board: demoBoard, Revision: demoRevision},
 		Limits: recipes.Request{Limits: snubber.Limits{CTol: demoCTol, RTol: demoRTol}}}
@@ -139,7 +179,7 @@ func (d *demo) prove(ctx context.Context, src recipes.Source, fit *snubber.FitRe
 
 // trial fits a network on the bench, reads it and logs it.
 func (d *demo) trial(ctx context.Context, n snubber.Network) error {
-	t, records, _, err := d.take(ctx, d.station, snubber.Trial{Board: demoBoard, Revision: demoRevision, Session: "demonstration", Network: n, ProbeC: demoProbe}, demoCaptures)
+	t, records, _, err := d.take(ctx, d.station, snubber.Trial{Board: demoBoard, Revision: d.revision, Session: "demonstration", Network: n, ProbeC: demoProbe}, demoCaptures)
 	if err != nil {
 		return err
 	}
@@ -147,7 +187,7 @@ func (d *demo) trial(ctx context.Context, n snubber.Network) error {
 	if err != nil {
 		return err
 	}
-	line := fmt.Sprintf("fitted %-14s", describe(n))
+	line := fmt.Sprintf("%s  fitted %-12s", d.revision, describe(n))
 	for _, x := range []struct {
 		q    snubber.Quantity
 		name string

@@ -16,7 +16,11 @@ func (d *demo) pages(ctx context.Context, src recipes.Source) ([]string, error) 
 	stem := strings.TrimSuffix(d.lb.Path(), filepath.Ext(d.lb.Path()))
 	var names []string
 	for _, r := range recipes.All() {
-		woven, err := r.Page(ctx, src)
+		of := src
+		if !r.Single {
+			of.Scope.Revision = "" // the board's history, and its revisions side by side
+		}
+		woven, err := r.Page(ctx, of)
 		if err != nil && (errors.Is(err, context.Canceled) || woven == nil || !woven.Empty) {
 			return names, fmt.Errorf("weave page %s: %w", r.Name, err)
 		}
