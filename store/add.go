@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"iter"
 	"slices"
+	"strings"
 	"time"
 
 	"github.com/google/uuid"
@@ -68,75 +69,129 @@ const (
 	insertStrike  = `INSERT INTO strike (id, trial, at, because) VALUES (?, ?, ?, ?)`
 )
 
+// add logs t under a new id, as struck where it says so.
 func (w *writer) add(ctx context.Context, t snubber.Trial, waveforms []packed) (string, error) {
-	id, err := uuid.NewV7()
-	if err != nil {
-		return "", fmt.Errorf("make an id: %w", err)
-	}
-	revision, err := w.revision(ctx, t.Board, t.Revision)
-	if err != nil {
-		return "", err
-	}
-	session, err := w.session(ctx, t.Session)
-	if err != nil {
-		return "", err
-	}
-	point, err := w.point(ctx, t.Point)
-	if err != nil {
-		return "", err
-	}
-	now := time.Now()
+	now := time.Now().UTC()
 	if t.At.IsZero() {
 		t.At = now
 	}
-	n := t.Network
-	seq, err := w.insert(ctx, insertTrial, id.String(), revision, session, point, timeText(t.At), timeText(now), string(n.Kind),
-		orNull(n.C), orNull(n.CTol), orNull(n.R), orNull(n.RTol), orNull(n.ESR), orNull(n.MeasuredC), orNull(n.MeasuredU),
-		orNull(t.ProbeC), orNull(t.Part), orNull(t.Note))
+	ids, err := newIDs(1 + len(waveforms))
 	if err != nil {
 		return "", err
 	}
-	for _, p := range waveforms {
-		if err := w.addWaveform(ctx, seq, p); err != nil {
-			return "", err
-		}
+	t.ID = ids[0]
+	for i := range waveforms {
+		waveforms[i].id = ids[1+i]
 	}
-	for _, r := range t.Readings {
-		if err := w.addReading(ctx, seq, r); err != nil {
-			return "", err
-		}
+	seq, err := w.addTrial(ctx, &loggedTrial{t, now, waveforms}, nil)
+	if err != nil {
+		return "", err
 	}
 	if t.Struck != "" {
-		if err := w.strike(ctx, seq, now, t.Struck); err != nil {
+		if err := w.strike(ctx, seq, t.ID, now, t.Struck); err != nil {
 			return "", err
 		}
 	}
-	return id.String(), nil
+	return t.ID, nil
 }
 
-func (w *writer) addReading(ctx context.Context, seq int64, r snubber.Reading) error {
-	device, err := w.instrument(ctx, r.Instrument)
+// addTrial writes a trial's rows and its entry in the chain. Its strike is another entry.
+func (w *writer) addTrial(ctx context.Context, t *loggedTrial, origin *place) (seq int64, err error) {
+	revision, err := w.revision(ctx, t.Board, t.Revision)
 	if err != nil {
-		return err
+		return 0, err
 	}
-	if _, err := w.insert(ctx, insertReading, seq, string(r.Quantity), r.Value, orNull(r.U), device, orNull(r.FromWaveform)); err != nil {
-		return err
+	session, err := w.session(ctx, t.Session)
+	if err != nil {
+		return 0, err
 	}
-	for i, v := range r.Repeats {
-		if _, err := w.insert(ctx, insertRepeat, seq, string(r.Quantity), i+1, v); err != nil {
+	point, err := w.point(ctx, t.Point)
+	if err != nil {
+		return 0, err
+	}
+	n := t.Network
+	seq, err = w.insert(ctx, insertTrial, t.ID, revision, session, point, timeText(t.At), timeText(t.loggedAt), string(n.Kind),
+		orNull(n.C), orNull(n.CTol), orNull(n.R), orNull(n.RTol), orNull(n.ESR), orNull(n.MeasuredC), orNull(n.MeasuredU),
+		orNull(t.ProbeC), orNull(t.Part), orNull(t.Note))
+	if err != nil {
+		return 0, err
+	}
+	for i := range t.waveforms {
+		if err := w.addWaveform(ctx, seq, &t.waveforms[i]); err != nil {
+			return 0, err
+		}
+	}
+	if err := w.addReadings(ctx, seq, t.Readings); err != nil {
+		return 0, err
+	}
+	if err := w.chain(ctx, &entry{trial: t}, seq, origin); err != nil {
+		return 0, err
+	}
+	return seq, w.index(ctx, seq, len(t.Part)+len(t.Note))
+}
+
+// addReadings writes all readings of a trial by one statement, and their repeats after them.
+func (w *writer) addReadings(ctx context.Context, seq int64, readings []snubber.Reading) error {
+	if len(readings) == 0 {
+		return nil
+	}
+	args := w.args[:0]
+	for i := range readings {
+		r := &readings[i]
+		device, err := w.instrument(ctx, r.Instrument)
+		if err != nil {
 			return err
+		}
+		args = append(args, seq, string(r.Quantity), r.Value, orNull(r.U), device, orNull(r.FromWaveform))
+	}
+	w.args = args
+	if _, err := w.insert(ctx, insertReadings(len(readings)), args...); err != nil {
+		return err
+	}
+	for _, r := range readings {
+		for i, v := range r.Repeats {
+			if _, err := w.insert(ctx, insertRepeat, seq, string(r.Quantity), i+1, v); err != nil {
+				return err
+			}
 		}
 	}
 	return nil
 }
 
-func (w *writer) strike(ctx context.Context, seq int64, at time.Time, because string) error {
-	id, err := uuid.NewV7()
+// insertReadings is insertReading for n readings; there are no more than there are quantities.
+func insertReadings(n int) string {
+	const row = "(?, ?, ?, ?, ?, ?)"
+	return insertReading + strings.Repeat(", "+row, n-1)
+}
+
+func (w *writer) strike(ctx context.Context, seq int64, trial string, at time.Time, because string) error {
+	ids, err := newIDs(1)
 	if err != nil {
-		return fmt.Errorf("make an id: %w", err)
+		return err
 	}
-	_, err = w.insert(ctx, insertStrike, id.String(), seq, timeText(at), because)
-	return err
+	return w.addStrike(ctx, seq, &loggedStrike{ids[0], trial, at, because}, nil)
+}
+
+// addStrike writes the strike of trial seq and its entry in the chain.
+func (w *writer) addStrike(ctx context.Context, trial int64, s *loggedStrike, origin *place) error {
+	seq, err := w.insert(ctx, insertStrike, s.id, trial, timeText(s.at), s.because)
+	if err != nil {
+		return err
+	}
+	return w.chain(ctx, &entry{strike: s}, seq, origin)
+}
+
+// newIDs are n new ids in order.
+func newIDs(n int) ([]string, error) {
+	ids := make([]string, n)
+	for i := range ids {
+		id, err := uuid.NewV7()
+		if err != nil {
+			return nil, fmt.Errorf("make an id: %w", err)
+		}
+		ids[i] = id.String()
+	}
+	return ids, nil
 }
 
 // orNull is v, or NULL for the zero value that means "not stated".

@@ -30,7 +30,8 @@ type Revision struct {
 // quotes both, and CorrectBoard is the cure.
 func (lb *Logbook) AddBoard(ctx context.Context, b Board) error { return lb.putBoard(ctx, b, false) }
 
-// CorrectBoard puts the rating and the notes b states in the place of those on file. Trials are not touched.
+// CorrectBoard puts the rating and the notes b states in the place of those on file. Trials are not touched, and what was
+// stated before stays in table correction.
 func (lb *Logbook) CorrectBoard(ctx context.Context, b Board) error { return lb.putBoard(ctx, b, true) }
 
 // EnsureRevision puts a board and a revision of it on file, unless they are there.
@@ -43,41 +44,12 @@ func (lb *Logbook) putBoard(ctx context.Context, b Board, correct bool) error {
 		return fmt.Errorf("board %s: %w", quote(b.Name), err)
 	}
 	return lb.write(ctx, func(w *writer) error {
-		id, err := w.board(ctx, b.Name)
-		if err != nil {
-			return err
-		}
-		var volts sql.NullFloat64
-		var note sql.NullString
-		if err := w.conn.QueryRowContext(ctx, `SELECT device_v, note FROM board WHERE id = ?`, id).Scan(&volts, &note); err != nil {
-			return err
-		}
-		switch {
-		case correct:
-		case b.DeviceV != 0 && volts.Valid && volts.Float64 != b.DeviceV:
-			return fmt.Errorf("board %s is on file with a device rated %g V, not %g V; correct the board if that was wrong, or give another device's board another name",
-				quote(b.Name), volts.Float64, b.DeviceV)
-		case b.Note != "" && note.Valid && note.String != b.Note:
-			return fmt.Errorf("board %s is on file with the note %s, not %s; correct the board if that was wrong", quote(b.Name), quote(note.String), quote(b.Note))
-		}
-		if _, err := w.insert(ctx, `UPDATE board SET device_v = coalesce(?, device_v), note = coalesce(?, note) WHERE id = ?`,
-			orNull(b.DeviceV), orNull(b.Note), id); err != nil {
+		about := loggedCorrection{board: b.Name, deviceV: b.DeviceV, note: b.Note}
+		if err := w.state(ctx, about, correct); err != nil {
 			return err
 		}
 		for _, r := range b.Revisions {
-			rev, err := w.revision(ctx, b.Name, r.Name)
-			if err != nil {
-				return err
-			}
-			var was sql.NullString
-			if err := w.conn.QueryRowContext(ctx, `SELECT note FROM revision WHERE id = ?`, rev).Scan(&was); err != nil {
-				return err
-			}
-			if !correct && r.Note != "" && was.Valid && was.String != r.Note {
-				return fmt.Errorf("board %s, revision %s is on file with the note %s, not %s; correct the board if that was wrong",
-					quote(b.Name), quote(r.Name), quote(was.String), quote(r.Note))
-			}
-			if _, err := w.insert(ctx, `UPDATE revision SET note = coalesce(?, note) WHERE id = ?`, orNull(r.Note), rev); err != nil {
+			if err := w.state(ctx, loggedCorrection{board: b.Name, revision: r.Name, note: r.Note}, correct); err != nil {
 				return err
 			}
 		}

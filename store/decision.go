@@ -8,8 +8,6 @@ import (
 	"math"
 	"time"
 
-	"github.com/google/uuid"
-
 	"ringbook/snubber"
 )
 
@@ -54,7 +52,7 @@ func (lb *Logbook) AddDecision(ctx context.Context, d Decision) (id string, err 
 		return "", fmt.Errorf("log the decision: %w", err)
 	}
 	err = lb.write(ctx, func(w *writer) error {
-		id, err = w.addDecision(context.WithoutCancel(ctx), d)
+		id, err = w.decide(context.WithoutCancel(ctx), d)
 		return err
 	})
 	if err != nil {
@@ -63,48 +61,54 @@ func (lb *Logbook) AddDecision(ctx context.Context, d Decision) (id string, err 
 	return id, nil
 }
 
-func (w *writer) addDecision(ctx context.Context, d Decision) (string, error) {
-	id, err := uuid.NewV7()
-	if err != nil {
-		return "", fmt.Errorf("make an id: %w", err)
-	}
-	revision, err := w.revision(ctx, d.Board, d.Revision)
+func (w *writer) decide(ctx context.Context, d Decision) (string, error) {
+	ids, err := newIDs(1)
 	if err != nil {
 		return "", err
 	}
+	d.ID = ids[0]
 	if d.At.IsZero() {
 		d.At = time.Now()
+	}
+	return d.ID, w.addDecision(ctx, &d, nil)
+}
+
+// addDecision writes a decision's rows and its entry in the chain.
+func (w *writer) addDecision(ctx context.Context, d *Decision, origin *place) error {
+	revision, err := w.revision(ctx, d.Board, d.Revision)
+	if err != nil {
+		return err
 	}
 	var whole any
 	if d.Recommendation != nil {
 		whole = string(d.Recommendation)
 	}
 	n := d.Network
-	seq, err := w.insert(ctx, insertDecision, id.String(), revision, timeText(d.At), string(n.Kind),
+	seq, err := w.insert(ctx, insertDecision, d.ID, revision, timeText(d.At), string(n.Kind),
 		n.C, orNull(n.CTol), orNull(n.R), orNull(n.RTol), d.LimitV,
 		d.Peak.Value, orNull(d.Peak.U), d.Peak.Low, d.Peak.High, orNull(d.Damping), orNull(d.LossW),
 		d.Excitation.Bus, d.Excitation.Current, orNull(d.SwitchingHz),
 		d.Loop.Inductance, d.Loop.Capacitance, orNull(d.Loop.Resistance), d.Digest, whole)
 	if err != nil {
-		return "", err
+		return err
 	}
 	s, err := w.stmt(ctx, insertDecisionTrial)
 	if err != nil {
-		return "", err
+		return err
 	}
 	for _, trial := range d.Trials {
 		result, err := s.ExecContext(ctx, seq, trial, revision)
 		if err != nil {
-			return "", err
+			return err
 		}
 		if found, err := result.RowsAffected(); err != nil {
-			return "", err
+			return err
 		} else if found != 1 {
-			return "", fmt.Errorf("trial %s, which it rests on: %w of board %s, revision %s, in this logbook; name trials by their whole ids",
+			return fmt.Errorf("trial %s, which it rests on: %w of board %s, revision %s, in this logbook; name trials by their whole ids",
 				quote(trial), ErrNoTrial, quote(d.Board), quote(d.Revision))
 		}
 	}
-	return id.String(), nil
+	return w.chain(ctx, &entry{decision: d}, seq, origin)
 }
 
 // checkDecision reports the first thing in d that no logbook can hold.

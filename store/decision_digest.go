@@ -31,7 +31,7 @@ import (
 func TrialsDigest(trials []snubber.Trial) string {
 	texts := make([]string, len(trials))
 	for i := range trials {
-		texts[i] = canonical(&trials[i])
+		texts[i] = string(appendTrial(nil, &trials[i]))
 	}
 	slices.Sort(texts) // each begins with its trial's id, and all ids are of one length
 	h := sha256.New()
@@ -42,66 +42,77 @@ func TrialsDigest(trials []snubber.Trial) string {
 	return hex.EncodeToString(h.Sum(nil))
 }
 
-var oneLine = strings.NewReplacer(`\`, `\\`, "\n", `\n`)
-
-func canonical(t *snubber.Trial) string {
-	var b strings.Builder
-	line := func(name, value string) {
-		b.WriteString(name + " " + value + "\n")
-	}
-	text := func(name, value string) {
-		if value != "" {
-			line(name, oneLine.Replace(value))
-		}
-	}
-	number := func(name string, value float64) {
-		if value != 0 {
-			line(name, decimal(value))
-		}
-	}
-	n, p := t.Network, t.Point
-	line("trial", t.ID)
-	text("board", t.Board)
-	text("revision", t.Revision)
-	text("session", t.Session)
+// appendTrial appends the lines of one trial.
+func appendTrial(b []byte, t *snubber.Trial) []byte {
+	n, p := &t.Network, t.Point
+	b = append(append(append(b, "trial "...), t.ID...), '\n')
+	b = line(b, "board", t.Board)
+	b = line(b, "revision", t.Revision)
+	b = line(b, "session", t.Session)
 	if !t.At.IsZero() {
-		line("at", timeText(t.At))
+		b = line(b, "at", timeText(t.At))
 	}
-	text("network", string(n.Kind))
-	number("c", n.C)
-	number("c_tol", n.CTol)
-	number("r", n.R)
-	number("r_tol", n.RTol)
-	number("esr", n.ESR)
-	number("measured_c", n.MeasuredC)
-	number("measured_c_u", n.MeasuredU)
-	number("probe_c", t.ProbeC)
-	number("bus_v", p.BusV)
-	number("current_a", p.CurrentA)
-	number("switching_hz", p.SwitchingHz)
-	text("part", t.Part)
-	text("note", t.Note)
-	readings := slices.SortedStableFunc(slices.Values(t.Readings), func(a, b snubber.Reading) int {
-		return cmp.Compare(a.Quantity, b.Quantity)
-	})
-	for _, r := range readings {
-		line("reading", string(r.Quantity)+" "+decimal(r.Value))
-		number("u", r.U)
-		text("instrument", r.Instrument)
+	b = line(b, "network", string(n.Kind))
+	b = numberLine(b, "c", n.C)
+	b = numberLine(b, "c_tol", n.CTol)
+	b = numberLine(b, "r", n.R)
+	b = numberLine(b, "r_tol", n.RTol)
+	b = numberLine(b, "esr", n.ESR)
+	b = numberLine(b, "measured_c", n.MeasuredC)
+	b = numberLine(b, "measured_c_u", n.MeasuredU)
+	b = numberLine(b, "probe_c", t.ProbeC)
+	b = numberLine(b, "bus_v", p.BusV)
+	b = numberLine(b, "current_a", p.CurrentA)
+	b = numberLine(b, "switching_hz", p.SwitchingHz)
+	b = line(b, "part", t.Part)
+	b = line(b, "note", t.Note)
+	byName := func(x, y snubber.Reading) int { return cmp.Compare(x.Quantity, y.Quantity) }
+	readings := t.Readings
+	if !slices.IsSortedFunc(readings, byName) {
+		readings = slices.SortedStableFunc(slices.Values(readings), byName)
+	}
+	for i := range readings {
+		r := &readings[i]
+		b = append(append(append(b, "reading "...), r.Quantity...), ' ')
+		b = append(decimal(b, r.Value), '\n')
+		b = numberLine(b, "u", r.U)
+		b = line(b, "instrument", r.Instrument)
 		if r.FromWaveform {
-			line("from", "waveform")
+			b = line(b, "from", "waveform")
 		}
 		for _, v := range r.Repeats {
-			line("repeat", decimal(v))
+			b = append(decimal(append(b, "repeat "...), v), '\n')
 		}
 	}
-	return b.String()
+	return b
+}
+
+// line appends "NAME VALUE", where there is a value.
+func line(b []byte, name, value string) []byte {
+	if value == "" {
+		return b
+	}
+	b = append(append(b, name...), ' ')
+	if strings.ContainsAny(value, "\\\n") {
+		value = oneLine.Replace(value)
+	}
+	return append(append(b, value...), '\n')
+}
+
+var oneLine = strings.NewReplacer(`\`, `\\`, "\n", `\n`)
+
+// numberLine appends "NAME VALUE", where the value is stated.
+func numberLine(b []byte, name string, value float64) []byte {
+	if value == 0 {
+		return b
+	}
+	return append(decimal(append(append(b, name...), ' '), value), '\n')
 }
 
 // decimal writes a number as the CSV does; SQLite keeps no negative zero.
-func decimal(v float64) string {
+func decimal(b []byte, v float64) []byte {
 	if v == 0 {
 		v = 0
 	}
-	return strconv.FormatFloat(v, 'g', -1, 64)
+	return strconv.AppendFloat(b, v, 'g', -1, 64)
 }

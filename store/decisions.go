@@ -65,14 +65,14 @@ func (lb *Logbook) decisions(ctx context.Context, picked string, args []any) ite
 		} else if schema < 2 {
 			return
 		}
-		rows, err := tx.QueryContext(ctx, fmt.Sprintf(selectDecisions, picked), args...)
+		rows, err := tx.QueryContext(ctx, fmt.Sprintf(selectDecisions, picked, "picked.at, picked.seq"), args...)
 		if err != nil {
 			fail(err)
 			return
 		}
 		defer rows.Close()
 		for rows.Next() {
-			d, err := scanDecision(rows)
+			d, _, err := scanDecision(rows)
 			if err != nil {
 				fail(err)
 				return
@@ -88,32 +88,32 @@ func (lb *Logbook) decisions(ctx context.Context, picked string, args []any) ite
 }
 
 const selectDecisions = `
-SELECT d.id, b.name, v.name, d.at, d.network, d.c, ifnull(d.c_tol, 0), ifnull(d.r, 0), ifnull(d.r_tol, 0), d.limit_v,
+SELECT d.seq, d.id, b.name, v.name, d.at, d.network, d.c, ifnull(d.c_tol, 0), ifnull(d.r, 0), ifnull(d.r_tol, 0), d.limit_v,
   d.peak_v, ifnull(d.peak_v_u, 0), d.peak_v_low, d.peak_v_high, ifnull(d.damping_ratio, 0), ifnull(d.loss_w, 0),
   d.bus_v, d.excitation_a, ifnull(d.switching_hz, 0),
   d.inductance_h, d.capacitance_f, ifnull(d.resistance_ohm, 0), d.digest, d.recommendation,
   (SELECT group_concat(t.id, ' ' ORDER BY t.at, t.seq) FROM decision_trial x JOIN trial t ON t.seq = x.trial WHERE x.decision = d.seq)
 FROM (%s) picked CROSS JOIN decision d ON d.seq = picked.seq
 JOIN revision v ON v.id = d.revision JOIN board b ON b.id = v.board
-ORDER BY picked.at, picked.seq`
+ORDER BY %s`
 
-func scanDecision(rows *sql.Rows) (d Decision, err error) {
+func scanDecision(rows *sql.Rows) (d Decision, seq int64, err error) {
 	var at string
 	var whole, trials sql.NullString
 	n := &d.Network
-	err = rows.Scan(&d.ID, &d.Board, &d.Revision, &at, &n.Kind, &n.C, &n.CTol, &n.R, &n.RTol, &d.LimitV,
+	err = rows.Scan(&seq, &d.ID, &d.Board, &d.Revision, &at, &n.Kind, &n.C, &n.CTol, &n.R, &n.RTol, &d.LimitV,
 		&d.Peak.Value, &d.Peak.U, &d.Peak.Low, &d.Peak.High, &d.Damping, &d.LossW,
 		&d.Excitation.Bus, &d.Excitation.Current, &d.SwitchingHz,
 		&d.Loop.Inductance, &d.Loop.Capacitance, &d.Loop.Resistance, &d.Digest, &whole, &trials)
 	if err != nil {
-		return d, err
+		return d, seq, err
 	}
 	if whole.Valid {
 		d.Recommendation = []byte(whole.String)
 	}
 	d.Trials = strings.Fields(trials.String)
 	if d.At, err = time.Parse(timeLayout, at); err != nil {
-		return d, fmt.Errorf("decision %s: its time %s is not one this logbook writes", d.ID, quote(at))
+		return d, seq, fmt.Errorf("decision %s: its time %s is not one this logbook writes", d.ID, quote(at))
 	}
-	return d, nil
+	return d, seq, nil
 }

@@ -106,6 +106,9 @@ func migrateOnce(ctx context.Context, conn *sql.Conn, scripts []string) (err err
 		if _, err := conn.ExecContext(ctx, scripts[version]); err != nil {
 			return err
 		}
+		if err := finish(ctx, conn, version+1); err != nil {
+			return err
+		}
 		stamp := fmt.Sprintf("PRAGMA application_id = %d; PRAGMA user_version = %d", applicationID, version+1)
 		if _, err := conn.ExecContext(ctx, stamp); err != nil {
 			return err

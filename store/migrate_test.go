@@ -35,8 +35,8 @@ func TestVersion1MovesForward(t *testing.T) {
 		t.Fatal(err)
 	}
 	defer lb.Close()
-	if schema, err := schemaOf(t.Context(), lb.db); err != nil || schema != 3 {
-		t.Errorf("schema %d, %v; want 3", schema, err)
+	if schema, err := schemaOf(t.Context(), lb.db); err != nil || schema != 4 {
+		t.Errorf("schema %d, %v; want 4", schema, err)
 	}
 	trials := checkVersion1(t, lb)
 	if n := len(decisions(t, lb, Scope{})); n != 0 {

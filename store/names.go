@@ -56,3 +56,7 @@ func (w *writer) point(ctx context.Context, p snubber.OperatingPoint) (any, erro
 		`INSERT INTO operating_point (bus_v, current_a, switching_hz) VALUES (?, ?, ?)`,
 		orNull(p.BusV), orNull(p.CurrentA), orNull(p.SwitchingHz))
 }
+
+func (w *writer) logbook(ctx context.Context, id string) (int64, error) {
+	return number(ctx, w, w.logbooks, id, `SELECT n FROM logbook WHERE id = ?`, `INSERT INTO logbook (id) VALUES (?)`, id)
+}

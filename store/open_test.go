@@ -185,7 +185,7 @@ func TestSettingsOfEveryConnection(t *testing.T) {
 		held = append(held, conn)
 		for pragma, want := range map[string]string{
 			"journal_mode": "wal", "synchronous": "2", "foreign_keys": "1", "busy_timeout": "10000", "recursive_triggers": "1",
-			"application_id": fmt.Sprint(applicationID), "user_version": "3",
+			"application_id": fmt.Sprint(applicationID), "user_version": "4",
 		} {
 			var got string
 			if err := conn.QueryRowContext(t.Context(), "PRAGMA "+pragma).Scan(&got); err != nil || got != want {

@@ -35,13 +35,13 @@ func openReadings(ctx context.Context, tx *sql.Tx, picked string, args []any) (*
 	} else if schema < 3 {
 		query = strings.Replace(query, fromWaveform, "0", 1)
 	}
-	values, err := openCursor(ctx, tx, query, picked, args, func(rows *sql.Rows, seq *int64, r *snubber.Reading) error {
+	values, err := openCursor(ctx, tx, fmt.Sprintf(query, picked), args, func(rows *sql.Rows, seq *int64, r *snubber.Reading) error {
 		return rows.Scan(seq, &r.Quantity, &r.Value, &r.U, &r.Instrument, &r.FromWaveform)
 	})
 	if err != nil {
 		return nil, err
 	}
-	repeats, err := openCursor(ctx, tx, selectRepeats, picked, args, func(rows *sql.Rows, seq *int64, r *snubber.Reading) error {
+	repeats, err := openCursor(ctx, tx, fmt.Sprintf(selectRepeats, picked), args, func(rows *sql.Rows, seq *int64, r *snubber.Reading) error {
 		return rows.Scan(seq, &r.Quantity, &r.Value)
 	})
 	if err != nil {
@@ -84,8 +84,8 @@ type cursor[T any] struct {
 	done bool
 }
 
-func openCursor[T any](ctx context.Context, tx *sql.Tx, query, picked string, args []any, scan func(*sql.Rows, *int64, *T) error) (*cursor[T], error) {
-	rows, err := tx.QueryContext(ctx, fmt.Sprintf(query, picked), args...)
+func openCursor[T any](ctx context.Context, db querier, query string, args []any, scan func(*sql.Rows, *int64, *T) error) (*cursor[T], error) {
+	rows, err := db.QueryContext(ctx, query, args...)
 	if err != nil {
 		return nil, err
 	}

@@ -64,7 +64,7 @@ func (lb *Logbook) Strike(ctx context.Context, id, because string) error {
 		case err != sql.ErrNoRows:
 			return err
 		}
-		return w.strike(ctx, seq, time.Now(), because)
+		return w.strike(ctx, seq, full, time.Now(), because)
 	})
 	if err != nil {
 		return fmt.Errorf("strike trial %s: %w", quote(id), err)
@@ -76,20 +76,20 @@ type querier interface {
 	QueryContext(ctx context.Context, query string, args ...any) (*sql.Rows, error)
 }
 
-// entry is a kind of row that a person may name by the end of its id.
-type entry struct {
+// nameable is a kind of row that a person may name by the end of its id.
+type nameable struct {
 	table string // and the word for it
 	kind  error  // where there is none
 	ids   string // where a person finds them
 }
 
 var (
-	aTrial    = entry{"trial", ErrNoTrial, "its history"}
-	aDecision = entry{"decision", ErrNoDecision, "its view decision_table"}
+	aTrial    = nameable{"trial", ErrNoTrial, "its history"}
+	aDecision = nameable{"decision", ErrNoDecision, "its view decision_table"}
 )
 
-// find is the row number and the full id of the entry that id names.
-func (e entry) find(ctx context.Context, db querier, id string) (seq int64, full string, err error) {
+// find is the row number and the full id of the row that id names.
+func (e nameable) find(ctx context.Context, db querier, id string) (seq int64, full string, err error) {
 	end := strings.ToLower(strings.TrimSpace(id))
 	if len(end) < leastID || len(end) > 36 || strings.Trim(end, "0123456789abcdef-") != "" {
 		return 0, "", fmt.Errorf("%s %s: %w: name a %s by its id, or by the last %d or more characters of it", e.table, quote(id), e.kind, e.table, leastID)
@@ -117,6 +117,6 @@ func (e entry) find(ctx context.Context, db querier, id string) (seq int64, full
 	return seq, full, nil
 }
 
-func (e entry) none(id string) error {
+func (e nameable) none(id string) error {
 	return fmt.Errorf("%s %s: %w in this logbook; see the ids in %s", e.table, quote(id), e.kind, e.ids)
 }

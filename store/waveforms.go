@@ -8,8 +8,6 @@ import (
 	"fmt"
 	"iter"
 
-	"github.com/google/uuid"
-
 	"ringbook/snubber"
 	"ringbook/snubber/waveform"
 )
@@ -102,6 +100,7 @@ FROM waveform WHERE trial = ? ORDER BY seq`
 
 // packed is a record with its samples as its row holds them.
 type packed struct {
+	id string
 	waveform.Record
 	samples  []byte
 	encoding string
@@ -127,12 +126,8 @@ func packRecord(r waveform.Record) (packed, error) {
 	return p, nil
 }
 
-func (w *writer) addWaveform(ctx context.Context, trial int64, p packed) error {
-	id, err := uuid.NewV7()
-	if err != nil {
-		return fmt.Errorf("make an id: %w", err)
-	}
-	_, err = w.insert(ctx, insertWaveform, id.String(), trial, p.Start, p.Interval, orNull(p.StepV), p.samples, p.encoding, p.digest[:], orNull(p.Origin))
+func (w *writer) addWaveform(ctx context.Context, trial int64, p *packed) error {
+	_, err := w.insert(ctx, insertWaveform, p.id, trial, p.Start, p.Interval, orNull(p.StepV), p.samples, p.encoding, p.digest[:], orNull(p.Origin))
 	return err
 }
 

@@ -17,6 +17,17 @@ type writer struct {
 	sessions map[string]int64
 	devices  map[string]int64 // instruments by their *IDN? answer
 	points   map[pointKey]int64
+	logbooks map[string]int64
+	last     place // the chain's end as this connection left it; no logbook: not known
+	chained  int   // rows of the chain written in this transaction
+	links    []any // those not written yet, and those of origin: values for insertChain and insertOrigin
+	origins  []any
+	text     []byte // room for an entry's text
+	args     []any  // room for a statement's
+
+	indexed int64 // the last trial of the last stretch, as far as is known
+	loose   int   // bytes of text of the trials logged since
+	logged  int   // trials logged in this transaction
 }
 
 // cacheLimit bounds each map of a writer: an import may name a million operating points.
@@ -28,18 +39,21 @@ func newWriter(conn *sql.Conn) *writer {
 	return w
 }
 
-// forget drops the row numbers: some may be of rows that were rolled back.
+// forget drops the row numbers and what else is remembered: some may be of rows that were rolled back.
 func (w *writer) forget() {
 	w.boards, w.sessions, w.devices = map[string]int64{}, map[string]int64{}, map[string]int64{}
-	w.revs, w.points = map[revisionKey]int64{}, map[pointKey]int64{}
+	w.revs, w.points, w.logbooks = map[revisionKey]int64{}, map[pointKey]int64{}, map[string]int64{}
+	w.last, w.links, w.origins, w.indexed, w.loose = place{}, nil, nil, 0, 0
 }
 
-func (w *writer) close() error {
+func (w *writer) close() error { return errors.Join(w.closeStatements(), w.conn.Close()) }
+
+func (w *writer) closeStatements() error {
 	var errs []error
 	for _, stmt := range w.prepared {
 		errs = append(errs, stmt.Close())
 	}
-	return errors.Join(append(errs, w.conn.Close())...)
+	return errors.Join(errs...)
 }
 
 // write runs do in one transaction. When it returns nil all of it is on the disk; otherwise nothing is.
@@ -58,6 +72,7 @@ func (lb *Logbook) write(ctx context.Context, do func(*writer) error) (err error
 	}
 	defer func() { lb.turn <- w }()
 
+	w.logged, w.chained = 0, 0
 	// IMMEDIATE takes the write lock at once, where SQLite can wait for it; a lock asked for halfway fails instead.
 	if _, err := w.conn.ExecContext(ctx, "BEGIN IMMEDIATE"); err != nil {
 		return explain(lb.path, err)
@@ -75,6 +90,9 @@ func (lb *Logbook) write(ctx context.Context, do func(*writer) error) (err error
 		}
 	}()
 	if err := do(w); err != nil {
+		return err
+	}
+	if err := w.flushChain(unhurried); err != nil {
 		return err
 	}
 	if err := ctx.Err(); err != nil {
