@@ -7,12 +7,15 @@ import (
 	"net"
 	"strconv"
 	"sync"
+	"time"
 
 	"ringbook/acquire/simbench/device"
 )
 
 // Names lists the instruments of the bench.
-func Names() []string { return []string{"scope", "supply", "counter", "fixture"} }
+func Names() []string {
+	return []string{"scope", "supply", "counter", "fixture", "thermometer", "relays", "trouble"}
+}
 
 // Bench is a running bench: its instruments answer until it is closed. It is safe for concurrent use.
 type Bench struct {
@@ -25,16 +28,21 @@ type Bench struct {
 	serves sync.WaitGroup
 	ending sync.Mutex // so that nothing begins to serve once Close waits
 
+	clock func() time.Duration // the bench's time; 0 at its start
+
 	mu       sync.Mutex // of what is below, the state of the bench
-	network  Network
+	network  Network    // as soldered in
+	closed   []bool     // the relays, channel 1 first
+	mistakes []Mistake
 	setV     float64 // V: what the supply is set to
-	outputOn bool
+	output   output
 	loadA    float64 // A
 	captures uint64  // how many have been taken
 	kept     *Capture
 	format   sampleFormat // of the scope's samples
 	meters   *rand.Rand
-	gains    map[string]float64 // each meter's own error, a fraction
+	gains    map[string]float64 // each meter's own error, a fraction of its bound
+	drift    *rand.Rand         // of the thermometer
 }
 
 // Start sets up the bench, bare and with the supply on, and serves each instrument on its own TCP port of
@@ -46,14 +54,21 @@ func Start(ctx context.Context, cfg Config) (*Bench, error) {
 	}
 	b := &Bench{
 		model: model, instruments: map[string]*device.Instrument{}, addresses: map[string]string{},
-		network: Network{Kind: Bare}, setV: cfg.BusV, outputOn: true, loadA: cfg.LoadA, format: startFormat,
+		network: Network{Kind: Bare}, closed: make([]bool, len(cfg.Relays)),
+		setV: cfg.BusV, output: longOn(cfg), loadA: cfg.LoadA, format: startFormat,
 		meters: rand.New(rand.NewPCG(cfg.Seed, 0x6d65746572)), gains: map[string]float64{},
+		drift: rand.New(rand.NewPCG(cfg.Seed, 0x68656174)),
 	}
-	for _, name := range Names() {
+	start := time.Now()
+	b.clock = func() time.Duration { return time.Duration(cfg.Bus.Speed * float64(time.Since(start))) }
+	// A seed stands for the same errors as ever: those that read one stream of numbers keep their places in it.
+	for _, name := range []string{"scope", "supply", "counter", "fixture"} {
 		b.gains[name] = 2*b.meters.Float64() - 1
 	}
+	b.gains["thermometer"] = 2*b.drift.Float64() - 1
 	for name, build := range map[string]func() (*device.Instrument, error){
 		"scope": b.newScope, "supply": b.newSupply, "counter": b.newCounter, "fixture": b.newFixture,
+		"thermometer": b.newThermometer, "relays": b.newRelays, "trouble": b.newTrouble,
 	} {
 		if b.instruments[name], err = build(); err != nil {
 			return nil, fmt.Errorf("start the simulated bench: %w", err)
@@ -101,12 +116,12 @@ func (b *Bench) Truth() Truth {
 	return truth(b.model.cfg.Board, b.setV, b.loadA)
 }
 
-// point is the bus voltage and the load there really are: none with the supply off.
-func (b *Bench) point() (bus, load float64) {
-	if !b.outputOn {
-		return 0, 0
+// now integrates the board as it is at this moment; nil while the converter stands still.
+func (b *Bench) now() (*record, error) {
+	if !b.output.on {
+		return nil, nil
 	}
-	return b.setV, b.loadA
+	return b.model.record(b.ctx, b.network, b.acrossF(), b.busV(), b.loadA)
 }
 
 // read is what a meter of a relative error says about a true value: its own error, always the same, and a

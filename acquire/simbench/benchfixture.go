@@ -1,6 +1,7 @@
 package simbench
 
 import (
+	"strconv"
 	"strings"
 
 	"ringbook/acquire/simbench/device"
@@ -12,11 +13,14 @@ import (
 //	FIXTure:FIT kind[,farad[,ohm]]   BARE | C | RC | RCD; values a kind does not have are left out or 0
 //	FIXTure:FIT?                     the same, all three
 //	FIXTure:LOAD ampere              FIXTure:LOAD?    MEASure:CURRent?
+//	FIXTure:MISTakes?                how often parts were changed on a live bus, and the highest voltage they were; see
+//	                                 Mistake
 func (b *Bench) newFixture() (*device.Instrument, error) {
 	strip := func() {
 		b.mu.Lock()
 		defer b.mu.Unlock()
-		b.network, b.loadA = Network{Kind: Bare}, b.model.cfg.LoadA
+		b.solder(Network{Kind: Bare})
+		b.loadA = b.model.cfg.LoadA
 	}
 	return device.New("RINGBOOK,SIMULATED FIXTURE,0,1", strip, []device.Command{
 		{Header: "FIXTure:FIT", Min: 1, Max: 3, Do: b.fit},
@@ -35,9 +39,21 @@ func (b *Bench) newFixture() (*device.Instrument, error) {
 		})},
 		b.ask("FIXTure:LOAD?", func() float64 { return b.loadA }),
 		b.ask("MEASure[:SCALar]:CURRent[:DC]?", func() float64 {
-			_, load := b.point()
+			load := b.loadA
+			if !b.output.on {
+				load = 0
+			}
 			return b.read("fixture", b.model.cfg.MeterError, load)
 		}),
+		{Header: "FIXTure:MISTakes?", Do: func([]device.Arg) (string, error) {
+			b.mu.Lock()
+			defer b.mu.Unlock()
+			highest := 0.0
+			for _, m := range b.mistakes {
+				highest = max(highest, m.BusV)
+			}
+			return strconv.Itoa(len(b.mistakes)) + "," + device.NR3(highest, 6), nil
+		}},
 	})
 }
 
@@ -60,6 +76,14 @@ func (b *Bench) fit(args []device.Arg) (string, error) {
 	}
 	b.mu.Lock()
 	defer b.mu.Unlock()
-	b.network = n
+	b.solder(n)
 	return "", nil
+}
+
+// solder changes the network that is soldered in.
+func (b *Bench) solder(n Network) {
+	if n != b.network {
+		b.touch()
+	}
+	b.network = n
 }

@@ -7,11 +7,16 @@ import (
 )
 
 // newSupply makes the bench supply, which feeds the bus.
+//
+//	[SOURce]:VOLTage volt    OUTPut ON|OFF    MEASure:VOLTage?    MEASure:CURRent?
+//
+// The voltage measured is that of the bus, so it is seen falling while the output is off.
 func (b *Bench) newSupply() (*device.Instrument, error) {
 	off := func() {
 		b.mu.Lock()
 		defer b.mu.Unlock()
-		b.setV, b.outputOn = b.model.cfg.BusV, false
+		b.switchOutput(false)
+		b.setV = b.model.cfg.BusV
 	}
 	return device.New("RINGBOOK,SIMULATED SUPPLY,0,1", off, []device.Command{
 		{Header: "[SOURce]:VOLTage[:LEVel][:IMMediate][:AMPLitude]", Min: 1, Max: 1, Do: b.set(func(v float64) error {
@@ -29,20 +34,19 @@ func (b *Bench) newSupply() (*device.Instrument, error) {
 			}
 			b.mu.Lock()
 			defer b.mu.Unlock()
-			b.outputOn = on
+			b.switchOutput(on)
 			return "", nil
 		}},
 		{Header: "OUTPut[:STATe]?", Do: func([]device.Arg) (string, error) {
 			b.mu.Lock()
 			defer b.mu.Unlock()
-			if b.outputOn {
+			if b.output.on {
 				return "1", nil
 			}
 			return "0", nil
 		}},
 		b.ask("MEASure[:SCALar]:VOLTage[:DC]?", func() float64 {
-			bus, _ := b.point()
-			return b.read("supply", b.model.cfg.MeterError, bus)
+			return b.read("supply", b.model.cfg.MeterError, b.busV())
 		}),
 		{Header: "MEASure[:SCALar]:CURRent[:DC]?", Do: func([]device.Arg) (string, error) {
 			b.mu.Lock()
@@ -59,12 +63,11 @@ func (b *Bench) newSupply() (*device.Instrument, error) {
 // supplyCurrent is the converter's own share of the load current, and the charge that node and network take up
 // in every cycle.
 func (b *Bench) supplyCurrent() (float64, error) {
-	bus, load := b.point()
-	r, err := b.model.record(b.ctx, b.network, bus, load)
-	if err != nil {
+	r, err := b.now()
+	if r == nil {
 		return 0, err
 	}
-	return b.model.cfg.Board.Duty*load + b.model.cfg.SwitchingHz*r.charge, nil
+	return b.model.cfg.Board.Duty*b.loadA + b.model.cfg.SwitchingHz*r.charge, nil
 }
 
 // newCounter makes the frequency counter, which looks at the gate drive.
@@ -73,7 +76,7 @@ func (b *Bench) newCounter() (*device.Instrument, error) {
 		{Header: "MEASure[:SCALar]:FREQuency?", Do: func([]device.Arg) (string, error) {
 			b.mu.Lock()
 			defer b.mu.Unlock()
-			if !b.outputOn {
+			if !b.output.on {
 				return device.NR3(math.NaN(), 0), nil
 			}
 			return device.NR3(b.read("counter", b.model.cfg.CounterPPM*1e-6, b.model.cfg.SwitchingHz), 9), nil

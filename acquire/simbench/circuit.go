@@ -16,7 +16,7 @@ type circuit struct {
 	board    Board
 	bus      float64 // E, V
 	current  float64 // I0, A: loop current when the switch lets go, t = 0
-	fixed    float64 // F: what lies straight across the node: probe, and a capacitor with next to no resistance
+	fixed    float64 // F: what lies straight across the node: probe, relays' capacitors, and one with next to no resistance
 	branchC  float64 // F: the capacitor of the network's branch; 0: no branch
 	branchR  float64 // ohm: the branch's resistor, its ESR aside
 	branchZ  float64 // ohm: the ESR
@@ -28,13 +28,14 @@ type circuit struct {
 // straight across the node: a thousandth of the ring's at 300 MHz, but a burden to the integration.
 const shortest = 0.5e-12
 
-// newCircuit lays the network n, of actual values, onto the board.
-func newCircuit(b Board, p Parts, n Network, bus, current, probe float64) circuit {
-	c := circuit{board: b, bus: bus, current: current, fixed: probe, drop: p.DiodeDrop, on: p.DiodeOhm}
+// newCircuit lays the network n, of actual values, onto the board; besides the network, across farads lie across the
+// node.
+func newCircuit(b Board, p Parts, n Network, bus, current, across float64) circuit {
+	c := circuit{board: b, bus: bus, current: current, fixed: across, drop: p.DiodeDrop, on: p.DiodeOhm}
 	if n.Kind == Bare {
 		return c
 	}
-	node := b.CapacitanceAt(bus) + probe
+	node := b.CapacitanceAt(bus) + across
 	if (n.R+p.ESR)*n.C*node/(n.C+node) < shortest {
 		c.fixed += n.C
 		return c

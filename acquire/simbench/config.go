@@ -17,7 +17,10 @@ type Config struct {
 	Scope       Scope
 	MeterError  float64 // bound of the supply's and the load's own errors, a fraction of the reading; 0: none
 	CounterPPM  float64 // bound of the counter's error, parts per million; 0: none
-	Seed        uint64  // of the noise and the instruments' errors; the parts have their own
+	Bus         Bus
+	Heat        Heat
+	Relays      []float64 // F, each in (0, 1e-6]: what channel 1, 2, ... of the relay card switches in, as printed on it
+	Seed        uint64    // of the noise and the instruments' errors; the parts have their own
 	// Ports gives the TCP port of an instrument by name (see Names); 0 or absent: any that is free.
 	Ports map[string]int
 }
@@ -36,6 +39,9 @@ func Default() Config {
 		Parts:      Parts{CTol: 0.02, RTol: 0.01, ESR: 0.03, DiodeDrop: 0.6, DiodeOhm: 0.15, Seed: 1},
 		Scope:      Scope{RateHz: 5e9, Points: 2000, Before: 200, NoiseV: 0.6, SpanV: 160, BottomV: -20},
 		MeterError: 5e-4, CounterPPM: 20, Seed: 1,
+		Bus:    Bus{RiseS: 0.2, DischargeS: 0.5, SafeV: 5, Speed: 1},
+		Heat:   Heat{AmbientC: 23, RiseKPerW: 30, ErrorK: 0.3},
+		Relays: fiftyCapacitors(),
 	}
 }
 
@@ -51,6 +57,15 @@ func (c Config) Check() error {
 		return err
 	}
 	if err := checkPoint(c.BusV, c.LoadA); err != nil {
+		return err
+	}
+	if err := c.Bus.check(); err != nil {
+		return err
+	}
+	if err := c.Heat.check(); err != nil {
+		return err
+	}
+	if err := checkRelays(c.Relays); err != nil {
 		return err
 	}
 	switch {

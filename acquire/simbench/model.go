@@ -20,6 +20,7 @@ type Model struct {
 // situation is all that a waveform depends on besides the board.
 type situation struct {
 	network      Network // as printed on its parts
+	across       float64 // F: what relays have put across the node besides, its actual value
 	bus, current float64 // V, A: current is the loop's
 }
 
@@ -40,7 +41,7 @@ func New(cfg Config) (*Model, error) {
 // Respond is the exact answer with a network fitted: peak and settled level, no noise, no sampling. The parts
 // have their true values, as in Capture.
 func (m *Model) Respond(ctx context.Context, n Network) (Response, error) {
-	r, err := m.record(ctx, n, m.cfg.BusV, m.cfg.LoadA)
+	r, err := m.record(ctx, n, 0, m.cfg.BusV, m.cfg.LoadA)
 	if err != nil {
 		return Response{}, err
 	}
@@ -49,7 +50,7 @@ func (m *Model) Respond(ctx context.Context, n Network) (Response, error) {
 
 // Capture is one record of the scope with a network fitted. The same seed gives the same record.
 func (m *Model) Capture(ctx context.Context, n Network, seed uint64) (Capture, error) {
-	r, err := m.record(ctx, n, m.cfg.BusV, m.cfg.LoadA)
+	r, err := m.record(ctx, n, 0, m.cfg.BusV, m.cfg.LoadA)
 	if err != nil {
 		return Capture{}, err
 	}
@@ -57,20 +58,20 @@ func (m *Model) Capture(ctx context.Context, n Network, seed uint64) (Capture, e
 }
 
 // record integrates a situation, or finds it integrated before.
-func (m *Model) record(ctx context.Context, n Network, bus, load float64) (*record, error) {
+func (m *Model) record(ctx context.Context, n Network, across, bus, load float64) (*record, error) {
 	if err := n.Check(); err != nil {
 		return nil, err
 	}
-	key := situation{network: n, bus: bus, current: m.cfg.Board.PerLoadA * load}
+	key := situation{network: n, across: across, bus: bus, current: m.cfg.Board.PerLoadA * load}
 	m.mu.Lock()
 	defer m.mu.Unlock()
 	if r, ok := m.cache[key]; ok {
 		return r, nil
 	}
 	actual := m.cfg.Parts.actual(n)
-	c := newCircuit(m.cfg.Board, m.cfg.Parts, actual, bus, key.current, m.cfg.ProbeF)
+	c := newCircuit(m.cfg.Board, m.cfg.Parts, actual, bus, key.current, m.cfg.ProbeF+across)
 	// Long enough for the scope, for one round of a ring too slow for it, and for a creep up to the bus voltage.
-	total := m.cfg.Board.CapacitanceAt(0) + m.cfg.ProbeF + actual.C
+	total := m.cfg.Board.CapacitanceAt(0) + m.cfg.ProbeF + across + actual.C
 	end := max(m.cfg.Scope.after()+2/m.cfg.Scope.RateHz,
 		1.2*2*math.Pi*math.Sqrt(m.cfg.Board.Inductance*total), 10*m.cfg.Board.Resistance*total)
 	r, err := c.solve(ctx, end, solveTolerance)

@@ -6,7 +6,9 @@ import (
 	"fmt"
 	"io"
 	"os"
+	"path/filepath"
 	"syscall"
+	"time"
 
 	"github.com/creack/pty"
 	"go.bug.st/serial"
@@ -27,8 +29,9 @@ func (t terminal) Close() error {
 	return err
 }
 
-// ServePTY lets the named instrument answer on a pseudo-terminal too, and gives the path that a client opens
-// as its serial port. It lasts until the bench is closed.
+// ServePTY lets the named instrument answer on a pseudo-terminal too, and gives the path that a client opens as its
+// serial port. It lasts until the bench is closed, save for a Drop: then path is gone, as with an adapter that is
+// unplugged, and comes back when the instrument takes connections again.
 func (b *Bench) ServePTY(name string) (path string, err error) {
 	in, ok := b.instruments[name]
 	if !ok {
@@ -39,12 +42,51 @@ func (b *Bench) ServePTY(name string) (path string, err error) {
 	if err := b.ctx.Err(); err != nil {
 		return "", fmt.Errorf("serve the %s on a pseudo-terminal: the bench is closed: %w", name, err)
 	}
-	t, err := openTerminal()
+	dir, err := os.MkdirTemp("", "ringbook-bench-")
 	if err != nil {
+		return "", fmt.Errorf("serve the %s on a pseudo-terminal: a folder for its path: %w", name, err)
+	}
+	path = filepath.Join(dir, name)
+	t, err := plug(path)
+	if err != nil {
+		os.RemoveAll(dir)
 		return "", fmt.Errorf("serve the %s on a pseudo-terminal: %w", name, err)
 	}
-	b.serves.Go(func() { _ = in.Serve(b.ctx, io.ReadWriteCloser(t)) })
-	return t.client.Name(), nil
+	b.serves.Go(func() {
+		defer os.RemoveAll(dir)
+		for b.ctx.Err() == nil {
+			_ = in.Serve(b.ctx, io.ReadWriteCloser(t))
+			os.Remove(path)
+			for again := false; !again; {
+				select {
+				case <-b.ctx.Done():
+					return
+				case <-time.After(20 * time.Millisecond):
+				}
+				if in.Refuses() {
+					continue
+				}
+				if next, err := plug(path); err == nil {
+					t, again = next, true
+				}
+			}
+		}
+		t.Close()
+	})
+	return path, nil
+}
+
+// plug makes a pseudo-terminal whose other end is found at path.
+func plug(path string) (terminal, error) {
+	t, err := openTerminal()
+	if err != nil {
+		return terminal{}, err
+	}
+	if err := os.Symlink(t.client.Name(), path); err != nil {
+		t.Close()
+		return terminal{}, err
+	}
+	return t, nil
 }
 
 // openTerminal makes a pseudo-terminal that passes bytes as they are.

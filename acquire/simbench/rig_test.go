@@ -4,6 +4,7 @@ import (
 	"math"
 	"strings"
 	"testing"
+	"time"
 
 	"ringbook/acquire"
 	"ringbook/acquire/simbench"
@@ -80,5 +81,64 @@ func TestRig(t *testing.T) {
 				t.Errorf("peak with a diode across the resistor: %g V", v)
 			}
 		})
+	}
+}
+
+// TestSwapThroughTheRig: the program's own client switches off, waits until the bus is safe, changes parts and switches
+// on, and the bench finds no mistake in it; one who does not wait makes one.
+func TestSwapThroughTheRig(t *testing.T) {
+	cfg := simbench.Default()
+	cfg.Bus.Speed = 20
+	bench, err := simbench.Start(t.Context(), cfg)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer bench.Close()
+	rig, err := acquire.ParseRig("rig.toml", []byte(bench.RigTOML()))
+	if err != nil {
+		t.Fatal(err)
+	}
+	station, err := acquire.Open(t.Context(), rig)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer station.Close()
+	if !station.CanSwitch() {
+		t.Fatal("the rig switches no output")
+	}
+	var last float64
+	for _, c := range []float64{100e-12, 1e-9} {
+		if err := station.Switch(t.Context(), false); err != nil {
+			t.Fatal(err)
+		}
+		if err := station.Discharged(t.Context(), cfg.Bus.SafeV, time.Minute, nil); err != nil {
+			t.Fatal(err)
+		}
+		if err := station.Fit(t.Context(), snubber.Network{Kind: snubber.C, C: c}); err != nil {
+			t.Fatal(err)
+		}
+		if err := station.Switch(t.Context(), true); err != nil {
+			t.Fatal(err)
+		}
+		if v, err := station.Read(t.Context(), snubber.BusV); err != nil || math.Abs(v-48) > 0.1 {
+			t.Errorf("after it has settled, the bus is at %g V, %v", v, err)
+		}
+		hz, err := station.Read(t.Context(), snubber.RingHz)
+		if err != nil || hz == last {
+			t.Errorf("ring %g Hz, %v", hz, err)
+		}
+		last = hz
+	}
+	if list := bench.Mistakes(); len(list) > 0 {
+		t.Errorf("mistakes: %v", list)
+	}
+	if err := station.Switch(t.Context(), false); err != nil {
+		t.Fatal(err)
+	}
+	if err := station.Fit(t.Context(), snubber.Network{Kind: snubber.Bare}); err != nil {
+		t.Fatal(err)
+	}
+	if list := bench.Mistakes(); len(list) != 1 || list[0].BusV < 5 {
+		t.Errorf("mistakes: %v, want one", list)
 	}
 }

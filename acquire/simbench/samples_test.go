@@ -79,7 +79,7 @@ func TestEveryFormat(t *testing.T) {
 					t.Fatalf("of three captures, the last is not the last: sample %d", i+1)
 				}
 			}
-			if got, err := station.Take(t.Context(), nil); err != nil || len(got.Readings) != 7 {
+			if got, err := station.Take(t.Context(), nil); err != nil || len(got.Readings) != 8 {
 				t.Errorf("readings after the captures: %+v, %v", got, err)
 			}
 		})

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"math/rand/v2"
+	"slices"
 )
 
 // Scope is the oscilloscope: eight bits, noise, no bandwidth limit of its own.
@@ -69,10 +70,21 @@ func (c Capture) Clipped() bool {
 // capture samples the record r. The sampling clock runs free of the trigger, so where the edge falls
 // between two samples is drawn anew each time.
 func (s Scope) capture(r *record, rng *rand.Rand) Capture {
+	volts := make([]float64, s.Points)
+	start, step := -float64(s.Before)/s.RateHz, 1/s.RateHz
+	r.sample(start+rng.Float64()*step, step, volts)
+	return s.digitize(volts, rng)
+}
+
+// still is a capture of a node that stands at a voltage: what a scope that triggers by itself shows without an edge.
+func (s Scope) still(volt float64, rng *rand.Rand) Capture {
+	return s.digitize(slices.Repeat([]float64{volt}, s.Points), rng)
+}
+
+// digitize is what the converter makes of the voltages at its samples.
+func (s Scope) digitize(volts []float64, rng *rand.Rand) Capture {
 	c := Capture{StartS: -float64(s.Before) / s.RateHz, StepS: 1 / s.RateHz,
 		VoltsPerBit: s.SpanV / math.MaxUint8, BottomV: s.BottomV, Codes: make([]uint8, s.Points)}
-	volts := make([]float64, s.Points)
-	r.sample(c.StartS+rng.Float64()*c.StepS, c.StepS, volts)
 	for i, v := range volts {
 		code := math.Round((v + s.NoiseV*rng.NormFloat64() - c.BottomV) / c.VoltsPerBit)
 		c.Codes[i] = uint8(min(max(code, 0), math.MaxUint8))

@@ -12,6 +12,7 @@ const (
 	numberArg
 	stringArg
 	blockArg
+	listArg // an expression in parentheses: (@1,3:5)
 )
 
 // Arg is one argument of a command.
@@ -35,6 +36,14 @@ func (a Arg) Word() (string, error) {
 		return "", Errorf(-104, "%s where a word should be", clip([]byte(a.text)))
 	}
 	return strings.ToUpper(a.text), nil
+}
+
+// Text is a string's text, its quotes taken off.
+func (a Arg) Text() (string, error) {
+	if a.kind != stringArg {
+		return "", Errorf(-104, "%s where a string in quotes should be", clip([]byte(a.text)))
+	}
+	return a.text, nil
 }
 
 // Bool reads ON, OFF, or a number that is rounded: 0 is off, anything else on (SCPI-1999, 7.3).

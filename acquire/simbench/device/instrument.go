@@ -23,6 +23,8 @@ type Instrument struct {
 	commands []Command
 	headers  []header
 
+	troubles troubles
+
 	mu      sync.Mutex
 	status  status
 	waiting bool // a reply to an earlier query of the message stands in the output queue

@@ -148,7 +148,7 @@ func (s *scanner) args() (list []Arg, err error) {
 	}
 }
 
-// arg reads one argument of any type of IEEE 488.2, 7.7, expressions excepted.
+// arg reads one argument of any type of IEEE 488.2, 7.7; of expressions, what stands in one pair of parentheses.
 func (s *scanner) arg() (Arg, error) {
 	c := s.peek()
 	switch {
@@ -160,6 +160,8 @@ func (s *scanner) arg() (Arg, error) {
 		return s.quoted(c)
 	case c == '#':
 		return s.hash()
+	case c == '(':
+		return s.list()
 	}
 	return Arg{}, s.unexpected()
 }

@@ -7,13 +7,14 @@ import (
 	"io"
 	"net"
 	"sync"
+	"time"
 )
 
 // longestMessage is how many bytes of a program message are kept, terminator included.
 const longestMessage = 4096
 
 // Serve answers the messages that arrive on a stream, until it ends or ctx is cancelled, and closes
-// it. A message without its line feed at the end of the stream is not run. A message longer than the
+// it. What goes wrong on demand (see Trouble) goes wrong here. A message without its line feed at the end of the stream is not run. A message longer than the
 // input buffer is thrown away whole and noted as -363.
 func (in *Instrument) Serve(ctx context.Context, stream io.ReadWriteCloser) error {
 	stop := context.AfterFunc(ctx, func() { stream.Close() })
@@ -22,6 +23,11 @@ func (in *Instrument) Serve(ctx context.Context, stream io.ReadWriteCloser) erro
 			stream.Close()
 		}
 	}()
+	d := in.troubles.join(stream)
+	if d == nil {
+		return nil
+	}
+	defer in.troubles.leave(d)
 	r := bufio.NewReaderSize(stream, longestMessage)
 	for {
 		line, err := r.ReadSlice('\n')
@@ -42,10 +48,27 @@ func (in *Instrument) Serve(ctx context.Context, stream io.ReadWriteCloser) erro
 		case err != nil:
 			return err
 		}
-		if reply := in.Execute(line[:len(line)-1]); reply != nil {
-			if _, err := stream.Write(reply); err != nil {
-				return err
+		run, over := in.troubles.message()
+		if over {
+			return nil
+		}
+		if !run {
+			continue
+		}
+		reply := in.Execute(line[:len(line)-1])
+		if reply == nil {
+			continue
+		}
+		send, late := in.troubles.reply(reply, &d.held)
+		if late > 0 {
+			select {
+			case <-ctx.Done():
+				return ctx.Err()
+			case <-time.After(late):
 			}
+		}
+		if err := d.write(send); err != nil {
+			return err
 		}
 	}
 }
