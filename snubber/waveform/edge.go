@@ -96,7 +96,7 @@ func ReadEdge(ctx context.Context, r Record, opt Options) (Edge, error) {
 	at := onset{at: 0, scale: 1}
 	if len(r.Volts) >= minSamples {
 		var err error
-		if found, at, all, err = p.strongestRing(ctx, r.Volts, all, step); err != nil {
+		if found, at, all, err = p.strongestRing(ctx, all, step); err != nil {
 			return Edge{}, fmt.Errorf("read the edge: %w", err)
 		}
 	}
@@ -121,56 +121,31 @@ func spread(v []float64) float64 {
 
 // strongestRing reads the ring after each edge, to the next one, and takes the strongest. Where nothing rings, at is the
 // largest edge. edges are those left: one that a later fit grew back over was none, but a swing of that ring.
-func (p prefix) strongestRing(ctx context.Context, v []float64, all []onset, step float64) (found *ring, at onset, edges []onset, err error) {
+func (p prefix) strongestRing(ctx context.Context, all []onset, step float64) (found *ring, at onset, edges []onset, err error) {
 	for i := 0; i < len(all); i++ {
-		o := all[i]
-		to := len(p.sum) - 1
-		if i+1 < len(all) {
-			to = max(all[i+1].at-2*all[i+1].scale, o.at)
-		}
-		got := p.findRing(ctx, o, 0, to, step)
-		for j := i + 1; got != nil && j < len(all); j++ { // the next may be no edge, but the ring's own beat or noise
-			beyond := len(p.sum) - 1
-			if j+1 < len(all) {
-				beyond = max(all[j+1].at-2*all[j+1].scale, o.at)
-			}
-			on := p.findRing(ctx, o, 0, beyond, step)
-			if on == nil || on.misfit || on.meanSquare() > 1.3*got.meanSquare() {
-				break
-			}
-			got = on
-			got.past = j
-		}
-		if got != nil {
-			if c := got.clipped(v, o.at, step, p.ref); c.end > got.start {
-				if after := p.findRing(ctx, onset{at: c.end, scale: 1, size: o.size}, c.end, to, step); after != nil {
-					got = after
-				}
-			}
-		}
+		got, last := p.ringAfter(ctx, all, i, step)
 		if ctx.Err() != nil {
 			return nil, at, nil, ctx.Err()
 		}
-		first := o
+		first := all[i]
+		i = last
 		if got != nil {
-			if period := got.curve.modes[0].period(); float64(got.start-o.at) > 2*period { // the ring is of a later, smaller edge
-				edges = append(edges, o)
+			period := got.curve.modes[0].period()
+			if float64(got.start-first.at) > 2*period { // the ring is of a later, smaller edge
+				edges = append(edges, first)
 				first = onset{at: got.start, scale: max(1, int(period/8)), size: got.amplitude()}
 			}
-			for len(edges) > 0 && edges[len(edges)-1].at+edges[len(edges)-1].scale > got.start {
-				first, edges = edges[len(edges)-1], edges[:len(edges)-1]
-				if found != nil && at == first {
+			for k := len(edges) - 1; k >= 0 && edges[k].at+max(edges[k].scale, int(2*period)) > got.start; k-- {
+				if found != nil && at == edges[k] {
 					found = nil
 				}
+				first, edges = edges[k], edges[:k]
+			}
+			if found == nil || got.amplitude() > found.amplitude() {
+				found, at = got, first
 			}
 		}
 		edges = append(edges, first)
-		if got != nil {
-			i = max(i, got.past)
-		}
-		if got != nil && (found == nil || got.amplitude() > found.amplitude()) {
-			found, at = got, first
-		}
 	}
 	if found == nil {
 		for _, o := range edges {
@@ -180,4 +155,31 @@ func (p prefix) strongestRing(ctx context.Context, v []float64, all []onset, ste
 		}
 	}
 	return found, at, edges, nil
+}
+
+// ringAfter reads the ring after edge i, and says over which of the later onsets its fit goes: the last of them, or i. What
+// a fit goes over was no edge, but the ring's own beat or noise.
+func (p prefix) ringAfter(ctx context.Context, all []onset, i int, step float64) (got *ring, last int) {
+	last = i
+	to := 0
+	for j := i; j < len(all); j++ {
+		until := len(p.sum) - 1
+		if j+1 < len(all) {
+			until = max(all[j+1].at-2*all[j+1].scale, all[i].at)
+		}
+		on := p.findRing(ctx, all[i], 0, until, step)
+		if j > i && (on == nil || on.misfit || on.start >= all[j].at || !on.asGoodAs(got)) {
+			break
+		}
+		got, last, to = on, j, until
+	}
+	if got == nil {
+		return nil, i
+	}
+	if c := got.clipped(p.v, all[i].at, step, p.ref); c.end > got.start {
+		if after := p.findRing(ctx, onset{at: c.end, scale: 1, size: all[i].size}, c.end, to, step); after != nil {
+			got = after
+		}
+	}
+	return got, last
 }

@@ -67,23 +67,24 @@ func (c coarse) crossesSteps(at *curve) int {
 	return int(min(n, float64(len(c.y))))
 }
 
-// weakDither says whether noise is too small to spread a level over the converter's codes: under 0.4 of a step, from
-// where on the mean of the codes is off by more than a hundredth of a step.
-func weakDither(step, noise float64) bool { return step > 0 && noise < 0.4*step }
-
-// tailNoise is the standard deviation of the samples from i to j-1, at most some thousands of the last; +Inf where they are too few.
-func (p prefix) tailNoise(i, j int) float64 {
+// weakDither says whether the noise in samples i to j-1, at most some thousands of the last, is too small to spread a level over
+// the converter's codes: a standard deviation under 0.4 of a step, from where on the mean of the codes is off by more than a
+// hundredth of a step; or a level between two codes, and no others seen. Where samples are too few to tell it is.
+func (p prefix) weakDither(step float64, i, j int) bool {
+	if step == 0 {
+		return false
+	}
 	i = max(i, j-4096)
 	if j-i < 16 {
-		return 0
+		return true
 	}
 	mean := p.mean(i, j)
 	squares := 0.0
-	for k := i; k < j; k++ {
-		d := p.v[k] - p.ref - mean
+	for _, v := range p.v[i:j] {
+		d := v - p.ref - mean
 		squares += d * d
 	}
-	return math.Sqrt(squares / float64(j-i-1))
+	return math.Sqrt(squares/float64(j-i-1)) < 0.4*step || spread(p.v[i:j]) < 1.5*step
 }
 
 // joins moves the start, a sample at a time, to where the samples join the curve: back while they lie on it, then on past
@@ -182,7 +183,8 @@ func (p prefix) standsOut(ctx context.Context, r *ring, step float64) bool {
 			if !plausible(plain[len(plain)-1], len(c.y)) {
 				continue
 			}
-			if bent, ok := refine(ctx, c.series, append(plain, scaled[1:]...)); ok {
+			bent, ok := refine(ctx, c.series, append(plain, scaled[1:]...))
+			if ok && !takesPlace(bent.modes, scaled[0]) {
 				bare = min(bare, bent.rss)
 			}
 		}
@@ -190,4 +192,14 @@ func (p prefix) standsOut(ctx context.Context, r *ring, step float64) bool {
 	noise := max(math.Sqrt(with.rss/float64(max(1, len(c.y)-with.parameters()))), c.floor())
 	gain := (bare - with.rss) / (noise * noise)
 	return gain > 2*math.Log(16*float64(len(c.y)*m)/falseAlarm)+8
+}
+
+// takesPlace says whether another tone has moved to where the ring was.
+func takesPlace(modes []mode, ring mode) bool {
+	for _, m := range modes {
+		if m.w != 0 && math.Abs(m.w-ring.w) < max(ring.d, 0.03*ring.w) {
+			return true
+		}
+	}
+	return false
 }

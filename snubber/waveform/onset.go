@@ -61,8 +61,8 @@ type onset struct {
 // onsets finds the edges of a record, at most most, in time order; at least one, if only the largest change there is.
 //
 // It looks at the difference of the means over adjoining stretches, at the shortest length at which nearly the greatest
-// difference shows, and takes each local extreme that is large and well above what came shortly before. The swings of
-// a ring shrink, so only its first one counts.
+// difference shows, and takes each local extreme that is large, is no noise and stands well above what came shortly before. The
+// swings of a ring shrink, so only its first one counts.
 func (p prefix) onsets(most int) []onset {
 	n := len(p.sum) - 1
 	var tops []onset // one for each scale
@@ -104,6 +104,7 @@ func (p prefix) rising(top onset) []onset {
 	if k < 4 {
 		long, short = 10*k, 1+k
 	}
+	least := max(0.2*top.size, 5*math.Sqrt(2/float64(k))*quietest(p.v)) // five standard deviations of a jump in noise
 	var out []onset
 	before := peaks{window: long - short}
 	var left, here float64
@@ -113,10 +114,10 @@ func (p prefix) rising(top onset) []onset {
 		if j < last {
 			right = size(j + 1)
 		}
-		if q := j - short; q >= 0 {
+		if q := j - short; q > 0 && size(q) >= size(q-1) && size(q) >= size(q+1) { // what rises to this extreme came not before it
 			before.push(q, size(q))
 		}
-		if here >= left && here > right && here >= 0.2*top.size && here > 1.4*before.top() {
+		if here >= left && here > right && here >= least && here > 1.4*before.top() {
 			out = append(out, onset{at: k + j*stride, scale: k, size: here})
 		}
 	}

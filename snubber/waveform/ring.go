@@ -11,12 +11,25 @@ type ring struct {
 	start, end int
 	curve      *curve
 	noise      float64 // V: of one sample, standard deviation
-	past       int     // the last onset that the fit went over, where it did
 	misfit     bool    // the samples after the start do not follow the curve as closely as the later ones
 }
 
-// meanSquare of what the fit leaves, V^2.
-func (r *ring) meanSquare() float64 { return r.curve.rss / float64(r.curve.n) }
+// variance of what the fit leaves, V^2, and its degrees of freedom.
+func (r *ring) variance() (v, dof float64) {
+	dof = float64(max(1, r.curve.n-r.curve.parameters()))
+	return r.curve.rss / dof, dof
+}
+
+// asGoodAs says whether r leaves no more, sample for sample, than the fit of fewer samples that other is, or where there is none
+// than its own noise: a third more at most, beside four standard deviations of what chance makes of few samples.
+func (r *ring) asGoodAs(other *ring) bool {
+	v, dof := r.variance()
+	least := r.noise * r.noise
+	if other != nil {
+		least, dof = other.variance()
+	}
+	return v < least*(1.3+4*math.Sqrt(2/dof))
+}
 
 // amplitude of the ring at its start, V.
 func (r *ring) amplitude() float64 { return cmplx.Abs(r.curve.amp[0]) }
@@ -83,7 +96,7 @@ func (p prefix) fitTone(ctx context.Context, t tone, others []tone, o onset, lea
 	m := max(1, int(t.period()/perCycle))
 	safe := o.at + max(1, int(min(0.6*t.period(), 0.8/max(t.d, 1e-9))))
 	end := min(to, safe+int(min(14/max(t.d, 1e-9), 8192*float64(m))))
-	weak := weakDither(step, p.tailNoise(to-(to-o.at)/4, to))
+	weak := p.weakDither(step, to-(to-o.at)/4, to)
 	var best *attempt
 	modes := []mode{{t.d * float64(m), t.w * float64(m)}}
 	for try := range 16 {

@@ -78,7 +78,7 @@ func (r *reader) settled(noise float64) (float64, float64) {
 	}
 	sd := max(noise, math.Sqrt(squares/float64(max(1, last-1))))
 	u := sd / math.Sqrt(float64(last))
-	if weakDither(r.step, math.Sqrt(squares/float64(max(1, last-1)))) {
+	if r.p.weakDither(r.step, n-last, n) {
 		u = max(u, r.step/math.Sqrt(12))
 	}
 	return mean + r.p.ref, u

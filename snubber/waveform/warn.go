@@ -70,7 +70,7 @@ func (r *reader) warnLength() {
 	if cycles := n / main.period(); cycles < 3 {
 		r.say("the ring's fit has only %.1f cycles: record longer after the edge", cycles)
 	}
-	if left := math.Exp(-main.d * n); left > 0.1 && !weakDither(r.step, 0.3*r.step) {
+	if left := math.Exp(-main.d * n); left > max(0.1, r.step/r.e.AmplitudeV) { // under a step, what is left tells nothing
 		r.say("the ring is still at %.0f %% of its first amplitude where the record or the next edge ends it: record longer after the edge", 100*left)
 	}
 }
