@@ -21,7 +21,8 @@ const busyWait = 10 * time.Second
 type Logbook struct {
 	path   string
 	db     *sql.DB
-	turn   chan *writer // holds the writer while nobody writes; nil for a logbook open for reading alone
+	wait   time.Duration // how long a write waits for another program's
+	turn   chan *writer  // holds the writer while nobody writes; nil for a logbook open for reading alone
 	closed sync.Once
 }
 
@@ -43,7 +44,7 @@ func open(ctx context.Context, path string, wait time.Duration) (*Logbook, error
 	if err != nil {
 		return nil, explain(path, err)
 	}
-	lb := &Logbook{path: path, db: db, turn: make(chan *writer, 1)}
+	lb := &Logbook{path: path, db: db, wait: wait, turn: make(chan *writer, 1)}
 	w, err := prepareFile(ctx, lb)
 	if err != nil {
 		return nil, errors.Join(explain(path, err), db.Close())

@@ -5,6 +5,10 @@ import (
 	"database/sql"
 	"errors"
 	"fmt"
+	"math/rand/v2"
+	"time"
+
+	"modernc.org/sqlite"
 )
 
 // writer is the one connection of a Logbook that writes, with its statements prepared once and the row numbers of the
@@ -73,8 +77,7 @@ func (lb *Logbook) write(ctx context.Context, do func(*writer) error) (err error
 	defer func() { lb.turn <- w }()
 
 	w.logged, w.chained = 0, 0
-	// IMMEDIATE takes the write lock at once, where SQLite can wait for it; a lock asked for halfway fails instead.
-	if _, err := w.conn.ExecContext(ctx, "BEGIN IMMEDIATE"); err != nil {
+	if err := w.begin(ctx, lb.wait); err != nil {
 		return explain(lb.path, err)
 	}
 	// A commit cut short by ctx would leave it open whether the trial is kept, so it is always seen through.
@@ -98,8 +101,36 @@ func (lb *Logbook) write(ctx context.Context, do func(*writer) error) (err error
 	if err := ctx.Err(); err != nil {
 		return err
 	}
-	_, err = w.conn.ExecContext(unhurried, "COMMIT")
+	commit, err := w.stmt(unhurried, "COMMIT")
+	if err != nil {
+		return err
+	}
+	_, err = commit.ExecContext(unhurried)
 	return err
+}
+
+// begin takes the write lock at once: one asked for halfway through a transaction could not be waited for. The wait is here
+// rather than in SQLite's busy_timeout, which on this connection is none, so that ctx is looked at between the tries and
+// need not be watched in each.
+func (w *writer) begin(ctx context.Context, wait time.Duration) error {
+	s, err := w.stmt(ctx, "BEGIN IMMEDIATE")
+	if err != nil {
+		return err
+	}
+	unhurried := context.WithoutCancel(ctx)
+	deadline := time.Now().Add(wait)
+	for pause := time.Millisecond; ; pause = min(2*pause, 20*time.Millisecond) {
+		_, err := s.ExecContext(unhurried)
+		var lite *sqlite.Error
+		if err == nil || !errors.As(err, &lite) || !isBusy(lite) || time.Now().After(deadline) {
+			return err
+		}
+		select {
+		case <-ctx.Done():
+			return ctx.Err()
+		case <-time.After(pause/2 + rand.N(pause)): // apart from the others that wait
+		}
+	}
 }
 
 // undo rolls back. Where SQLite has already done so by itself (disk full, damage), ROLLBACK has nothing to do and says
