@@ -4,7 +4,6 @@ import (
 	"context"
 	"errors"
 	"fmt"
-	"io"
 	"strings"
 
 	"ringbook/acquire/scpi"
@@ -86,10 +85,8 @@ func linkCure(e *scpi.LinkError) string {
 		return "check the cable and, on a serial port, the baud rate; a slow instrument needs a longer timeout in the rig file"
 	case e.Timeout():
 		return "check that it is on and cabled, that the address is this instrument's, and that it knows what the rig file asks and takes its terminator; a slow instrument needs a longer timeout in the rig file"
-	case errors.Is(e.Err, io.EOF):
-		return "check that it is on, and that no other program holds it: many take one link at a time"
 	}
-	return "check that it is on and its cable in, then try again"
+	return "check that it is on and its cable in, and that no other program holds it, since many take one link at a time; then try again"
 }
 
 // nonsenseCure tells what answers there, where the reply shows it.

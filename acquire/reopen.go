@@ -58,10 +58,7 @@ func (s *Station) again(ctx context.Context, work func() error) error {
 			return err
 		}
 		if e := in.ready(ctx); e != nil {
-			if errors.As(e, &lost) || errors.Is(e, scpi.ErrOtherInstrument) || ctx.Err() != nil {
-				return in.fault(fault.Doing, e)
-			}
-			return err // what it was lost by tells more
+			return in.fault(fault.Doing, e)
 		}
 		s.notice("%v; what was begun was begun again from its start", err)
 	}

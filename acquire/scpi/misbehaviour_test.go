@@ -8,6 +8,7 @@ import (
 	"math"
 	"net"
 	"strings"
+	"sync"
 	"testing"
 	"time"
 
@@ -184,10 +185,13 @@ func TestMisbehaviour(t *testing.T) {
 // Between the end of one exchange and the next message lies the pace, and a context that ends leaves the Conn in step.
 func TestPace(t *testing.T) {
 	const pace = 60 * time.Millisecond
+	var mu sync.Mutex
 	var came []time.Time
 	good := &acquiretest.Instrument{Identity: identity, Answers: map[string]string{"READ?": "1"}}
 	conn := dial(t, scpi.Options{Pace: pace}, answering(func(m string) string {
+		mu.Lock()
 		came = append(came, time.Now())
+		mu.Unlock()
 		return good.Answer(m)
 	}))
 	ctx := context.Background()
@@ -196,6 +200,8 @@ func TestPace(t *testing.T) {
 			t.Fatal(v, err)
 		}
 	}
+	mu.Lock()
+	defer mu.Unlock()
 	if len(came) != 4 {
 		t.Fatalf("%d messages; want 4", len(came))
 	}

@@ -1,0 +1,4 @@
+package acquire
+
+// Outlier is for tests.
+var Outlier = outlier
