@@ -21,7 +21,19 @@ func TestLoadRig(t *testing.T) {
 		t.Fatal(err)
 	}
 	want := acquire.Rig{Instruments: []acquire.Instrument{
+		{
+			Name: "counter", Address: "TCPIP::192.0.2.11::5025::SOCKET", Reopen: time.Minute,
+			Readings: []acquire.Query{{Quantity: snubber.SwitchingHz, Query: "MEASure:FREQuency?", Accuracy: acquire.Accuracy{Percent: 0.005}}},
+		},
 		{Name: "jig", Address: "tcp://192.0.2.12", NoErrorQueue: true, NoSelfTest: true, Fit: "ROUTe:NETWork {network},{c},{r}"},
+		{
+			Name: "load", Address: "tcp://192.0.2.13:5025", NoSelfTest: true,
+			Readings: []acquire.Query{{Quantity: snubber.CurrentA, Query: "MEASure:CURRent:DC?", Accuracy: acquire.Accuracy{Percent: 0.1, Fixed: 0.005}}},
+		},
+		{
+			Name: "meter", Address: "serial:///dev/ttyUSB1?baud=9600&parity=even&data=7", Prompt: ">", Echo: true,
+			Readings: []acquire.Query{{Quantity: snubber.BusV, Query: "READ?", Accuracy: acquire.Accuracy{Percent: 0.1, Fixed: 0.02}, Repeats: 3}},
+		},
 		{
 			Name: "scope", Address: "tcp://192.0.2.10:5025", Timeout: 8 * time.Second, Setup: []string{"*CLS", "MEASure:SOURce CHANnel1"},
 			Readings: []acquire.Query{
@@ -36,8 +48,13 @@ func TestLoadRig(t *testing.T) {
 			},
 		},
 		{
-			Name: "supply", Address: "serial:///dev/ttyUSB0?baud=115200", Terminator: "\r\n",
-			Readings: []acquire.Query{{Quantity: snubber.BusV, Query: "MEASure:VOLTage:DC?", Accuracy: acquire.Accuracy{Percent: 0.1, Fixed: 0.02}, Repeats: 3}},
+			Name: "supply", Address: "serial:///dev/ttyUSB0?baud=115200", Terminator: "\r\n", Pace: 20 * time.Millisecond, NoSelfTest: true,
+			Output:   &acquire.BusSwitch{On: []string{"VOLTage 48", "OUTPut ON"}, Off: []string{"OUTPut OFF"}, State: "OUTPut?", Settle: 300 * time.Millisecond},
+			Readings: []acquire.Query{{Quantity: snubber.SupplyA, Query: "MEASure:CURRent:DC?", Accuracy: acquire.Accuracy{Percent: 0.2, Fixed: 0.005}}},
+		},
+		{
+			Name: "thermometer", Address: "tcp://192.0.2.14:5025",
+			Readings: []acquire.Query{{Quantity: snubber.TempC, Query: "MEASure:TEMPerature? TCouple,K", Accuracy: acquire.Accuracy{Fixed: 1.5}, Repeats: 1}},
 		},
 	}}
 	if d := cmp.Diff(want, got); d != "" {
@@ -84,6 +101,8 @@ interval_s = 1e-9
 volt_per_code = 0.5
 `
 	with := func(old, new string) string { return strings.Replace(wave, old, new, 1) }
+	top := func(line string) string { return strings.Replace(good, "\n\n", "\n"+line+"\n\n", 1) }
+	output := func(lines string) string { return good + "[instrument.scope.output]\n" + lines }
 	for name, c := range map[string]struct{ text, want string }{
 		"waveform key":         {wave + "points = 5\n", "line 12: instrument.scope.waveform.points: there is no such key: a waveform has take, query, format, byte_order, preamble, preamble_fields, scale, accuracy, start_s, start_sample, interval_s, zero_v, zero_code, volt_per_code"},
 		"waveform no query":    {with("query = \"CAPTure:DATA?\"\n", ""), "line 7: instrument.scope.waveform: its query is missing"},
@@ -150,6 +169,31 @@ volt_per_code = 0.5
 		"fit query":         {good + "[instrument.jig]\naddress = \"tcp://192.0.2.12\"\nfit = \"ROUTe? {c}\"\n", "a query fits nothing"},
 		"fit twice":         {good + "[instrument.jig]\naddress = \"tcp://192.0.2.12\"\nfit = \"R {c}\"\n[instrument.kit]\naddress = \"tcp://192.0.2.12\"\nfit = \"R {c}\"\n", "line 11: instrument.kit.fit: jig fits networks already"},
 		"instrument's name": {strings.ReplaceAll(good, "scope", "\"my scope\""), "a name is letters, digits"},
+		"pace no unit":      {top("pace = \"20\""), `line 3: instrument.scope.pace: "20": write a time with its unit`},
+		"pace negative":     {top("pace = \"-1s\""), "line 3: instrument.scope.pace"},
+		"pace too long":     {top("pace = \"2h\""), "line 3: instrument.scope.pace: 2h0m0s: it must be nothing to 1m0s"},
+		"reopen":            {top("reopen = \"soon\""), `line 3: instrument.scope.reopen: "soon": write a time with its unit`},
+		"prompt empty":      {top("prompt = \" \""), "line 3: instrument.scope.prompt"},
+		"prompt a number":   {top("prompt = \"1>\""), `line 3: instrument.scope.prompt: "1>": it must begin with no blank, and with nothing that a reply may begin with`},
+		"prompt a line end": {top("prompt = \"\\n>\""), "line 3: instrument.scope.prompt: "},
+		"echo":              {top("echo = \"yes\""), "line 3"},
+		"follows":           {top("follows = \"scpi\""), `line 3: instrument.scope.follows: "scpi": it must be measure-tree`},
+		"tree without": {"[instrument.scope]\naddress = \"tcp://a\"\nfollows = \"measure-tree\"\n[instrument.scope.reading.decay_s]\nrepeats = 3\n",
+			"line 4: instrument.scope.reading.decay_s: its query is missing: the MEASure tree has none for a decay"},
+		"tree of no quantity": {"[instrument.scope]\naddress = \"tcp://a\"\nfollows = \"measure-tree\"\n[instrument.scope.reading.decay]\nrepeats = 3\n",
+			`line 4: instrument.scope.reading.decay: "decay" is no reading`},
+		"output without off":     {output("on = \"OUTPut ON\""), `line 6: instrument.scope.output: its off is missing: give the message, as in off = "OUTPut OFF"`},
+		"output without on":      {output("off = \"OUTPut OFF\""), "line 6: instrument.scope.output: its on is missing"},
+		"output empty":           {output("on = []\noff = \"OUTPut OFF\""), "line 6: instrument.scope.output: its on is missing"},
+		"output two in one":      {output("on = \"VOLT 5;OUTPut ON\"\noff = \"OUTPut OFF\""), "line 7: instrument.scope.output.on: message"},
+		"output of numbers":      {output("on = 1\noff = 0"), "line 7: instrument.scope.output.on: 1 is no message: write it in quotes"},
+		"output state":           {output("on = \"OUTPut ON\"\noff = \"OUTPut OFF\"\nstate = \"OUTPut\""), `line 9: instrument.scope.output.state: "OUTPut" is no query`},
+		"output state empty":     {output("on = \"OUTPut ON\"\noff = \"OUTPut OFF\"\nstate = \"\""), "line 9: instrument.scope.output.state: it is empty"},
+		"output settle":          {output("on = \"OUTPut ON\"\noff = \"OUTPut OFF\"\nsettle = \"2d\""), `line 9: instrument.scope.output.settle: "2d": write a time`},
+		"output settle for ever": {output("on = \"OUTPut ON\"\noff = \"OUTPut OFF\"\nsettle = \"2h\""), "line 9: instrument.scope.output.settle: 2h0m0s: it must be nothing to 1h0m0s"},
+		"output key":             {output("on = \"OUTPut ON\"\noff = \"OUTPut OFF\"\nvoltage = 48"), "line 9: instrument.scope.output.voltage: there is no such key: an output has on, off, state and settle"},
+		"two outputs": {output("on = \"OUTPut ON\"\noff = \"OUTPut OFF\"") + "\n[instrument.spare]\naddress = \"tcp://a\"\n[instrument.spare.output]\non = \"A 1\"\noff = \"A 0\"\n",
+			"instrument.spare.output: scope switches the bus already"},
 	} {
 		t.Run(name, func(t *testing.T) {
 			_, err := acquire.ParseRig("rig.toml", []byte(c.text))
