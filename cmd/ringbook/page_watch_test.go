@@ -16,6 +16,8 @@ import (
 	"testing"
 	"time"
 
+	"ringbook/recipes"
+	"ringbook/recipes/page"
 	"ringbook/snubber"
 	"ringbook/store"
 )
@@ -207,6 +209,53 @@ func TestWatchThroughTrouble(t *testing.T) {
 	until(t, address, told, "trial number 1")
 	logbookOf(t, path, 3)
 	until(t, address, told, "trial number 2")
+}
+
+// A page is woven once for each change, and not while nothing changes.
+func TestWatchWeavesOnChange(t *testing.T) {
+	path := filepath.Join(t.TempDir(), "ringbook.db")
+	logbookOf(t, path, 1)
+	weaves := make(chan int, 1000)
+	counted := recipes.Recipe{Title: "Counted", Weave: func(ctx context.Context, p *page.Page, src recipes.Source) error {
+		trials, err := src.Trials(ctx)
+		weaves <- len(trials)
+		return err
+	}}
+	ctx, stop := context.WithCancel(t.Context())
+	ended := make(chan error, 1)
+	a := &app{logbook: path, stdout: io.Discard, stderr: io.Discard}
+	go func() { ended <- a.follow(ctx, weaving{recipe: counted, flags: &scopeFlags{}}, newSite("127.0.0.1:1")) }()
+	next := func(want int) { // or the one after: opening a logbook may tidy its file
+		t.Helper()
+		for timeout := time.After(within); ; {
+			select {
+			case got := <-weaves:
+				if got == want {
+					return
+				}
+			case <-timeout:
+				t.Fatalf("it is not woven of %d trials", want)
+			}
+		}
+	}
+	next(1)
+	time.Sleep(5 * watchEvery)
+	if len(weaves) > 0 {
+		t.Errorf("woven %d times more though nothing changed", len(weaves))
+	}
+	lb, err := store.Open(t.Context(), path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer lb.Close()
+	if _, err := lb.Add(t.Context(), watchedTrial(1)); err != nil {
+		t.Fatal(err)
+	}
+	next(2)
+	stop()
+	if err := <-ended; err != nil {
+		t.Error(err)
+	}
 }
 
 func TestListenLoopback(t *testing.T) {
