@@ -169,3 +169,19 @@ func repeat(t snubber.Trial, n int) func(func(snubber.Trial, error) bool) {
 		}
 	}
 }
+
+// BenchmarkAudit audits 100,000 trials with five readings each: rows are those of trials alone.
+func BenchmarkAudit(b *testing.B) {
+	const n = 100_000
+	lb := openTemp(b)
+	if _, err := lb.AddAll(b.Context(), repeat(benchTrial(), n), nil); err != nil {
+		b.Fatal(err)
+	}
+	for b.Loop() {
+		if r, err := lb.Audit(b.Context(), nil); err != nil || !r.Sound() || r.Trials != n {
+			b.Fatal(r, err)
+		}
+	}
+	b.ReportMetric(float64(n*b.N)/b.Elapsed().Seconds(), "trials/s")
+	b.ReportMetric(float64(n*b.N)*7/b.Elapsed().Seconds(), "rows/s") // a trial's own, five readings, its link
+}
