@@ -56,7 +56,7 @@ func TestDemoPages(t *testing.T) {
 func demoLogbook(t testing.TB) *store.Logbook {
 	t.Helper()
 	path := filepath.Join(t.TempDir(), "demo.db")
-	data, err := os.ReadFile(filepath.Join("testdata", "pages", "demo.db"))
+	data, err := os.ReadFile(filepath.Join("testdata", "pages", "demo.sqlite"))
 	if err != nil {
 		t.Fatal(err)
 	}
