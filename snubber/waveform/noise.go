@@ -60,10 +60,10 @@ func quickNoise(v []float64) float64 {
 	return size[len(size)/2] / (0.6745 * math.Sqrt(6))
 }
 
-// quietest is the noise, V, in that eighth of the samples where it is least: where nothing rings, or the ring has died down.
+// quietest is the noise, V, in that quarter of the samples where it is least: where nothing rings, or the ring has died down.
 func quietest(v []float64) float64 {
 	least := quickNoise(v)
-	if part := len(v) / 8; part >= 32 {
+	if part := len(v) / 4; part >= 32 {
 		for i := 0; i+part <= len(v); i += part {
 			least = min(least, quickNoise(v[i:i+part]))
 		}

@@ -104,7 +104,7 @@ func (p prefix) rising(top onset) []onset {
 	if k < 4 {
 		long, short = 10*k, 1+k
 	}
-	least := max(0.2*top.size, 5*math.Sqrt(2/float64(k))*quietest(p.v)) // five standard deviations of a jump in noise
+	noise := quietest(p.v)
 	var out []onset
 	before := peaks{window: long - short}
 	var left, here float64
@@ -117,7 +117,7 @@ func (p prefix) rising(top onset) []onset {
 		if q := j - short; q > 0 && size(q) >= size(q-1) && size(q) >= size(q+1) { // what rises to this extreme came not before it
 			before.push(q, size(q))
 		}
-		if here >= left && here > right && here >= least && here > 1.4*before.top() {
+		if here >= left && here > right && here >= 0.2*top.size && here > 1.4*before.top() && p.isChange(k+j*stride, k, noise) {
 			out = append(out, onset{at: k + j*stride, scale: k, size: here})
 		}
 	}
@@ -125,6 +125,16 @@ func (p prefix) rising(top onset) []onset {
 		out = append(out, top)
 	}
 	return out
+}
+
+// isChange says whether the jump at i is more than noise: six standard deviations of it, at length k or one up to 8 times as long.
+func (p prefix) isChange(i, k int, noise float64) bool {
+	for long := k; long <= 8*k && i >= long && i+long < len(p.sum); long *= 2 {
+		if math.Abs(p.jump(i, long)) > 6*math.Sqrt(2/float64(long))*noise {
+			return true
+		}
+	}
+	return false
 }
 
 // peaks keeps the greatest of the last window values.
