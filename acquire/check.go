@@ -47,12 +47,16 @@ func CheckRig(ctx context.Context, rig Rig, progress func(Verdict)) ([]Verdict, 
 		begun := time.Now()
 		err := in.open(ctx)
 		c.say(in, "open", "", time.Since(begun), err)
-		if err == nil {
-			err = c.instrument(ctx, in)
-			in.conn.Close()
+		if err != nil {
+			if ctx.Err() != nil {
+				return c.verdicts, ctx.Err()
+			}
+			continue
 		}
-		if ctx.Err() != nil {
-			return c.verdicts, ctx.Err()
+		err = c.instrument(ctx, in)
+		in.conn.Close()
+		if err != nil {
+			return c.verdicts, err
 		}
 	}
 	return c.verdicts, nil

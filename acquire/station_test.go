@@ -1,9 +1,12 @@
 package acquire_test
 
 import (
+	"bufio"
 	"context"
 	"errors"
+	"io"
 	"math"
+	"net"
 	"os"
 	"strings"
 	"testing"
@@ -268,20 +271,62 @@ func TestSessionPlayedBack(t *testing.T) {
 	}
 }
 
+// BenchmarkTakeHundredReadings is a round of a hundred readings over loopback, in turn with the bare writes and reads of
+// the same bytes. It reports, for one reading, the time of both and the overhead: over the bare messages of a reading
+// and its error queue, and over the reading's own round trip alone.
 func BenchmarkTakeHundredReadings(b *testing.B) {
+	b.Run("error queue", func(b *testing.B) { hundredReadings(b, false) })
+	b.Run("no error queue", func(b *testing.B) { hundredReadings(b, true) })
+}
+
+func hundredReadings(b *testing.B, noQueue bool) {
+	const n = 100
 	dev := scope()
 	dev.Answers["FREQ?"] = "6.2E+7"
 	rig := rigOf(acquiretest.Serve(b, dev.Answer))
 	rig.Instruments[0].Readings = rig.Instruments[0].Readings[1:]
-	rig.Instruments[0].Readings[0].Repeats = 100
+	rig.Instruments[0].Readings[0].Repeats = n
+	rig.Instruments[0].NoErrorQueue = noQueue
 	s, err := acquire.Open(context.Background(), rig)
 	if err != nil {
 		b.Fatal(err)
 	}
 	defer s.Close()
+	conn, err := net.Dial("tcp", strings.TrimPrefix(rig.Instruments[0].Address, "tcp://"))
+	if err != nil {
+		b.Fatal(err)
+	}
+	defer conn.Close()
+	in := bufio.NewReader(conn)
+	bare := func(messages ...string) time.Duration {
+		begun := time.Now()
+		for range n {
+			for _, m := range messages {
+				if _, err := io.WriteString(conn, m); err != nil {
+					b.Fatal(err)
+				}
+				if _, err := in.ReadSlice('\n'); err != nil {
+					b.Fatal(err)
+				}
+			}
+		}
+		return time.Since(begun)
+	}
+	var ours, both, one time.Duration
 	for b.Loop() {
+		both += bare("FREQ?\n", "SYSTem:ERRor?\n")
+		one += bare("FREQ?\n")
+		begun := time.Now()
 		if _, err := s.Take(context.Background(), nil); err != nil {
 			b.Fatal(err)
 		}
+		ours += time.Since(begun)
 	}
+	each := func(d time.Duration) float64 { return d.Seconds() * 1e6 / float64(b.N) / n }
+	b.ReportMetric(each(ours), "us/reading")
+	b.ReportMetric(each(both), "us/bare-both")
+	b.ReportMetric(each(one), "us/bare-one")
+	b.ReportMetric(each(ours-both), "us-over-both")
+	b.ReportMetric(each(ours-one), "us-over-one")
+	b.ReportMetric(ours.Seconds()/both.Seconds(), "of-bare-both")
 }

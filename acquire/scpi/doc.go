@@ -19,7 +19,7 @@
 //
 // # Staying in step
 //
-// A reply that comes late must never be taken for the reply to the next query. Three rules see to it:
+// A reply that comes late must never be taken for the reply to the next query. Four rules see to it:
 //
 //   - After a failed, silent or nonsensical exchange the Conn refuses every further one with
 //     [ErrOutOfStep], until [Conn.Resync] has thrown away what was under way and heard the instrument's
@@ -30,6 +30,14 @@
 //   - The error queue is read after each reply and before it is handed over. Instruments answer in
 //     order: were the reply one from before, the true one would now come in place of the queue's
 //     `number,"text"`, and both are refused. (So Options.NoErrorQueue gives up more than error texts.)
+//   - An instrument without an error queue is not asked while something lies there that nobody asked for. What comes
+//     between question and reply it can still pass off as the reply: that is the price of Options.NoErrorQueue.
+//
+// # Manners
+//
+// A reply may begin with the header of its query, in short form or long (IEEE 488.2, 8.3), or with blanks; it may end
+// with LF, CR LF or CR. What no reply can be told from is dropped only where Options says that it comes: a prompt, or the
+// message repeated. Where a link is not a socket, listening to one without an error queue takes about a millisecond.
 //
 // # Waiting
 //

@@ -124,6 +124,11 @@ func (c *Conn) unasked(ctx context.Context, msg string) error {
 	if !c.opt.NoErrorQueue || c.link == nil {
 		return nil
 	}
+	if c.r.Buffered() == 0 {
+		if some, known := pending(c.rwc); known && !some {
+			return nil // a wait, however short, takes the system a millisecond
+		}
+	}
 	err := c.within(ctx, glance, func() error {
 		_, err := c.r.Peek(1)
 		return err
