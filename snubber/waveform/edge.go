@@ -79,7 +79,8 @@ func ReadEdge(ctx context.Context, r Record, opt Options) (Edge, error) {
 	if opt.MaxEdges < 0 {
 		return Edge{}, fmt.Errorf("read the edge: at most %d edges to try: it must be positive, or 0 for 4", opt.MaxEdges)
 	}
-	if span := spread(r.Volts); math.IsInf(span, 0) || span > 1e150 {
+	p := newPrefix(r.Volts)
+	if span := p.spread(); math.IsInf(span, 0) || span > 1e150 {
 		return Edge{}, fmt.Errorf("read the edge: the samples spread over %g V: no voltage does; check the scale", span)
 	}
 	if opt.MaxEdges == 0 {
@@ -89,7 +90,6 @@ func ReadEdge(ctx context.Context, r Record, opt Options) (Edge, error) {
 	if step == 0 {
 		step = convertersStep(r.Volts)
 	}
-	p := newPrefix(r.Volts)
 	all := p.onsets(opt.MaxEdges)
 	e := Edge{Warnings: []string{}, interval: r.Interval}
 	var found *ring
@@ -108,15 +108,6 @@ func ReadEdge(ctx context.Context, r Record, opt Options) (Edge, error) {
 	read.peak()
 	read.warn()
 	return e, nil
-}
-
-// spread is the highest sample less the lowest, V.
-func spread(v []float64) float64 {
-	low, high := v[0], v[0]
-	for _, x := range v {
-		low, high = min(low, x), max(high, x)
-	}
-	return high - low
 }
 
 // strongestRing reads the ring after each edge, to the next one, and takes the strongest. Where nothing rings, at is the
@@ -176,7 +167,7 @@ func (p prefix) ringAfter(ctx context.Context, all []onset, i int, step float64)
 	if got == nil {
 		return nil, i
 	}
-	if c := got.clipped(p.v, all[i].at, step, p.ref); c.end > got.start {
+	if c := got.clipped(p, all[i].at, step); c.end > got.start {
 		if after := p.findRing(ctx, onset{at: c.end, scale: 1, size: all[i].size}, c.end, to, step); after != nil {
 			got = after
 		}

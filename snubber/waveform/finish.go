@@ -79,12 +79,13 @@ func (p prefix) weakDither(step float64, i, j int) bool {
 		return true
 	}
 	mean := p.mean(i, j)
+	low, high := extremes(p.v[i:j])
 	squares := 0.0
 	for _, v := range p.v[i:j] {
 		d := v - p.ref - mean
 		squares += d * d
 	}
-	return math.Sqrt(squares/float64(j-i-1)) < 0.4*step || spread(p.v[i:j]) < 1.5*step
+	return math.Sqrt(squares/float64(j-i-1)) < 0.4*step || high-low < 1.5*step
 }
 
 // joins moves the start, a sample at a time, to where the samples join the curve: back while they lie on it, then on past

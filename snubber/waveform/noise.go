@@ -46,8 +46,10 @@ func convertersStep(v []float64) float64 {
 
 // quickNoise is the noise's standard deviation by second differences, V: right where samples are many to a cycle, too
 // large where they are few. It is the median's, so a few edges do not matter.
-func quickNoise(v []float64) float64 {
-	const look = 1024
+func quickNoise(v []float64) float64 { return noiseAt(v, 1024) }
+
+// noiseAt looks at that many samples, or few more.
+func noiseAt(v []float64, look int) float64 {
 	stride := max(1, len(v)/look)
 	var size []float64
 	for i := 1; i+1 < len(v); i += stride {
@@ -62,11 +64,10 @@ func quickNoise(v []float64) float64 {
 
 // quietest is the noise, V, in that quarter of the samples where it is least: where nothing rings, or the ring has died down.
 func quietest(v []float64) float64 {
-	least := quickNoise(v)
-	if part := len(v) / 4; part >= 32 {
-		for i := 0; i+part <= len(v); i += part {
-			least = min(least, quickNoise(v[i:i+part]))
-		}
+	part := max(len(v)/4, min(len(v), 64))
+	least := math.Inf(1)
+	for i := 0; i+part <= len(v); i += part {
+		least = min(least, noiseAt(v[i:i+part], 256))
 	}
 	return least
 }

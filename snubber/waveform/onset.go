@@ -12,15 +12,35 @@ type prefix struct {
 	room *room
 	sum  []float64 // sum[i]: the first i samples, less ref each
 	tiny float64   // V: below this, differences are the rounding of the samples
+
+	low, high float64 // V: of all samples
 }
 
 func newPrefix(v []float64) prefix {
 	p := prefix{v: v, room: new(room), ref: v[len(v)-1], sum: make([]float64, len(v)+1)}
-	p.tiny = 1e-9*spread(v) + 1e-14*math.Abs(p.ref)
+	p.low, p.high = extremes(v)
+	p.tiny = 1e-9*p.spread() + 1e-14*math.Abs(p.ref)
 	for i, x := range v {
 		p.sum[i+1] = p.sum[i] + (x - p.ref)
 	}
 	return p
+}
+
+// spread is the highest sample less the lowest, V.
+func (p prefix) spread() float64 { return p.high - p.low }
+
+// extremes are the lowest and the highest of samples, V.
+func extremes(v []float64) (low, high float64) {
+	low, high = v[0], v[0]
+	for _, x := range v {
+		if x < low {
+			low = x
+		}
+		if x > high {
+			high = x
+		}
+	}
+	return low, high
 }
 
 // mean of samples i to j-1, less ref.
@@ -70,8 +90,10 @@ func (p prefix) onsets(most int) []onset {
 	for k := 1; 2*k <= n && k <= max(1, n/4); k *= 2 {
 		top := onset{scale: k, at: k}
 		for i := k; i+k <= n; i += max(1, k/4) {
-			if a := p.change(i, k); a > top.size {
-				top.at, top.size = i, a
+			if math.Abs(p.jump(i, k)) > top.size { // or the change is no greater either
+				if a := p.change(i, k); a > top.size {
+					top.at, top.size = i, a
+				}
 			}
 		}
 		tops = append(tops, top)
@@ -106,7 +128,8 @@ func (p prefix) rising(top onset) []onset {
 	}
 	noise := quietest(p.v)
 	var out []onset
-	before := peaks{window: long - short}
+	var before peaks
+	var fresh []int // extremes less than short before
 	var left, here float64
 	right := size(0)
 	for j := range last + 1 {
@@ -114,10 +137,16 @@ func (p prefix) rising(top onset) []onset {
 		if j < last {
 			right = size(j + 1)
 		}
-		if q := j - short; q > 0 && size(q) >= size(q-1) && size(q) >= size(q+1) { // what rises to this extreme came not before it
-			before.push(q, size(q))
+		for len(fresh) > 0 && fresh[0] <= j-short {
+			before.push(fresh[0], size(fresh[0]))
+			fresh = fresh[1:]
 		}
-		if here >= left && here > right && here >= 0.2*top.size && here > 1.4*before.top() && p.isChange(k+j*stride, k, noise) {
+		before.forget(j - long)
+		if here < left || here <= right {
+			continue
+		}
+		fresh = append(fresh, j)
+		if here >= 0.2*top.size && here > 1.4*before.top() && p.isChange(k+j*stride, k, noise) {
 			out = append(out, onset{at: k + j*stride, scale: k, size: here})
 		}
 	}
@@ -137,11 +166,10 @@ func (p prefix) isChange(i, k int, noise float64) bool {
 	return false
 }
 
-// peaks keeps the greatest of the last window values.
+// peaks keeps the greatest of the last values.
 type peaks struct {
-	window int
-	at     []int
-	value  []float64
+	at    []int
+	value []float64
 }
 
 func (q *peaks) push(at int, v float64) {
@@ -149,7 +177,11 @@ func (q *peaks) push(at int, v float64) {
 		q.at, q.value = q.at[:n-1], q.value[:n-1]
 	}
 	q.at, q.value = append(q.at, at), append(q.value, v)
-	for q.at[0] <= at-q.window {
+}
+
+// forget those up to the given one.
+func (q *peaks) forget(at int) {
+	for len(q.at) > 0 && q.at[0] <= at {
 		q.at, q.value = q.at[1:], q.value[1:]
 	}
 }

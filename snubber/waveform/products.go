@@ -28,16 +28,20 @@ func (p *products) lay(modes []mode, n int) {
 	}
 }
 
-// powers is the sum over j from 0 to n-1 of e^(s j) times 1, j and j^2. It is summed term by term: the closed form of a geometric
-// series cancels where s is small.
+// powers is the sum over j from 0 to n-1 of e^(s j) times 1, j and j^2: of the first, the first two, four, ..., each the one before
+// and the same again later, by the binary digits of n. The closed form of a geometric series cancels where s is small.
 func powers(s complex128, n int) (out [3]complex128) {
-	z, p := cmplx.Exp(s), complex(1, 0)
-	for j := range n {
-		x := complex(float64(j), 0)
-		out[0] += p
-		out[1] += x * p
-		out[2] += x * x * p
-		p *= z
+	z := cmplx.Exp(s)
+	sum := [3]complex128{1} // of the first length terms, of which z is e^(s length)
+	turn, at := complex(1, 0), 0
+	for length := 1; length <= n; length *= 2 {
+		if n&length != 0 {
+			later(&out, &sum, turn, complex(float64(at), 0))
+			turn, at = turn*z, at+length
+		}
+		twice := sum
+		later(&twice, &sum, z, complex(float64(length), 0))
+		sum, z = twice, z*z
 	}
 	return out
 }

@@ -5,7 +5,7 @@ import "math"
 // levels finds the level before the edge and after it, the edge's instant and its direction.
 func (r *reader) levels() {
 	v := r.Volts
-	r.e.spread = spread(v)
+	r.e.spread = r.p.spread()
 	noise := r.tailNoise()
 	settled, u := r.settled(noise)
 	r.e.NoiseV = noise

@@ -80,7 +80,7 @@ func (r *reader) warnConverter() {
 	if r.step > 0 && r.e.NoiseV < 1.5*r.step/math.Sqrt(12) && r.e.AmplitudeV < 64*r.step {
 		r.say("quantisation dominates: the ring is %.0f steps of %s high; choose a finer vertical range, or average several records", 2*r.e.AmplitudeV/r.step, volts(r.step))
 	}
-	if c := r.ring.clipped(r.Volts, r.at.at, r.step, r.p.ref); c.longest > 0 {
+	if c := r.ring.clipped(r.p, r.at.at, r.step); c.longest > 0 {
 		r.say("clipped: %d samples in a row lie on one end of the range, flatter than a ring's turn: the peak is higher than read, and the fit leaves them out; choose a larger vertical range", c.longest)
 	}
 }
