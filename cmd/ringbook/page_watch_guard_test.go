@@ -44,7 +44,7 @@ func ask(t *testing.T, address, request string) (status int, header http.Header,
 func TestWatchGuard(t *testing.T) {
 	path := filepath.Join(t.TempDir(), "ringbook.db")
 	logbookOf(t, path, 1)
-	address := watching(t, "--logbook", path)
+	address := watching(t, "history", "--logbook", path)
 	until(t, address, events(t, address), "trial number 0")
 	_, port, _ := net.SplitHostPort(address)
 	for _, c := range []struct {

@@ -19,7 +19,7 @@ import (
 func TestWatchManyBrowsers(t *testing.T) {
 	path := filepath.Join(t.TempDir(), "ringbook.db")
 	logbookOf(t, path, 1)
-	address := watching(t, "--logbook", path)
+	address := watching(t, "history", "--logbook", path)
 	told := events(t, address)
 	until(t, address, told, "trial number 0")
 

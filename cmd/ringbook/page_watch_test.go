@@ -25,16 +25,16 @@ import (
 // within is far longer than anything here takes, and ends a test that hangs.
 const within = 20 * time.Second
 
-// watching runs `ringbook page history --watch` and gives the address. At the test's end it is interrupted, has to end in
+// watching runs `ringbook page RECIPE --watch` and gives the address. At the test's end it is interrupted, has to end in
 // order, and has to leave no goroutine behind.
-func watching(t *testing.T, args ...string) (address string) {
+func watching(t *testing.T, recipe string, args ...string) (address string) {
 	t.Helper()
 	before := runtime.NumGoroutine()
 	ctx, interrupt := context.WithCancel(t.Context())
 	out, in := io.Pipe()
 	ended := make(chan error, 1)
 	go func() {
-		err := run(ctx, append([]string{"page", "history", "--watch", "--quiet"}, args...), strings.NewReader(""), in, io.Discard)
+		err := run(ctx, append([]string{"page", recipe, "--watch", "--quiet"}, args...), strings.NewReader(""), in, io.Discard)
 		in.CloseWithError(errors.Join(io.EOF, err))
 		ended <- err
 	}()
@@ -164,7 +164,7 @@ func TestWatchAnotherProgram(t *testing.T) {
 	if err := os.Symlink(self, program); err != nil {
 		t.Skip(err)
 	}
-	address := watching(t, "--logbook", path)
+	address := watching(t, "history", "--logbook", path)
 	told := events(t, address)
 	page := until(t, address, told, "trial number 0")
 	for i := 1; i < 4; i++ {
@@ -184,7 +184,7 @@ func TestWatchAnotherProgram(t *testing.T) {
 // A logbook that is not there yet, holds nothing, is moved away or cannot be read: the page says so, and goes on.
 func TestWatchThroughTrouble(t *testing.T) {
 	path := filepath.Join(t.TempDir(), "ringbook.db")
-	address := watching(t, "--logbook", path)
+	address := watching(t, "history", "--logbook", path)
 	told := events(t, address)
 	until(t, address, told, "there is no logbook in that place")
 	logbookOf(t, path, 0)
