@@ -115,12 +115,11 @@
 // A link that is dropped, or a serial adapter that is unplugged, is opened again, 100 ms after it was lost and then with
 // waits that double, up to 3 s, for as long as reopen says. What comes then of before the fault is thrown away; the
 // instrument must give the *IDN? answer of before; its setup is sent again, and what it fitted last. The round of readings or
-// the captures begin again from their start, at most five times. An instrument that did not answer in time, and answers
-// again when its link was cleared, is asked once more in the same way. An output is never switched for that: state tells
+// the captures begin again from their start, at most five times. After an instrument that did not answer in time, or answered
+// with what is no reply, and gives its identity again when its link was cleared, they begin again once. An output is never switched for that: state tells
 // whether it still is as it was switched. So setup should not switch it either, as *RST may.
 //
-// An instrument that refuses or talks nonsense ends the round with a [*Fault]: its error queue in its own words, and the
-// cure.
+// An instrument that refuses ends the round with a [*Fault]: its error queue in its own words, and the cure.
 //
 // Of three repeats or more, one that lies off by more than the others allow is asked once more, and both are kept: the
 // mean is that of all, and its uncertainty shows it. The rule is Grubbs's test at 1 %: so often a round of honest,

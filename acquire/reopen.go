@@ -34,24 +34,23 @@ func (e *LostError) Error() string {
 func (e *LostError) Unwrap() []error { return []error{e.First, e.Last} }
 
 // again does a piece of work, and begins it again when the link of an instrument was lost under it and could be opened
-// anew, or when an instrument said nothing once and then answers again. Nothing of what came before is kept. What
-// happened is a notice.
+// anew; once, when an instrument said nothing or nonsense and then gives its identity again. Nothing of what came before
+// is kept. What happened is a notice.
 func (s *Station) again(ctx context.Context, work func() error) error {
-	silent := 0
+	doubtful := 0
 	for begun := 1; ; begun++ {
 		err := work()
 		var fault *Fault
-		var link *scpi.LinkError
-		var lost *LostError
-		switch {
-		case err == nil || ctx.Err() != nil || begun > mostAgain || errors.As(err, &lost):
+		if err == nil || ctx.Err() != nil || begun > mostAgain || !errors.As(err, &fault) {
 			return err
-		case !errors.As(err, &fault) || !errors.As(err, &link):
-			return err
-		case link.Timeout():
-			if silent++; silent > 1 {
+		}
+		switch dropped, odd := whatBroke(err); {
+		case odd:
+			if doubtful++; doubtful > 1 {
 				return err
 			}
+		case !dropped:
+			return err
 		}
 		in := s.named(fault.Instrument)
 		if in == nil || in.conn.OutOfStep() == nil {
@@ -60,8 +59,22 @@ func (s *Station) again(ctx context.Context, work func() error) error {
 		if e := in.ready(ctx); e != nil {
 			return in.fault(fault.Doing, e)
 		}
-		s.notice("%v; what was begun was begun again from its start", err)
+		s.notice("%s: instrument %s at %s: %v; its link is in order again, and this was begun again from its start", fault.Doing, in.Name, in.Address, bare(fault.Err))
 	}
+}
+
+// whatBroke says whether a failure is a dropped link, or an odd thing that may have happened but once: silence, or what is
+// no reply. Samples that came whole and are not what the rig file says will be so again.
+func whatBroke(err error) (dropped, odd bool) {
+	var link *scpi.LinkError
+	var nonsense *scpi.ReplyError
+	switch {
+	case errors.As(err, new(*LostError)), errors.As(err, new(*sampleError)), errors.Is(err, scpi.ErrOtherInstrument):
+		return false, false
+	case errors.As(err, &link):
+		return !link.Timeout(), link.Timeout()
+	}
+	return false, errors.As(err, &nonsense)
 }
 
 func (s *Station) named(name string) *instrument {

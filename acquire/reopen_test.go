@@ -7,8 +7,6 @@ import (
 	"fmt"
 	"io"
 	"net"
-	"os"
-	"path/filepath"
 	"runtime"
 	"strings"
 	"sync"
@@ -16,12 +14,9 @@ import (
 	"testing"
 	"time"
 
-	"github.com/creack/pty"
-
 	"ringbook/acquire"
 	"ringbook/acquire/acquiretest"
 	"ringbook/acquire/scpi"
-	"ringbook/acquire/wire"
 	"ringbook/snubber"
 )
 
@@ -144,6 +139,30 @@ func TestStaleReplies(t *testing.T) {
 				io.WriteString(rw, "9.9E+06\n0,\"No error\"\n")
 				time.AfterFunc(20*time.Millisecond, func() { io.WriteString(rw, "9.9E+06\n") })
 				until(rw, dev.Answer, 0, nil)
+			}
+		},
+		"garbage": func(dev *acquiretest.Instrument) func(int, net.Conn) {
+			var once sync.Once
+			return func(_ int, rw net.Conn) {
+				acquiretest.Talk(rw, func(m string) (reply string) {
+					reply = dev.Answer(m)
+					if m == "FREQ?" {
+						once.Do(func() { reply = "\xf8\x80\n" })
+					}
+					return reply
+				})
+			}
+		},
+		"an unsolicited line": func(dev *acquiretest.Instrument) func(int, net.Conn) {
+			var once sync.Once
+			return func(_ int, rw net.Conn) {
+				acquiretest.Talk(rw, func(m string) (reply string) {
+					reply = dev.Answer(m)
+					if m == "FREQ?" {
+						once.Do(func() { io.WriteString(rw, "9.9E+06\n"); time.Sleep(20 * time.Millisecond) })
+					}
+					return reply
+				})
 			}
 		},
 		"half of it": func(dev *acquiretest.Instrument) func(int, net.Conn) {
@@ -306,80 +325,5 @@ func TestReopenCapture(t *testing.T) {
 	}
 	if n := strings.Count(strings.Join(dev.Heard(), " "), "ARM"); n != 2+3 {
 		t.Errorf("%d captures were made; want 2 before the fault and 3 behind it", n)
-	}
-}
-
-// An adapter that is unplugged and plugged in again: its terminal is gone, and another comes in its place.
-func TestReopenSerial(t *testing.T) {
-	device := filepath.Join(t.TempDir(), "ttyUSB0")
-	dev := scope()
-	dev.Sequence, dev.Answers["FREQ?"] = nil, "6.2E+7"
-	plug := func() *os.File {
-		master, slave, err := pty.Open()
-		if err != nil {
-			t.Fatal(err)
-		}
-		slave.Close()
-		os.Remove(device)
-		if err := os.Symlink(slave.Name(), device); err != nil {
-			t.Fatal(err)
-		}
-		return master
-	}
-	first := plug()
-	var mu sync.Mutex
-	reads, unplugged := 0, false
-	var second *os.File
-	answer := func(m string) string {
-		mu.Lock()
-		defer mu.Unlock()
-		if m == "FREQ?" {
-			if reads++; reads == 3 && !unplugged {
-				unplugged = true
-				first.Close()
-				os.Remove(device)
-				time.AfterFunc(300*time.Millisecond, func() {
-					master := plug()
-					mu.Lock()
-					second = master
-					mu.Unlock()
-					time.Sleep(100 * time.Millisecond) // until the other end has set the line raw
-				})
-				return ""
-			}
-		}
-		return dev.Answer(m)
-	}
-	open := func(ctx context.Context, address string) (wire.Link, error) {
-		link, err := wire.Open(ctx, address)
-		if err != nil {
-			return nil, err
-		}
-		mu.Lock()
-		end := second
-		mu.Unlock()
-		if end == nil {
-			end = first
-		}
-		go acquiretest.Talk(end, answer)
-		return link, nil
-	}
-	rig := rigOf("serial://" + device)
-	s, err := acquire.OpenWith(context.Background(), rig, open)
-	if err != nil {
-		t.Fatal(err)
-	}
-	defer s.Close()
-	defer func() {
-		if second != nil {
-			second.Close()
-		}
-	}()
-	got, err := s.Take(context.Background(), nil)
-	if err != nil || len(got.Readings) != 2 || got.Readings[0].Value != 6.2e7 || len(got.Readings[0].Repeats) != 4 {
-		t.Fatalf("%+v, %v", got, err)
-	}
-	if len(got.Warnings) == 0 || !strings.Contains(got.Warnings[0], "begun again") {
-		t.Errorf("%q", got.Warnings)
 	}
 }

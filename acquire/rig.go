@@ -98,6 +98,7 @@ func (e *RigError) Unwrap() error { return e.Err }
 func (r Rig) Check() error {
 	names := map[string]bool{}
 	provider := map[snubber.Quantity]string{}
+	ports := map[string]string{}
 	fitter, sampler, switcher := "", "", ""
 	for _, in := range r.Instruments {
 		if names[in.Name] {
@@ -112,6 +113,12 @@ func (r Rig) Check() error {
 				return in.wrong("reading."+string(q.Quantity), "%s provides this reading already: take one of the two out", other)
 			}
 			provider[q.Quantity] = in.Name
+		}
+		if a, err := wire.Parse(in.Address); err == nil && a.Device != "" {
+			if other, ok := ports[a.Device]; ok {
+				return in.wrong("address", "%s is at this serial port already: give each its own, or make one instrument of the two", other)
+			}
+			ports[a.Device] = in.Name
 		}
 		if in.Fit != "" && fitter != "" {
 			return in.wrong("fit", "%s fits networks already: take one of the two out", fitter)

@@ -163,6 +163,8 @@ volt_per_code = 0.5
 		"setup":                {strings.Replace(good, "\n\n", "\nsetup = [\"*RST; *CLS\"]\n\n", 1), "line 3: instrument.scope.setup: message"},
 		"same reading twice": {good + "[instrument.meter]\naddress = \"tcp://192.0.2.11\"\n[instrument.meter.reading.ring_hz]\nquery = \"READ?\"\n",
 			"instrument.scope.reading.ring_hz: meter provides this reading already"},
+		"one port twice": {strings.ReplaceAll(good, "tcp://192.0.2.10", "serial:///dev/ttyUSB0") + "[instrument.meter]\naddress = \"ASRL/dev/ttyUSB0::INSTR\"\n",
+			"line 2: instrument.scope.address: meter is at this serial port already"},
 		"fit without c":     {good + "[instrument.jig]\naddress = \"tcp://192.0.2.12\"\nfit = \"ROUTe:CLOSe\"\n", "line 8: instrument.jig.fit: fit command"},
 		"fit unknown brace": {good + "[instrument.jig]\naddress = \"tcp://192.0.2.12\"\nfit = \"ROUTe {c},{l}\"\n", "only {network}, {c} and {r}"},
 		"fit empty":         {good + "[instrument.jig]\naddress = \"tcp://192.0.2.12\"\nfit = \"\"\n", "jig.fit: it is empty"},

@@ -127,6 +127,9 @@ func TestTakeFails(t *testing.T) {
 	} {
 		dev := scope()
 		dev.Sequence["FREQ?"] = []string{"6.2E7", c.reply}
+		if name == "words" {
+			dev.Sequence["FREQ?"] = []string{"6.2E7", c.reply, "6.2E7", c.reply} // once might be an accident
+		}
 		dev.Answers["FREQ?"] = "6.2E7"
 		address := acquiretest.Serve(t, dev.Answer)
 		s := openStation(t, rigOf(address))

@@ -31,9 +31,9 @@ type Progress struct {
 // none in fewer, it is the mean of the rest, with a warning. A repeat that lies further off than the others' spread
 // allows is asked once more; both are kept, with a warning.
 //
-// An instrument that refuses, is silent twice or talks nonsense ends the round with a *Fault. The next round clears its
-// link first. A lost link is opened again and the round begun again from its start, which is a warning; progress then
-// counts anew.
+// An instrument that refuses ends the round with a *Fault, and so does one that is silent or talks nonsense twice. The
+// next round clears its link first. After a lost link was opened again, and after the first silence or nonsense, the
+// round is begun again from its start, which is a warning; progress then counts anew.
 func (s *Station) Take(ctx context.Context, progress func(Progress)) (Result, error) {
 	var result Result
 	err := s.again(ctx, func() (err error) {

@@ -197,3 +197,38 @@ func TestSerialErrors(t *testing.T) {
 		}
 	}
 }
+
+// A pause in the middle of a reply is longer than one wait of the port and shorter than the deadline; and the bytes come
+// one by one.
+func TestSerialPauseInReply(t *testing.T) {
+	master, address := terminal(t)
+	link := open(t, address)
+	go func() {
+		buf := make([]byte, 64)
+		for {
+			n, err := master.Read(buf)
+			if err != nil {
+				return
+			}
+			reply := "0,\"No error\"\r\n"
+			if strings.HasPrefix(string(buf[:n]), "READ?") {
+				reply = "+1.5E+03\r\n"
+			}
+			for i := range len(reply) {
+				if i == 4 {
+					time.Sleep(150 * time.Millisecond)
+				}
+				master.WriteString(reply[i : i+1])
+			}
+		}
+	}()
+	conn, err := scpi.NewConn(link, scpi.Options{Timeout: 3 * time.Second})
+	if err != nil {
+		t.Fatal(err)
+	}
+	for range 3 {
+		if v, err := conn.QueryNumber(context.Background(), "READ?"); err != nil || v != 1500 {
+			t.Fatalf("%g, %v", v, err)
+		}
+	}
+}
