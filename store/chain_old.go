@@ -44,7 +44,7 @@ func chainOld(ctx context.Context, conn *sql.Conn) error {
 			return err
 		}
 	}
-	return w.flushChain(ctx)
+	return w.finish(ctx)
 }
 
 // oldID is made of the first trial's id; where there is none, it is new.

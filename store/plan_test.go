@@ -24,7 +24,7 @@ func TestTrialsAreNotSorted(t *testing.T) {
 	} {
 		picked, args := s.picked()
 		for _, query := range []string{selectTrials, selectReadings, selectRepeats} {
-			rows, err := lb.db.QueryContext(t.Context(), "EXPLAIN QUERY PLAN "+fmt.Sprintf(query, picked), args...)
+			rows, err := lb.db.QueryContext(t.Context(), "EXPLAIN QUERY PLAN "+fmt.Sprintf(query, picked, inTime), args...)
 			if err != nil {
 				t.Fatal(err)
 			}

@@ -16,11 +16,11 @@ const (
 	selectReadings = `
 SELECT r.trial, r.quantity, r.value, ifnull(r.u, 0), ifnull(i.idn, ''), ` + fromWaveform + `
 FROM (%s) picked CROSS JOIN reading r ON r.trial = picked.seq LEFT JOIN instrument i ON i.id = r.instrument
-ORDER BY picked.at, picked.seq, r.quantity`
+ORDER BY %s, r.quantity`
 	selectRepeats = `
 SELECT r.trial, r.quantity, r.value
 FROM (%s) picked CROSS JOIN reading_repeat r ON r.trial = picked.seq
-ORDER BY picked.at, picked.seq, r.quantity, r.n`
+ORDER BY %s, r.quantity, r.n`
 )
 
 // readings are the cursors over the readings and their repeats, each one row ahead.
@@ -28,20 +28,20 @@ type readings struct {
 	values, repeats *cursor[snubber.Reading]
 }
 
-func openReadings(ctx context.Context, tx *sql.Tx, picked string, args []any) (*readings, error) {
+func openReadings(ctx context.Context, tx *sql.Tx, picked, order string, args []any) (*readings, error) {
 	query := selectReadings
 	if schema, err := schemaOf(ctx, tx); err != nil {
 		return nil, err
 	} else if schema < 3 {
 		query = strings.Replace(query, fromWaveform, "0", 1)
 	}
-	values, err := openCursor(ctx, tx, fmt.Sprintf(query, picked), args, func(rows *sql.Rows, seq *int64, r *snubber.Reading) error {
+	values, err := openCursor(ctx, tx, fmt.Sprintf(query, picked, order), args, func(rows *sql.Rows, seq *int64, r *snubber.Reading) error {
 		return rows.Scan(seq, &r.Quantity, &r.Value, &r.U, &r.Instrument, &r.FromWaveform)
 	})
 	if err != nil {
 		return nil, err
 	}
-	repeats, err := openCursor(ctx, tx, fmt.Sprintf(selectRepeats, picked), args, func(rows *sql.Rows, seq *int64, r *snubber.Reading) error {
+	repeats, err := openCursor(ctx, tx, fmt.Sprintf(selectRepeats, picked, order), args, func(rows *sql.Rows, seq *int64, r *snubber.Reading) error {
 		return rows.Scan(seq, &r.Quantity, &r.Value)
 	})
 	if err != nil {

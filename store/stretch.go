@@ -24,6 +24,7 @@ const (
 func (w *writer) index(ctx context.Context, seq int64, bytes int) error {
 	w.loose += bytes
 	w.logged++
+	w.trial = seq
 	enough := int64(stretchTrials)
 	if w.logged > stretchTrials {
 		enough = bulkTrials
@@ -54,4 +55,12 @@ func (w *writer) closeStretch(ctx context.Context, last int64) error {
 	}
 	w.indexed, w.loose = last, 0
 	return nil
+}
+
+// endStretch closes a stretch that a long transaction leaves open.
+func (w *writer) endStretch(ctx context.Context) error {
+	if w.logged < stretchTrials || w.trial-w.indexed < stretchTrials {
+		return nil
+	}
+	return w.closeStretch(ctx, w.trial)
 }

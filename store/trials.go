@@ -28,37 +28,46 @@ func (lb *Logbook) stream(ctx context.Context, picked string, args []any) iter.S
 			return
 		}
 		defer tx.Rollback() // it only read
-		trials, err := tx.QueryContext(ctx, fmt.Sprintf(selectTrials, picked), args...)
+		lb.streamFrom(ctx, tx, picked, inTime, args, yield)
+	}
+}
+
+// inTime is the order of time, of the table picked that streamFrom is given.
+const inTime = "picked.at, picked.seq"
+
+// streamFrom walks the trials of picked, a query for (seq, at), in an order of these that no two trials share a place in.
+func (lb *Logbook) streamFrom(ctx context.Context, tx *sql.Tx, picked, order string, args []any, yield func(snubber.Trial, error) bool) {
+	fail := func(err error) { yield(snubber.Trial{}, fmt.Errorf("read trials: %w", explain(lb.path, err))) }
+	trials, err := tx.QueryContext(ctx, fmt.Sprintf(selectTrials, picked, order), args...)
+	if err != nil {
+		fail(err)
+		return
+	}
+	defer trials.Close()
+	readings, err := openReadings(ctx, tx, picked, order, args)
+	if err != nil {
+		fail(err)
+		return
+	}
+	defer readings.close()
+	for trials.Next() {
+		t, seq, err := scanTrial(trials)
+		if err == nil {
+			t.Readings, err = readings.of(seq)
+		}
+		if err == nil {
+			err = ctx.Err() // its end may have cut the readings short
+		}
 		if err != nil {
 			fail(err)
 			return
 		}
-		defer trials.Close()
-		readings, err := openReadings(ctx, tx, picked, args)
-		if err != nil {
-			fail(err)
+		if !yield(t, nil) {
 			return
 		}
-		defer readings.close()
-		for trials.Next() {
-			t, seq, err := scanTrial(trials)
-			if err == nil {
-				t.Readings, err = readings.of(seq)
-			}
-			if err == nil {
-				err = ctx.Err() // its end may have cut the readings short
-			}
-			if err != nil {
-				fail(err)
-				return
-			}
-			if !yield(t, nil) {
-				return
-			}
-		}
-		if err := trials.Err(); err != nil {
-			fail(err)
-		}
+	}
+	if err := trials.Err(); err != nil {
+		fail(err)
 	}
 }
 
@@ -71,7 +80,7 @@ SELECT t.seq, t.id, b.name, v.name, t.at, ifnull(s.name, ''), t.network,
 FROM (%s) picked CROSS JOIN trial t ON t.seq = picked.seq
 JOIN revision v ON v.id = t.revision JOIN board b ON b.id = v.board
 LEFT JOIN session s ON s.id = t.session LEFT JOIN operating_point p ON p.id = t.operating_point
-ORDER BY picked.at, picked.seq`
+ORDER BY %s`
 
 func scanTrial(rows *sql.Rows) (t snubber.Trial, seq int64, err error) {
 	var at string

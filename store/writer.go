@@ -32,6 +32,7 @@ type writer struct {
 	indexed int64 // the last trial of the last stretch, as far as is known
 	loose   int   // bytes of text of the trials logged since
 	logged  int   // trials logged in this transaction
+	trial   int64 // the last of them
 }
 
 // cacheLimit bounds each map of a writer: an import may name a million operating points.
@@ -95,7 +96,7 @@ func (lb *Logbook) write(ctx context.Context, do func(*writer) error) (err error
 	if err := do(w); err != nil {
 		return err
 	}
-	if err := w.flushChain(unhurried); err != nil {
+	if err := w.finish(unhurried); err != nil {
 		return err
 	}
 	if err := ctx.Err(); err != nil {
@@ -107,6 +108,14 @@ func (lb *Logbook) write(ctx context.Context, do func(*writer) error) (err error
 	}
 	_, err = commit.ExecContext(unhurried)
 	return err
+}
+
+// finish writes what was put off to the end of a transaction.
+func (w *writer) finish(ctx context.Context) error {
+	if err := w.flushChain(ctx); err != nil {
+		return err
+	}
+	return w.endStretch(ctx)
 }
 
 // begin takes the write lock at once: one asked for halfway through a transaction could not be waited for. The wait is here
