@@ -187,7 +187,7 @@ func (c coarse) swing() float64 {
 
 // leftTone is the highest line in the spectrum of what the curve leaves, seen through windows that fall as a ring does.
 func (c coarse) leftTone(at *curve, noise float64) (mode, bool) {
-	n := min(len(c.y), 4096)
+	n := min(len(c.y), 2048)
 	size := 64
 	for size < n {
 		size *= 2

@@ -155,7 +155,7 @@ const falseAlarm = 1e-3
 // and start, but once in a thousand records.
 func (p prefix) standsOut(ctx context.Context, r *ring, step float64) bool {
 	main := r.curve.modes[0]
-	m := max(1, int(main.period()/perCycle))
+	m := max(1, int(2*main.period()/perCycle))
 	begin := r.start + int(main.period()/2)
 	end := r.end
 	if main.d > 0 { // what comes after six e-foldings tells nothing

@@ -12,7 +12,6 @@ type residuals struct {
 	n       int
 	squares float64   // V^2, of all
 	parts   []float64 // V^2: mean square in each of up to 32 equal parts, in time order
-	lag     float64   // correlation of neighbours
 	runs    []float64 // V: means over blocks of a quarter of a cycle of the first mode, times the root of their length
 }
 
@@ -26,30 +25,28 @@ func (c *curve) residual(in series) residuals {
 	}
 	parts := min(32, max(1, len(y)/8))
 	size := (len(y) + parts - 1) / parts
-	var cross, last, part, run float64
-	c.walk(in, func(t int, e []float64) {
-		for i, v := range e {
-			if t+i > 0 {
-				cross += v * last
-			}
-			last = v
+	var part, run float64
+	inPart, inRun := 0, 0
+	c.walk(in, func(_ int, e []float64) {
+		for _, v := range e {
 			part += v * v
 			run += v
-			if k := t + i + 1; k%size == 0 || k == len(y) {
-				r.parts = append(r.parts, part/float64((k-1)%size+1))
+			if inPart++; inPart == size {
+				r.parts = append(r.parts, part/float64(size))
 				r.squares += part
-				part = 0
+				part, inPart = 0, 0
 			}
-			if k := t + i + 1; k%quarter == 0 {
+			if inRun++; inRun == quarter {
 				if len(r.runs) < 4096 {
 					r.runs = append(r.runs, run/math.Sqrt(float64(quarter)))
 				}
-				run = 0
+				run, inRun = 0, 0
 			}
 		}
 	})
-	if r.squares > 0 {
-		r.lag = cross / r.squares
+	if inPart > 0 {
+		r.parts = append(r.parts, part/float64(inPart))
+		r.squares += part
 	}
 	return r
 }

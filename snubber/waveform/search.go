@@ -22,7 +22,7 @@ const (
 // Strongest first.
 func (p prefix) tones(from, to int) []tone {
 	var found []tone
-	for m := 1; m <= max(1, (to-from)/16); m *= 2 {
+	for m := 1; m <= max(1, (to-from)/16); m *= 4 {
 		begin := from + 2*m
 		if m == 1 {
 			begin = from + 1
