@@ -167,7 +167,7 @@ func checkPartName(name string) error {
 	case slices.Contains(words(), strings.ToLower(name)):
 		return fmt.Errorf("name %q: it means something else where parts are asked for: %s do", name, strings.Join(words(), ", "))
 	}
-	if v, err := quantity.Parse(name, quantity.Capacitance); err == nil && v >= 0 {
+	if _, err := read(new(quantity.Farad), name); err == nil {
 		return fmt.Errorf("name %q: it reads as a value; add what tells this part from others, as in %q", name, name+"-a")
 	}
 	return nil

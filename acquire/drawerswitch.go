@@ -11,16 +11,16 @@ func (s *Station) SwitchPart(ctx context.Context, p Part, in bool) error {
 	if in {
 		doing, messages = "switch "+p.Name+" in", p.Switch
 	}
-	for _, x := range s.instruments {
-		if x.Name != p.Instrument {
-			continue
-		}
-		if err := x.tell(ctx, messages); err != nil {
-			return x.fault(doing, err)
+	card := s.named(p.Instrument)
+	if card == nil {
+		return fmt.Errorf("%s: the rig has no instrument %q", doing, p.Instrument)
+	}
+	return s.again(ctx, func() error {
+		if err := card.tell(ctx, messages); err != nil {
+			return card.fault(doing, err)
 		}
 		return nil
-	}
-	return fmt.Errorf("%s: the rig has no instrument %q", doing, p.Instrument)
+	})
 }
 
 // Serves gives an error for the first part of the drawer that no instrument of the rig can switch as the drawer says.

@@ -137,18 +137,18 @@ func (s *Series) Run(ctx context.Context) (result SeriesResult, err error) {
 			return s.outcome(), err
 		}
 		p, ended := s.next()
+		err := errDone
 		if p == nil {
 			s.result.Ended = ended
-			return s.outcome(), nil
-		}
-		err := s.swap(ctx, *p)
-		if errors.Is(err, errDone) || errors.Is(err, io.EOF) {
+		} else if err = s.swap(ctx, *p); errors.Is(err, errDone) || errors.Is(err, io.EOF) {
 			s.result.Ended = "as asked"
-			return s.outcome(), nil
+		} else if err == nil {
+			continue
 		}
-		if err != nil {
-			return s.outcome(), err
+		if s.result.Ended != "" {
+			err = s.clear(ctx)
 		}
+		return s.outcome(), err
 	}
 }
 
@@ -212,6 +212,17 @@ func (s *Series) prepare(ctx context.Context) error {
 		}
 	}
 	return nil
+}
+
+// clear leaves the node as it was found: without what a relay put across it.
+func (s *Series) clear(ctx context.Context) error {
+	if s.in == nil {
+		return nil
+	}
+	if err := s.safe(ctx); err != nil {
+		return err
+	}
+	return s.Bench.SwitchPart(ctx, *s.in, false)
 }
 
 // refit fits all trials that stand. Only ctx ends a series here: what the trials cannot tell yet, more will.

@@ -67,16 +67,31 @@ func (s *Series) next() (*proposal, string) {
 }
 
 // contradictable says whether two capacitors were fitted: what one alone says, right or wrong, nothing contradicts.
-func (s *Series) contradictable() bool {
-	first := 0.0
+func (s *Series) contradictable() bool { return len(s.capacitors()) > 1 }
+
+// capacitors are the trials that stand with a capacitor, the last of each.
+func (s *Series) capacitors() map[string]snubber.Trial {
+	all := map[string]snubber.Trial{}
 	for _, t := range s.trials {
-		if c := t.Network.C; c > 0 && first == 0 {
-			first = c
-		} else if c > 0 && !alike(c, first) {
-			return true
+		if t.Network.C > 0 {
+			all[Part{Name: t.Part, Value: t.Network.C}.key()] = t
 		}
 	}
-	return false
+	return all
+}
+
+// onlyOther names the one capacitor besides that of t, where there is but one: of two that contradict each other, either may
+// be wrong.
+func (s *Series) onlyOther(t snubber.Trial) string {
+	all := s.capacitors()
+	delete(all, Part{Name: t.Part, Value: t.Network.C}.key())
+	if len(all) != 1 || t.Network.C == 0 {
+		return ""
+	}
+	for _, other := range all {
+		return describePart(other.Network, other.Part)
+	}
+	return ""
 }
 
 // left is the capacitors that were neither read in the session nor skipped.

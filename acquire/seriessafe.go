@@ -104,10 +104,8 @@ func (s *Series) leave(ctx context.Context, err error) error {
 		}
 		return off
 	}
-	if s.on {
-		s.tell(Output{On: false})
-	}
 	s.on = false
+	s.tell(Output{On: false})
 	return err
 }
 

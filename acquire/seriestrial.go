@@ -112,7 +112,11 @@ func (s *Series) read(ctx context.Context, p proposal, instead string) error {
 		return err
 	}
 	s.logged(t)
-	switch why := doubt(before, s.fit, t); {
+	why := doubt(before, s.fit, t)
+	if other := s.onlyOther(t); why != "" && other != "" {
+		why += ", unless " + other + " is what is not as it says"
+	}
+	switch {
 	case why == "":
 	case s.Unattended:
 		s.tell(Remark{"It disagrees with the others: " + why + "."})

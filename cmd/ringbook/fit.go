@@ -11,6 +11,7 @@ import (
 func fitCommand(a *app) *cobra.Command {
 	var scope scopeFlags
 	var onHand []string
+	var drawer string
 	cmd := &cobra.Command{
 		Use:   "fit",
 		Short: "The loop's parasitics across all trials in scope",
@@ -26,6 +27,14 @@ is set aside, with the reason. At the end it says which capacitor would tell mos
 			caps, err := partsOnHand("on-hand", onHand, func() flagValue { return new(quantity.Farad) })
 			if err != nil {
 				return err
+			}
+			if drawer != "" {
+				if caps != nil {
+					return usagef("--on-hand and --drawer both say what is on hand: leave one out")
+				}
+				if caps, err = capacitorsOf(drawer); err != nil {
+					return err
+				}
 			}
 			src, err := a.source(ctx, &scope)
 			if err != nil {
@@ -53,5 +62,6 @@ is set aside, with the reason. At the end it says which capacitor would tell mos
 	}
 	scope.add(cmd)
 	cmd.Flags().StringSliceVar(&onHand, "on-hand", nil, "the `CAPACITORS` on hand, such as 100p,330p: which would tell most next")
+	cmd.Flags().StringVar(&drawer, "drawer", "", "`FILE` with the parts on hand: which would tell most next")
 	return cmd
 }

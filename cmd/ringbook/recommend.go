@@ -15,6 +15,7 @@ import (
 func recommendCommand(a *app) *cobra.Command {
 	var scope scopeFlags
 	var limits limitsFlags
+	var drawer string
 	var noRecord bool
 	cmd := &cobra.Command{
 		Use:   "recommend",
@@ -27,13 +28,19 @@ A network that keeps them is logged as a decision with the trials it rests on, f
 measured against; asked the same of the same trials, the decision stands. With --no-record the logbook stays as it is.`,
 		Example: `  ringbook recommend --board winch-drive --revision B --max-peak 80V
   ringbook recommend --max-peak 80V --c-tol 5% --r-tol 1% --c-series E6 --json
-  ringbook recommend --network any --min-damping 30% --c-on-hand 270p,470p,1n0`,
+  ringbook recommend --network any --min-damping 30% --c-on-hand 270p,470p,1n0
+  ringbook recommend --drawer drawer.toml`,
 		Args: words(0, 0),
 		RunE: func(cmd *cobra.Command, args []string) (err error) {
 			ctx := cmd.Context()
 			keep, err := limits.read()
 			if err != nil {
 				return err
+			}
+			if drawer != "" {
+				if err := fromDrawer(drawer, &keep); err != nil {
+					return err
+				}
 			}
 			src, err := a.source(ctx, &scope)
 			if err != nil {
@@ -69,6 +76,7 @@ measured against; asked the same of the same trials, the decision stands. With -
 	}
 	scope.add(cmd)
 	limits.add(cmd)
+	cmd.Flags().StringVar(&drawer, "drawer", "", "`FILE` with the parts on hand: choose among these alone")
 	cmd.Flags().BoolVar(&noRecord, "no-record", false, "log no decision")
 	return cmd
 }

@@ -15,14 +15,19 @@ import (
 	"ringbook/snubber/waveform"
 )
 
-// take fits the trial's network where the station can, reads every instrument, and gives the trial with its
-// readings. With captures of the edge asked for, these come along, and the trial's ring, decay and peak are theirs.
+// take fits the trial's network where the station can, and reads it.
 func (a *app) take(ctx context.Context, station *acquire.Station, t snubber.Trial, captures int) (snubber.Trial, []waveform.Record, []string, error) {
 	if station.CanFit() {
 		if err := station.Fit(ctx, t.Network); err != nil {
 			return t, nil, nil, once(err)
 		}
 	}
+	return a.readTrial(ctx, station, t, captures)
+}
+
+// readTrial reads every instrument, and gives the trial with its readings. With captures of the edge asked for, these come
+// along, and the trial's ring, decay and peak are theirs.
+func (a *app) readTrial(ctx context.Context, station *acquire.Station, t snubber.Trial, captures int) (snubber.Trial, []waveform.Record, []string, error) {
 	t.At = time.Now()
 	var records []waveform.Record
 	var warnings []string
