@@ -129,7 +129,6 @@ func (p prefix) flat(r *ring, take int) int {
 	}
 	sum, least, n := 0.0, 0.0, 0
 	span := int(r.curve.modes[0].period() / 8)
-	smooth := math.Abs(r.curve.at(float64(-take))-level) < 4*r.noise // the curve leaves the flat without a jump
 	for k := range take + span {
 		if first+k >= r.end {
 			break
@@ -141,8 +140,13 @@ func (p prefix) flat(r *ring, take int) int {
 			least, n = sum, k+1
 		}
 	}
-	for smooth && n < take+span && math.Abs(r.curve.at(float64(n-take))-level) < 1.5*r.noise {
-		n++ // as like the one as the other
+	// Where the curve leaves the flat without a jump, samples near there are as like the one as the other: it is left where they touch.
+	off := func(k int) float64 { return math.Abs(r.curve.at(float64(k-take)) - level) }
+	for n < take+span && off(n) < 1.5*r.noise && off(n+1) < off(n) {
+		n++
+	}
+	for n > 0 && off(n-1) < 1.5*r.noise && off(n-1) < off(n) {
+		n--
 	}
 	return n
 }
