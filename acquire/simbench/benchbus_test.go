@@ -70,7 +70,9 @@ func TestBus(t *testing.T) {
 	bus(48 / math.E / math.E)
 	from := b.busV()
 	ask("supply", "OUTP ON;:OUTP ON")
-	pass(100 * time.Millisecond)
+	pass(50 * time.Millisecond)
+	ask("supply", "OUTP ON")
+	pass(50 * time.Millisecond)
 	bus(from + 24)
 	rising := numberIn(t, ask("scope", "MEAS:VOLT:MAX?"))
 	pass(100 * time.Millisecond)
@@ -215,6 +217,20 @@ func TestRelays(t *testing.T) {
 	want := Network{Kind: C, C: b.model.cfg.Parts.actual(Network{Kind: C, C: b.Relays()[9]}).C + b.model.cfg.Parts.actual(Network{Kind: C, C: b.Relays()[19]}).C}
 	if got := b.acrossF(); got != want.C {
 		t.Errorf("two in parallel are %g F, want %g F", got, want.C)
+	}
+
+	// A slow ring is followed as long as that of the same capacitor soldered in.
+	cfg.Relays = []float64{1e-6}
+	slow, _, askSlow := stopped(t, cfg)
+	askSlow("relays", "ROUT:CLOS (@1)")
+	switched, err := slow.now()
+	if err != nil {
+		t.Fatal(err)
+	}
+	askSlow("relays", "*RST")
+	askSlow("fixture", "FIXT:FIT C,1E-6")
+	if soldered, err := slow.now(); err != nil || soldered.end != switched.end || math.Abs(soldered.charge-switched.charge) > 1e-3*soldered.charge {
+		t.Errorf("%v to %g s, %g C; switched to %g s, %g C", err, soldered.end, soldered.charge, switched.end, switched.charge)
 	}
 
 	relays := dial(t, b, "relays")

@@ -142,3 +142,66 @@ func TestSwapThroughTheRig(t *testing.T) {
 		t.Errorf("mistakes: %v, want one", list)
 	}
 }
+
+// TestDrawerOfRelays: the drawer file names the card's capacitors, which the program's own client switches in, and the
+// board rings lower each time. Nothing is changed on a live bus.
+func TestDrawerOfRelays(t *testing.T) {
+	cfg := simbench.Default()
+	cfg.Bus.Speed = 100
+	bench, err := simbench.Start(t.Context(), cfg)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer bench.Close()
+	rig, err := acquire.ParseRig("rig.toml", []byte(bench.RigTOML()))
+	if err != nil {
+		t.Fatal(err)
+	}
+	drawer, err := acquire.ParseDrawer("drawer.toml", []byte(bench.DrawerTOML()))
+	if err != nil {
+		t.Fatal(err)
+	}
+	if err := rig.Serves(drawer); err != nil || len(drawer.Capacitors) != 50 {
+		t.Fatalf("%d capacitors, %v", len(drawer.Capacitors), err)
+	}
+	station, err := acquire.Open(t.Context(), rig)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer station.Close()
+	do := func(err error) {
+		t.Helper()
+		if err != nil {
+			t.Fatal(err)
+		}
+	}
+	safe := func() {
+		t.Helper()
+		do(station.Switch(t.Context(), false))
+		do(station.Discharged(t.Context(), cfg.Bus.SafeV, time.Minute, nil))
+	}
+	last, before := math.Inf(1), acquire.Part{}
+	for i, p := range drawer.Capacitors {
+		if p.Value != bench.Relays()[i] || p.Tol != cfg.Parts.CTol {
+			t.Errorf("part %d is %+v, want %g F", i+1, p, bench.Relays()[i])
+		}
+		if i%7 > 0 {
+			continue
+		}
+		safe()
+		if before.Switched() {
+			do(station.SwitchPart(t.Context(), before, false))
+		}
+		before = p
+		do(station.SwitchPart(t.Context(), p, true))
+		do(station.Switch(t.Context(), true))
+		hz, err := station.Read(t.Context(), snubber.RingHz)
+		if err != nil || hz > 0.98*last {
+			t.Errorf("%s of %g F: %g Hz after %g Hz, %v", p.Name, p.Value, hz, last, err)
+		}
+		last = hz
+	}
+	if list := bench.Mistakes(); len(list) > 0 {
+		t.Errorf("mistakes: %v", list)
+	}
+}
