@@ -102,6 +102,16 @@ func TestWatchManyBrowsers(t *testing.T) {
 	for _, conn := range silent {
 		conn.Close()
 	}
+	for deadline := time.Now().Add(within); ; time.Sleep(10 * time.Millisecond) { // until there is room again
+		r, err := http.Get("http://" + address + "/")
+		if err == nil {
+			r.Body.Close()
+			break
+		}
+		if time.Now().After(deadline) {
+			t.Fatal(err)
+		}
+	}
 	until(t, address, told, "trial number 1")
 }
 
