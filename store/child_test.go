@@ -36,8 +36,11 @@ func TestMain(m *testing.M) {
 // child prints each id once Add or AddWithWaveforms has acknowledged it, or "imported" and a count once AddAll has.
 func child(path, work string) error {
 	ctx := context.Background()
-	if work == "read" {
-		return childReads(ctx, path)
+	switch work {
+	case "read", "stream":
+		return childReads(ctx, path, Query{})
+	case "search":
+		return childReads(ctx, path, Query{Words: "drawer"})
 	}
 	lb, err := Open(ctx, path)
 	if err != nil {
@@ -56,6 +59,13 @@ func child(path, work string) error {
 			}
 			fmt.Println("imported", n)
 		}
+	}
+	if other, ok := strings.CutPrefix(work, "merge "); ok {
+		m, err := lb.Merge(ctx, other, nil)
+		if err == nil {
+			fmt.Println("merged", m.Added())
+		}
+		return err
 	}
 	number, with := strings.CutSuffix(work, " with waveforms")
 	n, err := strconv.Atoi(number)
@@ -78,24 +88,24 @@ func child(path, work string) error {
 
 const importSize = 20
 
-func childReads(ctx context.Context, path string) error {
+func childReads(ctx context.Context, path string, q Query) error {
 	lb, err := OpenReadOnly(ctx, path)
 	if err != nil {
 		return err
 	}
 	defer lb.Close()
 	n := 0
-	for _, err := range lb.Trials(ctx, Scope{}) {
+	for _, err := range lb.Search(ctx, q) {
 		if err != nil {
 			return err
 		}
 		n++
 	}
-	fmt.Println(n, "trials")
+	fmt.Println(n, "trials with", peakMemory(), "MB at most")
 	return nil
 }
 
-func startChild(t *testing.T, path, work string) (*exec.Cmd, *bufio.Scanner) {
+func startChild(t testing.TB, path, work string) (*exec.Cmd, *bufio.Scanner) {
 	t.Helper()
 	cmd := exec.CommandContext(t.Context(), os.Args[0])
 	cmd.Env = append(os.Environ(), childFile+"="+path, childWork+"="+work)

@@ -64,10 +64,7 @@ func TestKilledWhileLogging(t *testing.T) {
 				t.Errorf("trial %s was acknowledged and is there %d times", id, found[id])
 			}
 		}
-		var sound string
-		if err := lb.db.QueryRowContext(t.Context(), "PRAGMA integrity_check").Scan(&sound); err != nil || sound != "ok" {
-			t.Fatalf("integrity check: %s, %v", sound, err)
-		}
+		mustAudit(t, lb)
 		lb.Close()
 	}
 	if len(acknowledged) == 0 {
@@ -157,6 +154,7 @@ func TestKilledWhileImporting(t *testing.T) {
 			t.Fatalf("%d trials: %d were acknowledged, in imports of %d", n, imported, importSize)
 		}
 		imported = n
+		mustAudit(t, lb)
 		lb.Close()
 	}
 	if imported == 0 {
@@ -178,4 +176,77 @@ func TestKilledWhileMaking(t *testing.T) {
 		mustAdd(t, lb, example())
 		lb.Close()
 	}
+}
+
+// TestKilledWhileMerging finds all of the other logbook merged or nothing, and both sound.
+func TestKilledWhileMerging(t *testing.T) {
+	other := bench(t, 500)
+	want := contents(t, other)
+	merged, n := 0, rounds(t, 6)
+	for range n {
+		path := filepath.Join(t.TempDir(), "ringbook.db")
+		cmd, lines := startChild(t, path, "merge "+other.Path())
+		lines.Scan() // ready
+		time.AfterFunc(time.Duration(rand.IntN(250_000))*time.Microsecond, func() { cmd.Process.Kill() })
+		lines.Scan()
+		cmd.Wait()
+		lb, err := Open(t.Context(), path)
+		if err != nil {
+			t.Fatal(err)
+		}
+		switch r := mustAudit(t, lb); {
+		case r.Entries == 0 && lines.Text() == "":
+		case r.Entries != len(want)-1: // without the boards
+			t.Errorf("%d entries, want none or %d", r.Entries, len(want)-1)
+		default:
+			merged++
+		}
+		mustMerge(t, lb, other)
+		if got := contents(t, lb); !slices.Equal(got, want) {
+			t.Error("merged again, it holds something else")
+		}
+		lb.Close()
+	}
+	mustAudit(t, other)
+	t.Logf("%d rounds, %d of them merged before the kill", n, merged)
+}
+
+// TestKilledWhileMigrating finds a file of an older schema or one moved forward, with all it had.
+func TestKilledWhileMigrating(t *testing.T) {
+	moved, n := 0, rounds(t, 15)
+	for i := range n {
+		path := version(t, 1+i%3)
+		cmd, _ := startChild(t, path, "look")
+		time.AfterFunc(time.Duration(rand.IntN(60_000))*time.Microsecond, func() { cmd.Process.Kill() })
+		cmd.Wait()
+		// It is looked at with what the killed program left beside it.
+		if schema := schemaBehind(t, path); schema == 4 {
+			moved++
+		} else if schema < 1+i%3 || schema > 4 {
+			t.Errorf("schema %d", schema)
+		}
+		lb, err := Open(t.Context(), path)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if r := mustAudit(t, lb); r.Trials != []int{5, 3, 5}[i%3] || r.Schema != 4 {
+			t.Errorf("%+v", r)
+		}
+		lb.Close()
+	}
+	t.Logf("%d rounds, %d of them moved before the kill", n, moved)
+}
+
+func schemaBehind(t testing.TB, path string) int {
+	t.Helper()
+	lb, err := OpenReadOnly(t.Context(), path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer lb.Close()
+	schema, err := schemaOf(t.Context(), lb.db)
+	if err != nil {
+		t.Fatal(err)
+	}
+	return schema
 }

@@ -3,6 +3,7 @@ package store
 import (
 	"bytes"
 	"fmt"
+	"io"
 	"os"
 	"path/filepath"
 	"strings"
@@ -17,6 +18,8 @@ import (
 //
 //	1  a board with two revisions, five trials of one, the last of them struck
 //	2  three trials with five readings each, a decision that rests on them, and the last struck since
+//	3  two boards, one with a rating, a note and a revision's note; five trials, the second with two waveforms and readings
+//	   from them, struck since; a decision that rests on four
 func version(t *testing.T, schema int) string {
 	t.Helper()
 	data, err := os.ReadFile(fmt.Sprintf("testdata/version%d.sqlite", schema))
@@ -187,4 +190,95 @@ func checkVersion2(t *testing.T, lb *Logbook) []snubber.Trial {
 		t.Errorf("decisions %+v; digest of the trials %s, want %s", d, TrialsDigest(all), digest)
 	}
 	return all
+}
+
+func TestVersion3MovesForward(t *testing.T) {
+	path := version(t, 3)
+	lb, err := Open(t.Context(), path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer lb.Close()
+	checkVersion3(t, lb)
+	r := mustAudit(t, lb)
+	// The logbook's id and its whole chain follow from what it held.
+	const id = "bae7da1d-77cc-50fb-baf3-616b34f70b7c"
+	// By another program (Python's hashlib), from the tables by the rules that place.seal and entry.text state.
+	const head = "a587d506cf023e33ce90135c9dbde8d9e7ecc07ccffe232bd2c49a66b78ad82b"
+	if r.Logbook != id || r.Head != head || r.Entries != 12 || r.Trials != 5 || r.Strikes != 1 || r.Decisions != 1 || r.Corrections != 5 {
+		t.Errorf("%+v", r)
+	}
+	if n, err := lb.Count(t.Context(), Query{Words: "kestrel drawer larkspur", Scope: Scope{IncludeStruck: true}}); err != nil || n != 4 {
+		t.Errorf("%d found, %v", n, err)
+	}
+	if err := lb.AddBoard(t.Context(), Board{Name: "Kestrel", DeviceV: 80}); err == nil || !strings.Contains(err.Error(), "100 V") {
+		t.Errorf("another rating: %v", err)
+	}
+	if err := lb.CorrectBoard(t.Context(), Board{Name: "Kestrel", DeviceV: 80}); err != nil {
+		t.Error(err)
+	}
+	if boards, err := lb.Boards(t.Context()); err != nil || boards[1].DeviceV != 80 || boards[1].Note != "mill spindle drive" {
+		t.Errorf("%+v, %v", boards, err)
+	}
+	mustAdd(t, lb, example())
+	if r := mustAudit(t, lb); r.Entries != 14 {
+		t.Errorf("%+v", r)
+	}
+}
+
+// Read alone it stays a file of schema 3, which has no chain and no index of words.
+func TestVersion3IsRead(t *testing.T) {
+	path := version(t, 3)
+	before, err := os.ReadFile(path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	lb, err := OpenReadOnly(t.Context(), path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	checkVersion3(t, lb)
+	if r, err := lb.Audit(t.Context(), nil); err != nil || !r.Sound() || r.Schema != 3 || !strings.Contains(r.Warning, "chains no entries") {
+		t.Errorf("%+v, %v", r, err)
+	}
+	if n, err := lb.Count(t.Context(), Query{C: Range{Min: 1e-10}, Scope: Scope{IncludeStruck: true}}); err != nil || n != 4 {
+		t.Errorf("%d found, %v", n, err)
+	}
+	if _, err := lb.Count(t.Context(), Query{Words: "drawer"}); err == nil || !strings.Contains(err.Error(), "open it for writing once") {
+		t.Errorf("words: %v", err)
+	}
+	if _, err := lb.ExportJSON(t.Context(), io.Discard, nil); err == nil || !strings.Contains(err.Error(), "open it for writing once") {
+		t.Errorf("export: %v", err)
+	}
+	backup := filepath.Join(t.TempDir(), "backup.db")
+	if r, err := lb.Backup(t.Context(), backup); err != nil || !r.Sound() || r.Schema != 3 {
+		t.Errorf("backup: %+v, %v", r, err)
+	}
+	if err := lb.Close(); err != nil {
+		t.Fatal(err)
+	}
+	after, err := os.ReadFile(path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if !bytes.Equal(before, after) {
+		t.Error("the file has changed")
+	}
+}
+
+func checkVersion3(t *testing.T, lb *Logbook) {
+	t.Helper()
+	all := collect(t, lb, Scope{IncludeStruck: true})
+	if len(all) != 5 || all[0].Board != "Heron" || all[1].Struck != "the clip slipped" || !all[1].Readings[2].FromWaveform || all[4].Readings[2].Value != 73.25 {
+		t.Fatalf("trials %+v", all)
+	}
+	const digest = "a955edc540deddf73a0122fd44689cac0fbc6ab59552c9e650d134fb49fc0560"
+	if d := decisions(t, lb, Scope{}); len(d) != 1 || d[0].Digest != digest || TrialsDigest(all[1:]) != digest {
+		t.Errorf("decisions %+v; digest of the trials %s, want %s", d, TrialsDigest(all[1:]), digest)
+	}
+	_, want := withWaveforms()
+	got := waveforms(t, lb, all[1].ID)
+	if len(got) != 2 || !cmp.Equal(want[0], got[0].Record) || !cmp.Equal(want[1], got[1].Record) {
+		t.Errorf("waveforms %+v", got)
+	}
 }

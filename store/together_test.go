@@ -264,3 +264,158 @@ func TestProgramsComeAndGo(t *testing.T) {
 		t.Errorf("left beside the logbook: %v", names)
 	}
 }
+
+// TestEverythingAtOnce has two processes log, one of them waveforms, while here trials are logged, struck and decided on,
+// boards corrected, another logbook merged, an import run, the logbook read, searched, audited and backed up, and a page
+// watches. None is told that the logbook is locked, nothing is lost, and the audits find nothing.
+func TestEverythingAtOnce(t *testing.T) {
+	path := filepath.Join(t.TempDir(), "ringbook.db")
+	lb, err := Open(t.Context(), path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer lb.Close()
+	reader, err := OpenReadOnly(t.Context(), path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer reader.Close()
+	other := bench(t, 300)
+	dir := t.TempDir()
+
+	var mu sync.Mutex
+	acknowledged := map[string]bool{}
+	keep := func(id string) {
+		mu.Lock()
+		defer mu.Unlock()
+		acknowledged[id] = true
+	}
+	var longest time.Duration
+	ctx, stop := context.WithCancel(t.Context())
+	defer stop()
+	const each = 25
+	var writers, others sync.WaitGroup
+	for _, work := range []string{strconv.Itoa(each), strconv.Itoa(each) + " with waveforms"} {
+		writers.Go(func() {
+			cmd, lines := startChild(t, path, work)
+			lines.Scan() // ready
+			for lines.Scan() {
+				keep(lines.Text())
+			}
+			if err := cmd.Wait(); err != nil {
+				t.Error("a child failed:", err)
+			}
+		})
+	}
+	write := func(n int, do func(i int) error) {
+		writers.Go(func() {
+			for i := range n {
+				start := time.Now()
+				if err := do(i); err != nil {
+					t.Error(err)
+				}
+				mu.Lock()
+				longest = max(longest, time.Since(start))
+				mu.Unlock()
+			}
+		})
+	}
+	write(each, func(i int) error {
+		id, err := lb.Add(ctx, example())
+		if err != nil {
+			return err
+		}
+		keep(id)
+		trial, err := lb.Trial(ctx, id)
+		if err != nil {
+			return err
+		}
+		if i%2 == 0 {
+			return lb.Strike(ctx, id, "the clip slipped")
+		}
+		_, err = lb.AddDecision(ctx, decided(trial))
+		return err
+	})
+	write(each, func(i int) error {
+		return lb.CorrectBoard(ctx, Board{Name: "Kestrel", DeviceV: float64(80 + i), Revisions: []Revision{{Name: "B", Note: strconv.Itoa(i)}}})
+	})
+	write(3, func(i int) error {
+		_, err := lb.Merge(ctx, other.Path(), nil)
+		return err
+	})
+	write(3, func(i int) error {
+		_, err := lb.AddAll(ctx, many(400), nil)
+		return err
+	})
+	write(3, func(i int) error {
+		r, err := reader.Backup(ctx, filepath.Join(dir, strconv.Itoa(i)+".db"))
+		if err == nil && !r.Sound() {
+			t.Error(r.Damage)
+		}
+		return err
+	})
+	again := func(do func() error) {
+		others.Go(func() {
+			for ctx.Err() == nil {
+				if err := do(); err != nil && !errors.Is(err, context.Canceled) {
+					t.Error(err)
+					return
+				}
+			}
+		})
+	}
+	last := 0
+	again(func() error {
+		n := 0
+		for _, err := range reader.Search(ctx, Query{Words: "drawer", Scope: Scope{IncludeStruck: true}}) {
+			if err != nil {
+				return err
+			}
+			n++
+		}
+		if n < last {
+			t.Errorf("%d found after %d", n, last)
+		}
+		last = n
+		return nil
+	})
+	again(func() error {
+		r, err := reader.Audit(ctx, nil)
+		if err == nil && !r.Sound() {
+			t.Error(r.Damage)
+		}
+		return err
+	})
+	monitor, err := reader.Monitor(ctx)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer monitor.Close()
+	changes := 0
+	again(func() error {
+		changed, err := monitor.Changed(ctx)
+		if changed {
+			changes++
+		}
+		time.Sleep(time.Millisecond)
+		return err
+	})
+	writers.Wait()
+	stop()
+	others.Wait()
+
+	r := mustAudit(t, lb)
+	if want := 3*each + 3*400 + 306; r.Trials != want {
+		t.Errorf("%d trials, want %d", r.Trials, want)
+	}
+	for _, trial := range collect(t, lb, Scope{IncludeStruck: true}) {
+		delete(acknowledged, trial.ID)
+	}
+	if len(acknowledged) != 0 {
+		t.Errorf("acknowledged and lost: %v", acknowledged)
+	}
+	if changes == 0 {
+		t.Error("the page saw no change")
+	}
+	t.Logf("the longest write took %v; the page saw %d changes", longest, changes)
+}
