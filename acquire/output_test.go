@@ -286,3 +286,31 @@ func TestNoInstrument(t *testing.T) {
 		})
 	}
 }
+
+// Work that was cancelled in the middle of an exchange leaves nothing that keeps the supply on.
+func TestSwitchOffAfterCancel(t *testing.T) {
+	f := newFeed(1)
+	rig := feedRig(acquiretest.Serve(t, func(m string) string {
+		if m == "VOLT?" {
+			time.Sleep(200 * time.Millisecond)
+		}
+		return f.answer(m)
+	}))
+	s := openStation(t, rig)
+	ctx, cancel := context.WithCancel(context.Background())
+	if err := s.Switch(ctx, true); err != nil {
+		t.Fatal(err)
+	}
+	time.AfterFunc(50*time.Millisecond, cancel)
+	if _, err := s.Take(ctx, nil); !errors.Is(err, context.Canceled) {
+		t.Fatal(err)
+	}
+	if err := s.Switch(context.WithoutCancel(ctx), false); err != nil {
+		t.Error(err)
+	}
+	f.mu.Lock()
+	defer f.mu.Unlock()
+	if f.on {
+		t.Error("the supply is still on")
+	}
+}
