@@ -4,6 +4,8 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"os"
+	"os/exec"
 	"strings"
 	"testing"
 )
@@ -195,5 +197,38 @@ func TestAuditIsEnded(t *testing.T) {
 	cancel()
 	if _, err := lb.Audit(ctx, nil); !errors.Is(err, context.Canceled) {
 		t.Error(err)
+	}
+}
+
+// TestChainAgainstPython has another program (testdata/chain.py) compute every link from the tables: of a logbook with some of
+// everything and another merged into it, and of one moved forward from schema 3. It runs the Python that RINGBOOK_PYTHON names,
+// /usr/bin/python3 where that is not set; where it is missing the test is skipped, unless RINGBOOK_CHECKS is "all".
+func TestChainAgainstPython(t *testing.T) {
+	python := os.Getenv("RINGBOOK_PYTHON")
+	if python == "" {
+		python = "/usr/bin/python3"
+	}
+	if err := exec.CommandContext(t.Context(), python, "-c", "import sqlite3").Run(); err != nil {
+		if os.Getenv("RINGBOOK_CHECKS") == "all" {
+			t.Fatalf("no %s with sqlite3: %v", python, err)
+		}
+		t.Skipf("no %s with sqlite3: %v", python, err)
+	}
+	full := bench(t, 20)
+	mustMerge(t, full, bench(t, 5))
+	for _, path := range []string{full.Path(), version(t, 3)} {
+		lb, err := Open(t.Context(), path)
+		if err != nil {
+			t.Fatal(err)
+		}
+		r := mustAudit(t, lb)
+		want := fmt.Sprintln(r.Logbook, r.Head, r.Entries)
+		if err := lb.Close(); err != nil {
+			t.Fatal(err)
+		}
+		out, err := exec.CommandContext(t.Context(), python, "testdata/chain.py", path).CombinedOutput()
+		if err != nil || string(out) != want {
+			t.Errorf("%v: it says\n%swant\n%s", err, out, want)
+		}
 	}
 }

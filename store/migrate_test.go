@@ -203,7 +203,7 @@ func TestVersion3MovesForward(t *testing.T) {
 	r := mustAudit(t, lb)
 	// The logbook's id and its whole chain follow from what it held.
 	const id = "bae7da1d-77cc-50fb-baf3-616b34f70b7c"
-	// By another program (Python's hashlib), from the tables by the rules that place.seal and entry.text state.
+	// TestChainAgainstPython has another program find the same.
 	const head = "a587d506cf023e33ce90135c9dbde8d9e7ecc07ccffe232bd2c49a66b78ad82b"
 	if r.Logbook != id || r.Head != head || r.Entries != 12 || r.Trials != 5 || r.Strikes != 1 || r.Decisions != 1 || r.Corrections != 5 {
 		t.Errorf("%+v", r)
