@@ -2,9 +2,6 @@ package store
 
 import (
 	"cmp"
-	"crypto/sha256"
-	"encoding/hex"
-	"io"
 	"slices"
 	"strconv"
 	"strings"
@@ -29,17 +26,11 @@ import (
 // Numbers are unscaled SI in the shortest decimal form that reads back as the same float64, as in the CSV, and a negative
 // zero is 0; at is RFC 3339 in UTC with nine decimals; in texts \ is written \\ and a line feed \n.
 func TrialsDigest(trials []snubber.Trial) string {
-	texts := make([]string, len(trials))
+	var d Digester
 	for i := range trials {
-		texts[i] = string(appendTrial(nil, &trials[i]))
+		d.Add(&trials[i])
 	}
-	slices.Sort(texts) // each begins with its trial's id, and all ids are of one length
-	h := sha256.New()
-	io.WriteString(h, "ringbook trials 1\n") // a hash takes every write
-	for _, text := range texts {
-		io.WriteString(h, text)
-	}
-	return hex.EncodeToString(h.Sum(nil))
+	return d.Sum()
 }
 
 // appendTrial appends the lines of one trial.

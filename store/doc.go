@@ -1,7 +1,8 @@
 // Package store is the logbook: boards and their revisions, and every trial made on them, in one SQLite file.
 //
-// A logbook is written once. A trial, its readings, its waveforms and its strikes, and a decision are rows that are added and never
-// changed, replaced or deleted; triggers in the file itself refuse that to any program that does not first drop them. A
+// A logbook is written once. A trial, its readings, its waveforms and its strikes, a decision, and what is stated of a board are rows
+// that are added and never changed, replaced or deleted; triggers in the file itself refuse that to any program that does
+// not first drop them. Each is sealed into a chain, so that an audit finds what was changed all the same. A
 // trial found to be wrong is struck: a row with the reason, beside the trial, which stays readable. What Add has
 // acknowledged is on the disk: the file is kept in write-ahead-log mode with synchronous FULL, and a process killed at any
 // moment leaves it sound.
@@ -13,7 +14,9 @@
 // or none; Trials streams those in a Scope, Trial finds one by its id or the end of it, Waveforms gives its captures, Strike
 // marks one as wrong. AddDecision logs what was recommended with the trials it rests on
 // and their TrialsDigest, Decisions and Decision give it back, DecisionTrials its trials. A Monitor tells whether anything was
-// written since it was last asked. ReadCSV and WriteCSV carry trials in and out as CSV. What a person
+// written since it was last asked. Search and Count answer a Query of words, ranges and dates. Audit looks at everything; Merge
+// adds another bench's logbook, Backup copies one in use; ExportJSON and ImportJSON carry all of one as JSON Lines, ReadCSV and
+// WriteCSV trials as CSV. What a person
 // has to know of a file that cannot be used is a Fault: the path, what is wrong, and the cure.
 //
 // # The file
@@ -67,6 +70,33 @@
 // A better estimator reads the same samples again, and what it finds is shown beside what was logged. It is not stored:
 // there is nothing that could go stale, and what a decision rested on stays. Where it is to count from now on, log
 // a new trial with the same waveforms, and strike the old one with the reason.
+//
+// # The chain
+//
+// Since schema 4, each trial (with its readings and waveforms), strike, decision and correction is an entry of table chain, in
+// the order of logging: the table it is in (kind), its row there, and its link, the SHA-256 of the entry's text and the link
+// before. The text is that of TrialsDigest for a trial, then "logged_at TIME", and for each waveform the lines waveform (its id),
+// start_s, interval_s, step_v, encoding, sha256 and origin; for the others it has the same style, with the names of the
+// columns. What is hashed before and after it stands at place.seal in chain.go, and testdata/chain.py does it once more in
+// Python. A link depends on no row number, so that it can be computed in any file.
+//
+// Every logbook has an id (table logbook, row 1). An entry that was merged or imported is an entry of this chain too, and table
+// origin keeps the logbook and the place in its chain where it was first logged, with the link there and the one before: it
+// can be proved against either chain. Of a logbook that was copied and went on in both copies the chains part, and
+// their entries merge like any others.
+//
+// A chain shows what was changed in it or taken out of it; it does not show that its end was cut off, or that all of it was made
+// anew. The last link (Report.Head), noted elsewhere, shows that as well.
+//
+// What is stated of a board or revision, a rating or a note, is a row of table correction, each time; tables board and
+// revision have what was stated last.
+//
+// # Words
+//
+// Since schema 4, names are indexed by FTS5 in name_word as they come, and the parts and notes of trials in trial_word, a stretch
+// of some hundred trials at a time; a search looks at the trials since the last stretch as they are. Table stretch has
+// the bounds of each in time, by which a search finds where to begin and where to stop. The index follows from the trials, and is
+// no part of the chain.
 //
 // # The view decision_table
 //

@@ -32,18 +32,42 @@ func (lb *Logbook) Search(ctx context.Context, q Query) iter.Seq2[snubber.Trial,
 			fail(err)
 			return
 		}
-		picked, args, order := s.all()
-		if q.Limit > 0 {
+		if q.Limit == 0 && q.Sort == ByTime && len(s.words) == 0 {
+			picked, args, order := s.all()
+			lb.streamFrom(ctx, tx, picked, order, args, yield)
+			return
+		}
+		for size := q.Limit; ; size = min(max(2*size, firstPage), maxPage) {
+			if q.Limit == 0 { // a page at a time all the same: what SQLite would keep of a whole answer has no bound
+				size = max(size, firstPage)
+				s.Limit = size
+			}
 			page, err := s.page(ctx)
 			if err != nil {
 				fail(err)
 				return
 			}
-			picked, args, order = "SELECT j.value AS seq, j.key AS at FROM json_each(?) j", []any{list(page)}, "picked.at"
+			for part := range slices.Chunk(page, 1000) {
+				if !lb.streamFrom(ctx, tx, "SELECT j.value AS seq, j.key AS at FROM json_each(?) j", "picked.at", []any{list(part)}, yield) {
+					return
+				}
+			}
+			if q.Limit > 0 || len(page) < s.Limit {
+				return
+			}
+			if s.after, err = s.spotOf(ctx, "t.seq = ?", page[len(page)-1]); err != nil {
+				fail(err)
+				return
+			}
 		}
-		lb.streamFrom(ctx, tx, picked, order, args, yield)
 	}
 }
+
+// The pages of an answer without a Limit, in trials: the first, and the most.
+const (
+	firstPage = 256
+	maxPage   = 1 << 16
+)
 
 // Count is how many trials a query asks for, whatever its Limit and After.
 func (lb *Logbook) Count(ctx context.Context, q Query) (n int, err error) {
@@ -90,8 +114,7 @@ func newSearch(ctx context.Context, tx *sql.Tx, q Query) (*search, error) {
 	}
 	s := &search{Query: q, tx: tx}
 	if q.After != "" {
-		s.after = &spot{}
-		err := tx.QueryRowContext(ctx, "SELECT t.seq, "+q.key()+" FROM trial t WHERE t.id = ?", q.After).Scan(&s.after.seq, &s.after.at)
+		s.after, err = s.spotOf(ctx, "t.id = ?", q.After)
 		if errors.Is(err, sql.ErrNoRows) {
 			return nil, fmt.Errorf("begin after trial %s: %w in this logbook; give the whole id of the page's last trial", quote(q.After), ErrNoTrial)
 		}
@@ -114,6 +137,12 @@ func newSearch(ctx context.Context, tx *sql.Tx, q Query) (*search, error) {
 	}
 	s.words, err = seek(ctx, tx, phrases, s.indexed)
 	return s, err
+}
+
+func (s *search) spotOf(ctx context.Context, which string, is any) (*spot, error) {
+	at := &spot{}
+	err := s.tx.QueryRowContext(ctx, "SELECT t.seq, "+s.key()+" FROM trial t WHERE "+which, is).Scan(&at.seq, &at.at)
+	return at, err
 }
 
 // where is everything asked of trial t among the rows first to last.

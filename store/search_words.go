@@ -64,18 +64,26 @@ func (w *wanted) names(ctx context.Context, tx *sql.Tx) error {
 	return err
 }
 
-// condition is what w asks of trial t, where the rows in question are first to last.
+// condition is what w asks of trial t, where the rows in question are first to last. A phrase that names may have is looked for
+// in each of these (+ keeps SQLite from going through all trials of a revision); one that is in the trials' own words leads to
+// the trials that have it.
 func (w *wanted) condition(first, last int64) (string, []any) {
-	where := "t.seq IN (SELECT rowid FROM trial_word WHERE trial_word MATCH ? AND rowid BETWEEN ? AND ?)"
-	args := []any{w.match, first, last}
-	or := func(condition string, ids []int64) {
-		if ids != nil {
-			where, args = where+" OR "+condition, append(args, list(ids))
-		}
+	const own = "t.seq IN (SELECT rowid FROM trial_word WHERE trial_word MATCH ? AND rowid BETWEEN ? AND ?%s)"
+	recent, args := "", []any{w.match, first, last}
+	if w.recent != nil {
+		recent, args = " UNION ALL SELECT value FROM json_each(?)", append(args, list(w.recent))
 	}
-	or("t.seq IN (SELECT value FROM json_each(?))", w.recent)
-	or("t.revision IN (SELECT value FROM json_each(?))", w.revisions)
-	or("EXISTS (SELECT 1 FROM reading x WHERE x.trial = t.seq AND x.instrument IN (SELECT value FROM json_each(?)))", w.instruments)
+	where := fmt.Sprintf(own, recent)
+	if w.revisions == nil && w.instruments == nil {
+		return where, args
+	}
+	where = "+" + where
+	if w.revisions != nil {
+		where, args = where+" OR +t.revision IN (SELECT value FROM json_each(?))", append(args, list(w.revisions))
+	}
+	if w.instruments != nil {
+		where, args = where+" OR EXISTS (SELECT 1 FROM reading x WHERE x.trial = t.seq AND x.instrument IN (SELECT value FROM json_each(?)))", append(args, list(w.instruments))
+	}
 	return "(" + where + ")", args
 }
 

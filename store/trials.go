@@ -35,19 +35,21 @@ func (lb *Logbook) stream(ctx context.Context, picked string, args []any) iter.S
 // inTime is the order of time, of the table picked that streamFrom is given.
 const inTime = "picked.at, picked.seq"
 
-// streamFrom walks the trials of picked, a query for (seq, at), in an order of these that no two trials share a place in.
-func (lb *Logbook) streamFrom(ctx context.Context, tx *sql.Tx, picked, order string, args []any, yield func(snubber.Trial, error) bool) {
-	fail := func(err error) { yield(snubber.Trial{}, fmt.Errorf("read trials: %w", explain(lb.path, err))) }
+// streamFrom walks the trials of picked, a query for (seq, at), in an order of these that no two trials share a place in. It
+// says whether more may follow: no error, and nobody has heard enough.
+func (lb *Logbook) streamFrom(ctx context.Context, tx *sql.Tx, picked, order string, args []any, yield func(snubber.Trial, error) bool) (more bool) {
+	fail := func(err error) bool {
+		yield(snubber.Trial{}, fmt.Errorf("read trials: %w", explain(lb.path, err)))
+		return false
+	}
 	trials, err := tx.QueryContext(ctx, fmt.Sprintf(selectTrials, picked, order), args...)
 	if err != nil {
-		fail(err)
-		return
+		return fail(err)
 	}
 	defer trials.Close()
 	readings, err := openReadings(ctx, tx, picked, order, args)
 	if err != nil {
-		fail(err)
-		return
+		return fail(err)
 	}
 	defer readings.close()
 	for trials.Next() {
@@ -59,16 +61,16 @@ func (lb *Logbook) streamFrom(ctx context.Context, tx *sql.Tx, picked, order str
 			err = ctx.Err() // its end may have cut the readings short
 		}
 		if err != nil {
-			fail(err)
-			return
+			return fail(err)
 		}
 		if !yield(t, nil) {
-			return
+			return false
 		}
 	}
 	if err := trials.Err(); err != nil {
-		fail(err)
+		return fail(err)
 	}
+	return true
 }
 
 const selectTrials = `

@@ -21,7 +21,7 @@ CREATE TABLE correction (
 ) STRICT;
 CREATE INDEX correction_by_board ON correction (board, revision);
 
--- link is the SHA-256 of the entry's text and the link before; audit.go says of what text.
+-- link is the SHA-256 of the entry's text and the link before; place.seal in chain.go says of what text.
 CREATE TABLE chain (
   seq  INTEGER PRIMARY KEY,                                                        -- 1, 2, 3, ... in the order of logging
   kind TEXT NOT NULL CHECK (kind IN ('trial', 'strike', 'decision', 'correction')), -- the entry's table
