@@ -65,8 +65,8 @@ const minSamples = 16
 // for the start (see pencil), then by least squares (see refine). The fit begins where the samples join that curve: from a
 // safe instant after the edge it is grown back as long as they lie on it. It ends before the next edge.
 //
-// Standard uncertainties are those of least squares with the noise taken from what the fit leaves, at least that of
-// the converter's step, widened where the rest is not white. A ring is reported only where it stands out of the noise without
+// Standard uncertainties are those of least squares with the noise taken from what the fit leaves, quantisation with it, widened
+// where the rest is not white. A ring is reported only where it stands out of the noise without
 // its first half cycle, beside plain exponentials; a record of noise, with or without an edge, passes that test less than once in
 // a thousand.
 //

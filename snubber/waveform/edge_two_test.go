@@ -53,3 +53,29 @@ func TestTwoTones(t *testing.T) {
 		}
 	}
 }
+
+// The ring is the tone of more energy, whichever is higher at first.
+func TestTwoTonesOrder(t *testing.T) {
+	n, right := 0, 0
+	for seed := range uint64(350) {
+		rng := rand.New(rand.NewPCG(seed, 45))
+		m := made{hz: 20e6, q: 3 + 25*rng.Float64(), amp: 10, phi: 6 * rng.Float64(), to: 48, perCycle: 15 + 50*rng.Float64(), before: 300, n: 5000, noise: 0.05}
+		x := made{hz: m.hz * (1.4 + 3*rng.Float64()), q: 3 + 35*rng.Float64(), amp: 4 + 26*rng.Float64(), phi: 6 * rng.Float64()}
+		m.second = []made{x}
+		r, _ := m.record(rng)
+		e := readEdge(t, r)
+		_, d := m.rate()
+		_, other := x.rate()
+		more := m.amp * m.amp / d / (x.amp * x.amp / other)
+		if math.Abs(math.Log(more)) < 0.2 || e.Second == nil {
+			continue
+		}
+		n++
+		if (math.Abs(e.RingHz.Value/m.hz-1) < 0.02) == (more > 1) {
+			right++
+		}
+	}
+	if right < n || n < 250 {
+		t.Errorf("the stronger first in %d of %d", right, n)
+	}
+}

@@ -9,9 +9,6 @@ func (r *reader) uncertain() {
 	left := c.residual(v)
 	r.dof = max(1, len(v.y)-c.parameters())
 	variance := left.squares / float64(r.dof)
-	if floor := r.step * r.step / 12; r.step > 0 {
-		variance = max(variance, floor)
-	}
 	variance = max(variance, r.p.tiny*r.p.tiny)
 	r.e.NoiseV = math.Sqrt(variance)
 	r.white = true
