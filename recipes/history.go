@@ -20,14 +20,6 @@ func History(ctx context.Context, p *page.Page, src Source) error {
 
 	// The rows come in the order they were read. A trial is never changed or deleted: one that was wrong is struck, and
 	// stays with its reason.
-	trials, err := src.Trials(ctx)
-	if err != nil {
-		return err
-	}
-	if len(trials) == 0 {
-		p.Say("No trial is in scope. `ringbook trial take` and `ringbook trial enter` log one, `ringbook trial import` many.")
-		return nil
-	}
 	t := page.NewTable("Trials in the order they were read",
 		page.Label("trial", "id"),
 		page.Instant("at", "at"),
@@ -40,12 +32,21 @@ func History(ctx context.Context, p *page.Page, src Source) error {
 		page.Measured("peak", quantity.Voltage, "peak_v"),
 		page.Words("note", "note"),
 	)
-	for _, x := range trials {
+	n := 0
+	for x, err := range src.Each(ctx) {
+		if err != nil {
+			return err
+		}
+		n++
 		row := t.Row(store.ShortID(x.ID), x.At.UTC(), x.Board, x.Revision, string(x.Network.Kind), orNone(x.Network.C), orNone(x.Network.R),
-			reading(x, snubber.RingHz), reading(x, snubber.PeakV), x.Note)
+			estimateOf(x, snubber.RingHz), estimateOf(x, snubber.PeakV), x.Note)
 		if x.Struck != "" {
 			row.Note("struck: %s", x.Struck)
 		}
+	}
+	if n == 0 {
+		p.Say("No trial is in scope. `ringbook trial take` and `ringbook trial enter` log one, `ringbook trial import` many.")
+		return nil
 	}
 	p.Table(t)
 	return nil

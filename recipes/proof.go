@@ -47,7 +47,7 @@ func Confirm(ctx context.Context, src Source, d store.Decision) (*Confirmation, 
 		return nil, err
 	}
 	out := &Confirmation{Decision: d.ID, Board: d.Board, Revision: d.Revision, Warnings: []string{}, decision: d}
-	load, err := out.evidence(ctx, src.Logbook)
+	load, err := out.evidence(ctx, src)
 	if err != nil {
 		return nil, err
 	}
@@ -85,12 +85,13 @@ func Confirm(ctx context.Context, src Source, d store.Decision) (*Confirmation, 
 
 // evidence looks at the trials the decision rests on, warns where they are not what they were, and gives the largest load
 // current they state.
-func (c *Confirmation) evidence(ctx context.Context, lb *store.Logbook) (load float64, err error) {
+func (c *Confirmation) evidence(ctx context.Context, src Source) (load float64, err error) {
 	var trials []snubber.Trial
-	for t, err := range lb.DecisionTrials(ctx, c.Decision) {
+	for t, err := range src.Logbook.DecisionTrials(ctx, c.Decision) {
 		if err != nil {
 			return 0, err
 		}
+		src.used.add(&t)
 		trials = append(trials, t)
 		if t.Network.Kind == snubber.Bare && t.Struck == "" {
 			c.bareTrials = append(c.bareTrials, t)

@@ -2,6 +2,7 @@ package recipes
 
 import (
 	"context"
+	"iter"
 
 	"ringbook/snubber"
 	"ringbook/snubber/waveform"
@@ -22,14 +23,27 @@ type Source struct {
 // Trials are all the trials in scope, in the order they were read. They count as used in the digest at the page's foot.
 func (s Source) Trials(ctx context.Context) ([]snubber.Trial, error) {
 	var all []snubber.Trial
-	for t, err := range s.Logbook.Trials(ctx, s.Scope) {
+	for t, err := range s.Each(ctx) {
 		if err != nil {
 			return nil, err
 		}
 		all = append(all, t)
 	}
-	s.used.add(all)
 	return all, nil
+}
+
+// Each is Trials one at a time, for more of them than memory should hold.
+func (s Source) Each(ctx context.Context) iter.Seq2[snubber.Trial, error] {
+	return func(yield func(snubber.Trial, error) bool) {
+		for t, err := range s.Logbook.Trials(ctx, s.Scope) {
+			if err == nil {
+				s.used.add(&t)
+			}
+			if !yield(t, err) {
+				return
+			}
+		}
+	}
 }
 
 // Fit fits the trials, and says what to fit next of the capacitors on hand.

@@ -15,6 +15,14 @@ func reading(t snubber.Trial, q snubber.Quantity) any {
 	return nil
 }
 
+// estimateOf is the same without what else a reading carries, for tables of very many.
+func estimateOf(t snubber.Trial, q snubber.Quantity) any {
+	if r, ok := t.Reading(q); ok {
+		return snubber.Estimate{Value: r.Value, U: r.U}
+	}
+	return nil
+}
+
 // orNone is a cell of a value that is zero where there is none.
 func orNone(v float64) any {
 	if v == 0 {

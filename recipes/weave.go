@@ -47,7 +47,7 @@ func (r Recipe) Page(ctx context.Context, src Source) (*Woven, error) {
 		}
 		w.Empty = results.Len() == 0
 	}
-	w.Digest = src.used.digest()
+	w.Digest = src.used.sum()
 	w.Foot(page.Foot{Scope: inWords(src.Scope), Digest: w.Digest, Version: madeBy})
 	return w, failed
 }
@@ -70,33 +70,26 @@ func (r Recipe) blank(s store.Scope) *page.Page {
 	return page.New(title)
 }
 
-// used gathers the trials a recipe reads, each once.
+// used gathers what a recipe reads for the digest, each trial once.
 type used struct {
-	reads [][]snubber.Trial
+	digest store.Digester
+	seen   map[string]bool
 }
 
-func (u *used) add(trials []snubber.Trial) {
-	if u != nil && len(trials) > 0 {
-		u.reads = append(u.reads, trials)
+func (u *used) add(t *snubber.Trial) {
+	if u == nil || u.seen[t.ID] {
+		return
 	}
+	if u.seen == nil {
+		u.seen = map[string]bool{}
+	}
+	u.seen[t.ID] = true
+	u.digest.Add(t)
 }
 
-func (u *used) digest() string {
-	if len(u.reads) == 0 {
+func (u *used) sum() string {
+	if len(u.seen) == 0 {
 		return ""
 	}
-	all := u.reads[0]
-	if len(u.reads) > 1 {
-		all = nil
-		seen := map[string]bool{}
-		for _, trials := range u.reads {
-			for _, t := range trials {
-				if !seen[t.ID] {
-					seen[t.ID] = true
-					all = append(all, t)
-				}
-			}
-		}
-	}
-	return store.TrialsDigest(all)
+	return u.digest.Sum()
 }

@@ -66,7 +66,8 @@ func choose(ctx context.Context, obs *observations, start []float64) (*outcome, 
 func (o *outcome) with(ctx context.Context, used []effect, e effect) (*outcome, error) {
 	m := newModel(o.model.obs, append(append([]effect{}, used...), e)...)
 	from := append(append([]float64{}, o.fit.P...), m.startOf(e, o.fit.P))
-	if promising, err := m.promises(ctx, o, from); err != nil || !promising {
+	from, err := m.promises(ctx, o, from)
+	if err != nil || from == nil {
 		return nil, err
 	}
 	out, err := m.settle(ctx, from)
@@ -79,9 +80,9 @@ func (o *outcome) with(ctx context.Context, used []effect, e effect) (*outcome, 
 // screened is on how many trials at most an effect is tried before it is fitted to all of them.
 const screened = 60
 
-// promises says whether the model may do better than the best so far: with the trials it kept, or with those it set aside
-// as well.
-func (m *model) promises(ctx context.Context, best *outcome, start []float64) (bool, error) {
+// promises says whether the model may do better than the best so far, with the trials it kept or with those it set aside
+// as well: where it may, with the parameters from which to fit it to all of them, else with none.
+func (m *model) promises(ctx context.Context, best *outcome, start []float64) (from []float64, err error) {
 	without := &outcome{model: m, kept: thin(best.kept, screened), aside: best.aside}
 	all := &outcome{model: m, kept: without.kept}
 	for k, a := range best.aside {
@@ -93,24 +94,24 @@ func (m *model) promises(ctx context.Context, best *outcome, start []float64) (b
 	if len(without.kept) < len(best.kept) {
 		fit, err := best.model.fit(ctx, plain.kept, best.fit.P, nil)
 		if err != nil {
-			return false, err
+			return nil, err
 		}
 		plain.fit = fit
 	}
 	for _, o := range []*outcome{without, all} {
 		fit, err := m.fit(ctx, o.kept, start, nil)
 		if err != nil {
-			return false, err
+			return nil, err
 		}
 		o.fit = fit
 		if fit.Cov != nil && o.criterion() < plain.criterion()-worth {
-			return true, nil
+			return fit.P, nil
 		}
 		if len(best.aside) == 0 {
 			break
 		}
 	}
-	return false, nil
+	return nil, nil
 }
 
 // thin is at most n of the list, evenly spread.
