@@ -139,7 +139,7 @@ func (p prefix) rising(top onset) []onset {
 		}
 		for len(fresh) > 0 && fresh[0] <= j-short {
 			before.push(fresh[0], size(fresh[0]))
-			fresh = fresh[1:]
+			fresh = append(fresh[:0], fresh[1:]...)
 		}
 		before.forget(j - long)
 		if here < left || here <= right {
@@ -182,7 +182,7 @@ func (q *peaks) push(at int, v float64) {
 // forget those up to the given one.
 func (q *peaks) forget(at int) {
 	for len(q.at) > 0 && q.at[0] <= at {
-		q.at, q.value = q.at[1:], q.value[1:]
+		q.at, q.value = append(q.at[:0], q.at[1:]...), append(q.value[:0], q.value[1:]...)
 	}
 }
 
