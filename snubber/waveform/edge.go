@@ -28,9 +28,10 @@ type Edge struct {
 
 	Warnings []string `json:"warnings"` // each says what spoils the figures, and the cure; never nil
 
-	curve    *curve
-	interval float64
-	spread   float64 // V: highest sample less lowest
+	curve     *curve
+	reference float64 // V: what the curve's level is counted from
+	interval  float64
+	spread    float64 // V: highest sample less lowest
 }
 
 // Tone is a second damped oscillation in the record.
@@ -45,7 +46,7 @@ func (e Edge) Fitted(t float64) (v float64, ok bool) {
 	if e.curve == nil || t < e.FitFrom || t > e.FitTo {
 		return 0, false
 	}
-	return e.curve.at((t - e.FitFrom) / e.interval), true
+	return e.reference + e.curve.at((t-e.FitFrom)/e.interval), true
 }
 
 // Options are the estimator's. The zero value is the default.

@@ -29,7 +29,7 @@ type reader struct {
 // figures of a ring that was found.
 func (r *reader) figures(ctx context.Context) {
 	c := r.ring.curve
-	r.e.curve = c
+	r.e.curve, r.e.reference = c, r.p.ref
 	r.e.FitFrom, r.e.FitTo = r.TimeAt(r.ring.start), r.TimeAt(r.ring.end-1)
 	r.uncertain()
 	main := c.modes[0]
