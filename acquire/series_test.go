@@ -106,6 +106,9 @@ func (b *made) take(_ context.Context, t snubber.Trial) (snubber.Trial, []wavefo
 	if !b.on {
 		b.t.Error("a trial is read with the supply off")
 	}
+	if len(b.across) > 1 {
+		b.t.Errorf("parts across the node together: %v", b.across)
+	}
 	c := 0.0
 	for name, nominal := range b.across {
 		if real, ok := b.really[name]; ok {
@@ -319,6 +322,60 @@ func TestSeriesInDoubt(t *testing.T) {
 	}
 }
 
+// Of two capacitors that contradict each other either may be the wrong one.
+func TestSeriesInDoubtOfTwo(t *testing.T) {
+	b := &made{really: map[string]float64{"A": 47e-12}}
+	s := sit(t, b, "", "A", "B", "done")
+	s.Drawer = []Part{{Name: "A", Value: 470e-12, Tol: 0.05}, {Name: "B", Value: 1e-9, Tol: 0.05}}
+	if _, err := s.run(t); err != nil {
+		t.Fatal(err)
+	}
+	if q := s.asked[len(s.asked)-1]; q.Kind != InDoubt || !strings.Contains(q.Text, "1 nF (B)") || !strings.Contains(q.Why, "unless 470 pF (A) is what is not as it says") {
+		t.Errorf("asked %+v", q)
+	}
+}
+
+// What a part may be off is its tolerance, or how well it was measured; beyond that it is in doubt.
+func TestDoubtOfAPart(t *testing.T) {
+	b := &made{t: t, on: true, across: map[string]float64{}}
+	trial := func(n snubber.Network, really float64) snubber.Trial {
+		b.across = map[string]float64{"": really}
+		got, _, _, err := b.take(t.Context(), snubber.Trial{Board: "b", Revision: "A", Network: n})
+		if err != nil {
+			t.Fatal(err)
+		}
+		return got
+	}
+	measured := func(c float64) snubber.Network {
+		return snubber.Network{Kind: snubber.C, C: c, MeasuredC: c, MeasuredU: 0.005 * c}
+	}
+	before, err := snubber.Fit(t.Context(), []snubber.Trial{trial(snubber.Network{Kind: snubber.Bare}, 0), trial(measured(220e-12), 220e-12), trial(measured(680e-12), 680e-12)})
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, x := range []struct {
+		network snubber.Network
+		really  float64
+		want    string
+	}{
+		{snubber.Network{Kind: snubber.C, C: 470e-12, CTol: 0.1}, 470e-12 * 1.09, ""},
+		{snubber.Network{Kind: snubber.C, C: 470e-12, CTol: 0.1}, 470e-12 * 0.91, ""},
+		{snubber.Network{Kind: snubber.C, C: 470e-12, CTol: 0.1}, 560e-12, "which 56"},
+		{snubber.Network{Kind: snubber.C, C: 470e-12}, 560e-12, "which 56"}, // of no stated tolerance: as the others
+		{measured(470e-12), 470e-12 * 1.09, "which 51"},
+		{measured(470e-12), 470e-12 * 1.01, ""},
+		{measured(470e-12), 0, "as if there were no capacitor"},
+		{snubber.Network{Kind: snubber.Bare}, 0, ""},
+		{snubber.Network{Kind: snubber.Bare}, 100e-12, "it rings at"},
+		{snubber.Network{Kind: snubber.RC, C: 470e-12, R: 10}, 0, ""}, // of these it does not judge
+	} {
+		got := doubt(before, nil, trial(x.network, x.really))
+		if (got == "") != (x.want == "") || !strings.Contains(got, x.want) {
+			t.Errorf("%+v that is %g F: %q, want %q", x.network, x.really, got, x.want)
+		}
+	}
+}
+
 // Sound parts are not asked about.
 func TestSeriesWithoutDoubt(t *testing.T) {
 	s := sit(t, &made{really: map[string]float64{"A": 104e-12, "B": 211e-12, "C": 490e-12, "D": 0.97e-9}}, slices.Repeat([]string{""}, 9)...)
@@ -361,9 +418,16 @@ func TestSeriesUnattended(t *testing.T) {
 	for i := range 50 {
 		s.Drawer = append(s.Drawer, Part{Name: fmt.Sprintf("C%d", i), Value: float64(60+20*i) * 1e-12, Tol: 0.05, Instrument: "relays", Switch: []string{"A"}, Unswitch: []string{"B"}})
 	}
+	b.across["C9"] = 240e-12 // left in by somebody
 	r, err := s.run(t)
 	if err != nil || len(s.asked) > 0 {
 		t.Fatalf("%v, asked %d", err, len(s.asked))
+	}
+	if hz, _ := s.logged[0].Reading(snubber.RingHz); s.logged[0].Network.Kind != snubber.Bare || hz.Value < 100e6 {
+		t.Errorf("the bare node rings at %g Hz", hz.Value)
+	}
+	if len(b.across) > 0 {
+		t.Errorf("left across the node: %v", b.across)
 	}
 	seen := map[string]int{}
 	for _, t := range s.logged {

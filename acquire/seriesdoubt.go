@@ -89,7 +89,7 @@ func unforeseen(f *snubber.FitResult, t snubber.Trial) string {
 	}
 	why := fmt.Sprintf("it rings at %s where the other trials predict %s", quantity.Format(ring.Value, quantity.Frequency, 4), quantity.Format(predicted, quantity.Frequency, 4))
 	if n.Kind == snubber.C {
-		if c := explains(l, ring.Value); c > 0 {
+		if c := explains(l, ring.Value); c > 0.01*l.Capacitance {
 			return why + ", which " + quantity.Format(c, quantity.Capacitance, 3) + " would explain"
 		}
 		return why + ", as if there were no capacitor at all"

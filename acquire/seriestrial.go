@@ -30,6 +30,9 @@ func (s *Series) swap(ctx context.Context, p proposal) error {
 // fits asks a person to fit what is proposed and gives what they fitted; nil when it is to be skipped.
 func (s *Series) fits(ctx context.Context, p proposal) (*proposal, error) {
 	q := Question{Kind: FitPart, Text: s.fitText(p), Why: p.why, Choices: "Enter when it is fitted; or a value (330p), bare, skip, again, done"}
+	if p.part.Switched() || s.Bench.CanFit() {
+		q.Choices = "Enter to go on; or a value (330p), bare, skip, again, done"
+	}
 	for {
 		a, err := s.ask(ctx, q, true, "bare", "skip", "again", "done")
 		switch {

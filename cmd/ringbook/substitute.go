@@ -159,14 +159,14 @@ func (a *app) runSeries(ctx context.Context, series *acquire.Series, station *ac
 	if s.waveform {
 		captures = s.captures
 	}
-	show := &seriesView{app: a, unattended: s.unattended}
+	show := &seriesView{app: a, unattended: s.unattended, noticed: map[string]bool{}}
 	series.Tell = show.tell
-	station.Notify(show.remark)
+	station.Notify(show.notice)
 	if ask != nil {
 		series.Ask = func(ctx context.Context, q acquire.Question) (string, error) { return ask.ask(ctx, show, q) }
 	}
 	series.Take = func(ctx context.Context, t snubber.Trial) (snubber.Trial, []waveform.Record, []string, error) {
-		return a.readTrial(ctx, station, t, captures)
+		return a.readTrial(ctx, station, t, captures, show.read)
 	}
 	series.Log, series.Strike = src.Logbook.AddWithWaveforms, src.Logbook.Strike
 	show.begin(series, station.CanSwitch())

@@ -15,12 +15,13 @@ import (
 type seriesView struct {
 	app        *app
 	unattended bool
-	midline    bool    // a line is begun that more may follow on
-	falling    bool    // it is that of the bus voltage
-	shown      float64 // V: what it showed last
-	rows       int     // of the table
-	bare       float64 // W: the supply's power with the node bare; 0: not known
-	count      string  // how far the series is, in words
+	midline    bool            // a line is begun that more may follow on
+	falling    bool            // it is that of the bus voltage
+	shown      float64         // V: what it showed last
+	rows       int             // of the table
+	bare       float64         // W: the supply's power with the node bare; 0: not known
+	count      string          // how far the series is, in words
+	noticed    map[string]bool // what the station said since the last trial
 }
 
 const caution = "Caution: capacitors keep their charge, and a supply that says it is off may not be. Measure before you touch, " +
@@ -98,7 +99,7 @@ func (v *seriesView) tell(e acquire.Event) {
 		if !v.midline {
 			v.part("    ")
 		}
-		v.part(" Reading %s.", describe(e.Network))
+		v.part(" Reading %s", describe(e.Network))
 	case acquire.Discharging:
 		v.bus(e.Volts)
 	case acquire.Safe:
@@ -112,6 +113,19 @@ func (v *seriesView) tell(e acquire.Event) {
 	case acquire.Remark:
 		v.remark(e.Text)
 	}
+}
+
+// read shows a dot for each quantity.
+func (v *seriesView) read(p acquire.Progress) {
+	if v.midline && p.Repeat == p.Repeats {
+		v.part(".")
+	}
+}
+
+// notice shows what the station says at once. Where it is a warning of the trial too, it is not said again.
+func (v *seriesView) notice(text string) {
+	v.noticed[text] = true
+	v.remark(text + ".")
 }
 
 // are is so many of a thing, with its verb.
@@ -190,8 +204,11 @@ func (v *seriesView) logged(e acquire.Logged) {
 	fmt.Fprintf(v.app.stderr, rowForm, fmt.Sprint(e.Read), cut(fitted, 13), cell(t, snubber.RingHz, quantity.Frequency),
 		cell(t, snubber.DecayS, quantity.Time), cell(t, snubber.PeakV, quantity.Voltage), v.supply(t), store.ShortID(t.ID))
 	for _, w := range e.Warnings {
-		v.remark("Warning: " + w + ".")
+		if !v.noticed[w] {
+			v.remark("Warning: " + w + ".")
+		}
 	}
+	clear(v.noticed)
 	v.state(e)
 }
 
@@ -249,7 +266,7 @@ func (v *seriesView) supply(t snubber.Trial) string {
 	case t.Network.Kind == snubber.Bare || v.bare == 0:
 		return quantity.Format(w, quantity.Power, 4)
 	}
-	return fmt.Sprintf("%+.2g W", w-v.bare)
+	return fmt.Sprintf("%+.2f W", w-v.bare)
 }
 
 func supplyW(t snubber.Trial) (float64, bool) {

@@ -22,12 +22,12 @@ func (a *app) take(ctx context.Context, station *acquire.Station, t snubber.Tria
 			return t, nil, nil, once(err)
 		}
 	}
-	return a.readTrial(ctx, station, t, captures)
+	return a.readTrial(ctx, station, t, captures, nil)
 }
 
 // readTrial reads every instrument, and gives the trial with its readings. With captures of the edge asked for, these come
-// along, and the trial's ring, decay and peak are theirs.
-func (a *app) readTrial(ctx context.Context, station *acquire.Station, t snubber.Trial, captures int) (snubber.Trial, []waveform.Record, []string, error) {
+// along, and the trial's ring, decay and peak are theirs. progress is the station's; nil is allowed.
+func (a *app) readTrial(ctx context.Context, station *acquire.Station, t snubber.Trial, captures int, progress func(acquire.Progress)) (snubber.Trial, []waveform.Record, []string, error) {
 	t.At = time.Now()
 	var records []waveform.Record
 	var warnings []string
@@ -48,7 +48,7 @@ func (a *app) readTrial(ctx context.Context, station *acquire.Station, t snubber
 	if captures == 0 && len(station.Provides()) == 0 {
 		return t, nil, nil, errors.New("the rig has no readings, only a waveform: add --waveform, or a table [instrument.NAME.reading.QUANTITY] to the rig file")
 	}
-	result, err := station.Take(ctx, nil)
+	result, err := station.Take(ctx, progress)
 	if err != nil {
 		return t, nil, nil, once(err)
 	}
