@@ -20,10 +20,11 @@ type printed struct {
 		Rows          []string
 	}
 	Plots []string
+	Foot  string
 }
 
 // TestPagesPrint prints the pages on A4 and Letter, and reads the PDF: no row of a table and no plot is cut between two sheets,
-// a short table is on one, a long one has its head on each, and nothing runs over the edge.
+// a short table is on one, a long one has its head on each, the foot stands under something, and nothing runs over the edge.
 func TestPagesPrint(t *testing.T) {
 	pdftotext := needs(t, "pdftotext", "poppler-utils")
 	chromium := browser(t)
@@ -76,7 +77,7 @@ func bare(s string) string {
 	}, s)
 }
 
-// sheetful is about how many characters fill a sheet: a row with more cannot be on one.
+// sheetful is about how many characters fill a sheet: a row with more cannot be on one, but nothing of it may be lost.
 const sheetful = 2500
 
 // cut says what is not whole on the sheets. The tables and plots come in their order, each from where the last one was.
@@ -91,13 +92,14 @@ func (p printed) cut(sheets []string) (faults []string) {
 		faults = append(faults, fmt.Sprintf("%s is whole on no sheet: %.200s", what, text))
 		return from
 	}
-	at := 0
+	at, long := 0, 0
 	for _, t := range p.Tables {
 		name := fmt.Sprintf("%.40s", t.Caption)
 		at = whole(name+": caption and head", t.Caption+t.Head, at)
 		first := at
 		for i, row := range t.Rows {
 			if len(row) > sheetful {
+				long += strings.Count(row, "x")
 				continue
 			}
 			at = whole(fmt.Sprintf("%s: row %d", name, i+1), row, at)
@@ -111,9 +113,18 @@ func (p printed) cut(sheets []string) (faults []string) {
 			}
 		}
 	}
+	if got := strings.Count(strings.Join(sheets, ""), "x"); got < long {
+		faults = append(faults, fmt.Sprintf("rows of more than a sheet have %d letters x, of which %d are on the sheets", long, got))
+	}
 	at = 0
 	for i, text := range p.Plots {
 		at = whole(fmt.Sprintf("plot %d", i+1), text, at)
+	}
+	if p.Foot != "" {
+		at = whole("the foot", p.Foot, len(sheets)-1)
+		if others := len(sheets[at]) - len(bare(p.Foot)); others < len("12/34")+10 {
+			faults = append(faults, fmt.Sprintf("the foot stands alone on sheet %d", at+1))
+		}
 	}
 	return faults
 }

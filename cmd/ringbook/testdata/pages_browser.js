@@ -114,7 +114,7 @@
     return all.length;
   },
 
-  // What must come whole out of a printer: the tables with their rows, and the plots.
+  // What must come whole out of a printer: the tables with their rows, the plots, the foot.
   printed() {
     const text = (e) => e.innerText ?? e.textContent;
     return {
@@ -122,6 +122,7 @@
         short: t.closest(".short") !== null,
         caption: text(t.caption), head: [...t.tHead.rows[0].cells].filter((th) => !th.querySelector(".unseen")).map(text).join(""), rows: [...t.tBodies[0].rows].map(text),
       })),
+      foot: text(document.querySelector("footer") ?? document.createElement("footer")),
       plots: [...document.querySelectorAll("figure")].map((f) => [...f.querySelectorAll("text")].map(text).join("") + text(f.querySelector("figcaption"))),
     };
   },
