@@ -42,7 +42,7 @@ func openBare(b *testing.B) *bare {
 	if err != nil {
 		b.Fatal(err)
 	}
-	x.exec(b, drops)
+	x.exec(b, drops+"; PRAGMA cache_size = -16384; PRAGMA temp_store = MEMORY") // as the writer has them
 	if x.trial, err = x.conn.PrepareContext(b.Context(), insertTrial); err != nil {
 		b.Fatal(err)
 	}

@@ -140,7 +140,7 @@ func dsn(path, mode string, wait time.Duration) string {
 		fmt.Sprintf("&_pragma=busy_timeout(%d)", wait.Milliseconds()) +
 		"&_pragma=foreign_keys(1)&_pragma=synchronous(FULL)" +
 		"&_pragma=recursive_triggers(1)" + // so that a REPLACE meets the triggers that refuse a DELETE
-		"&_pragma=cache_size(-16384)" + // KiB for each connection: a bulk import spills beyond it, and stays in bounds
+		"&_pragma=cache_size(-4096)" + // KiB for each connection that reads
 		"&_pragma=journal_size_limit(67108864)" // bytes of log kept after a bulk import
 }
 

@@ -36,6 +36,10 @@ func prepareFile(ctx context.Context, lb *Logbook) (_ *writer, err error) {
 	if _, err := conn.ExecContext(ctx, "PRAGMA temp_store = MEMORY"); err != nil {
 		return nil, err
 	}
+	// In KiB: a bulk import spills beyond it, and stays in bounds.
+	if _, err := conn.ExecContext(ctx, "PRAGMA cache_size = -16384"); err != nil {
+		return nil, err
+	}
 	// The writer waits for its turn by itself (writer.begin).
 	if _, err := conn.ExecContext(ctx, "PRAGMA busy_timeout = 0"); err != nil {
 		return nil, err

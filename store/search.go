@@ -66,7 +66,7 @@ func (lb *Logbook) Search(ctx context.Context, q Query) iter.Seq2[snubber.Trial,
 // The pages of an answer without a Limit, in trials: the first, and the most.
 const (
 	firstPage = 256
-	maxPage   = 1 << 16
+	maxPage   = 1 << 14
 )
 
 // Count is how many trials a query asks for, whatever its Limit and After.
