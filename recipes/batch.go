@@ -3,6 +3,7 @@ package recipes
 import (
 	"errors"
 	"fmt"
+	"io"
 	"io/fs"
 	"math/rand/v2"
 	"os"
@@ -15,6 +16,11 @@ type Content struct {
 	Text []byte
 }
 
+func (c Content) write(w io.Writer) error {
+	_, err := w.Write(c.Text)
+	return err
+}
+
 // WriteAll writes all files, in one folder, or none: each under another name with .part in it, and when all are on the disk
 // each is given its own, the last one last. On an error everything is as it was. A program that is killed may leave files with
 // .part or .before in their names, and no file half written. Errors are ErrExists where a file exists and replace is false.
@@ -22,12 +28,27 @@ func WriteAll(files []Content, replace bool) error {
 	var b batch
 	defer func() { b.discard() }()
 	for _, f := range files {
-		if err := b.stage(f.Path, f.Text, replace); err != nil {
+		if err := b.stage(f.Path, f.write, replace); err != nil {
 			return fmt.Errorf("write %q: %w; nothing was written", f.Path, err)
 		}
 	}
 	if err := b.commit(replace); err != nil {
 		return fmt.Errorf("write %q: %w; nothing was written", files[len(files)-1].Path, err)
+	}
+	return nil
+}
+
+// WriteFile writes one file as WriteAll does, with what write puts into it, for a file that memory should not hold. Errors are
+// also those of write.
+func WriteFile(path string, replace bool, write func(io.Writer) error) error {
+	var b batch
+	defer func() { b.discard() }()
+	err := b.stage(path, write, replace)
+	if err == nil {
+		err = b.commit(replace)
+	}
+	if err != nil {
+		return fmt.Errorf("write %q: %w; nothing was written", path, err)
 	}
 	return nil
 }
@@ -44,7 +65,7 @@ type staged struct {
 }
 
 // stage writes a file under another name in the same folder, and waits until it is on the disk.
-func (b *batch) stage(path string, content []byte, replace bool) (err error) {
+func (b *batch) stage(path string, write func(io.Writer) error, replace bool) (err error) {
 	if err := free(path, replace); err != nil {
 		return err
 	}
@@ -58,7 +79,7 @@ func (b *batch) stage(path string, content []byte, replace bool) (err error) {
 		return cause(err)
 	}
 	*b = append(*b, &staged{path: path, part: part})
-	_, err = f.Write(content)
+	err = write(f)
 	if err == nil {
 		err = f.Sync()
 	}

@@ -84,7 +84,7 @@ func TestCommitIsAllOrNothing(t *testing.T) {
 		}
 		var b batch
 		for _, name := range []string{"a.svg", "new.svg", "b.md"} {
-			if err := b.stage(at(name), []byte("new"), replace); err != nil {
+			if err := b.stage(at(name), Content{Text: []byte("new")}.write, replace); err != nil {
 				t.Fatal(err)
 			}
 		}

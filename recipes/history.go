@@ -20,7 +20,7 @@ func History(ctx context.Context, p *page.Page, src Source) error {
 
 	// The rows come in the order they were read. A trial is never changed or deleted: one that was wrong is struck, and
 	// stays with its reason.
-	t := page.NewTable("Trials in the order they were read",
+	t := page.NewTable("Trials "+src.order(),
 		page.Label("trial", "id"),
 		page.Instant("at", "at"),
 		page.Label("board", "board"),

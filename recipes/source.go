@@ -16,8 +16,15 @@ type Source struct {
 	Limits  Request
 	OnHand  []float64 // F: the capacitors on hand, for what to fit next; nil: the E6 series
 	Compare []string  // the revisions to compare, the reference first; nil: all in scope
+	Found   *Found    // what was searched for and found; nil: nothing was searched for
 
 	used *used // what was read, for the digest at a page's foot; nil: nobody asks
+}
+
+// Found is what a search found: Each gives these in place of the trials in scope.
+type Found struct {
+	Order  string // how a title says theirs: "by peak, the lowest first"
+	Trials iter.Seq2[snubber.Trial, error]
 }
 
 // Trials are all the trials in scope, in the order they were read. They count as used in the digest at the page's foot.
@@ -35,7 +42,7 @@ func (s Source) Trials(ctx context.Context) ([]snubber.Trial, error) {
 // Each is Trials one at a time, for more of them than memory should hold.
 func (s Source) Each(ctx context.Context) iter.Seq2[snubber.Trial, error] {
 	return func(yield func(snubber.Trial, error) bool) {
-		for t, err := range s.Logbook.Trials(ctx, s.Scope) {
+		for t, err := range s.trials(ctx) {
 			if err == nil {
 				s.used.add(&t)
 			}
@@ -44,6 +51,21 @@ func (s Source) Each(ctx context.Context) iter.Seq2[snubber.Trial, error] {
 			}
 		}
 	}
+}
+
+func (s Source) trials(ctx context.Context) iter.Seq2[snubber.Trial, error] {
+	if s.Found != nil {
+		return s.Found.Trials
+	}
+	return s.Logbook.Trials(ctx, s.Scope)
+}
+
+// order says in words what order Each gives the trials in.
+func (s Source) order() string {
+	if s.Found != nil {
+		return s.Found.Order
+	}
+	return "in the order they were read"
 }
 
 // Fit fits the trials, and says what to fit next of the capacitors on hand.

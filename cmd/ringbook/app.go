@@ -64,7 +64,7 @@ Exit codes: 0 done; 1 the job failed; 2 the command line is wrong; 3 done, but t
 	f.BoolVar(&a.quiet, "quiet", false, "no progress")
 	f.StringVar(&a.color, "color", "auto", "`WHEN` to colour: auto, always or never; NO_COLOR is honoured")
 	completes(root, "color", "auto", "always", "never")
-	root.AddCommand(demoCommand(a), boardCommand(a), trialCommand(a), substituteCommand(a), fitCommand(a), recommendCommand(a), confirmCommand(a), compareCommand(a), waveformCommand(a), historyCommand(a), pageCommand(a), instrumentCommand(a), benchCommand(a),
+	root.AddCommand(demoCommand(a), boardCommand(a), trialCommand(a), substituteCommand(a), fitCommand(a), recommendCommand(a), confirmCommand(a), compareCommand(a), waveformCommand(a), historyCommand(a), logbookCommand(a), pageCommand(a), instrumentCommand(a), benchCommand(a),
 		completionCommand(a))
 	return root
 }

@@ -35,8 +35,19 @@ func (l *listWriter) add(item any) error {
 	return nil
 }
 
-func (l *listWriter) close() error {
-	fmt.Fprint(l.w, "\n]}\n")
+func (l *listWriter) close() error { return l.end("\n]}\n") }
+
+// closeWith ends the object with one more field.
+func (l *listWriter) closeWith(name string, value any) error {
+	text, err := json.Marshal(value)
+	if err != nil {
+		return fmt.Errorf("writing the answer: %w", err)
+	}
+	return l.end(fmt.Sprintf("\n],\n%q: %s}\n", name, text))
+}
+
+func (l *listWriter) end(text string) error {
+	fmt.Fprint(l.w, text)
 	if err := l.w.Flush(); err != nil {
 		return fmt.Errorf("writing the answer: %w", err)
 	}

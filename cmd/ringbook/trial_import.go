@@ -17,7 +17,7 @@ import (
 func trialImport(a *app) *cobra.Command {
 	return &cobra.Command{
 		Use:   "import FILE.csv",
-		Short: "Log many trials from a CSV file, all or none",
+		Short: "Log many trials from a CSV file, all or none; or what an export wrote",
 		Long: `import logs every row of a CSV file, or none when one is wrong; each wrong row is named by line and column. A dash
 reads standard input. The header names the columns, in any order:
 
@@ -25,8 +25,13 @@ reads standard input. The header names the columns, in any order:
   ring_hz ring_hz_u decay_s decay_s_u peak_v peak_v_u at part note
   (and, where known: esr measured_c measured_c_u supply_a supply_a_u temp_c temp_c_u session struck)
 
-Values are SI numbers or engineering notation (470p, 2n2, 1.8MHz, 5%); an empty cell was not read.`,
+Values are SI numbers or engineering notation (470p, 2n2, 1.8MHz, 5%); an empty cell was not read. A column guarded, as
+'ringbook logbook export' writes it, names the columns of the row whose text has an apostrophe in front that is not part of it.
+
+A file of JSON Lines that 'ringbook logbook export -o FILE.jsonl' wrote is known by its first character. Of it, all that the logbook
+does not hold yet is logged, with its identities, waveforms and strikes. Either may be gzipped.`,
 		Example: `  ringbook trial import trials.csv
+  ringbook trial import everything.jsonl.gz
   ringbook trial import --json - < trials.csv`,
 		Args: words(1, 1),
 		RunE: func(cmd *cobra.Command, args []string) (err error) {
@@ -40,11 +45,22 @@ Values are SI numbers or engineering notation (470p, 2n2, 1.8MHz, 5%); an empty 
 				defer f.Close()
 				in, name = f, args[0]
 			}
+			in, lines, err := unpacked(in)
+			if err != nil {
+				return fmt.Errorf("trial import: nothing was logged: %w", err)
+			}
 			lb, err := a.open(ctx)
 			if err != nil {
 				return err
 			}
 			defer closing(lb, &err)
+			if lines {
+				m, err := lb.ImportJSON(ctx, in, a.counted)
+				if err != nil {
+					return fmt.Errorf("trial import: nothing was logged: %w", err)
+				}
+				return a.cameIn(m, name)
+			}
 			n, err := importAll(ctx, lb, in, a.counted)
 			switch {
 			case err != nil:
