@@ -449,3 +449,24 @@ func TestFewRepeats(t *testing.T) {
 		t.Errorf("the interval is %g times as wide", r)
 	}
 }
+
+// In a long series of parts that serve once each, one with the wrong value on it is set aside as in a short one, whose own
+// error the fit would otherwise pull to wherever it explains the reading.
+func TestMislabelledInALongSeries(t *testing.T) {
+	trials := series(51, 50, 0, 3)
+	f := fit(t, trials)
+	if len(f.SetAside) != 0 {
+		t.Fatalf("a sound series lost %+v", f.SetAside)
+	}
+	for _, wrong := range []struct {
+		at     int
+		factor float64
+	}{{44, 10}, {20, 0.1}, {7, 1.5}} {
+		bad := append([]snubber.Trial{}, trials...)
+		bad[wrong.at].Network.C *= wrong.factor
+		f := fit(t, bad)
+		if len(f.SetAside) != 1 || f.SetAside[0].Trial != bad[wrong.at].ID {
+			t.Errorf("%g times its value at trial %d: set aside %+v, chi-square %g for %d", wrong.factor, wrong.at, f.SetAside, f.Chi2, f.DOF)
+		}
+	}
+}

@@ -24,11 +24,14 @@ const exactTrials = 25
 // test is how a trial is tested: exactly where they are few.
 func (o *outcome) test() func(context.Context, int) (*aside, error) {
 	quick := o.linearised()
-	if len(o.kept) > exactTrials {
-		return quick
-	}
 	return func(ctx context.Context, i int) (*aside, error) {
 		x := &o.model.obs.list[i]
+		if len(o.kept) > exactTrials {
+			if x.c >= 0 && o.model.obs.caps[x.c].uses == 1 && math.Abs(o.fit.D[x.c]) > 1.5 {
+				return o.without(ctx, i) // its own part, pulled to the end of its tolerance: the readings alone do not show it
+			}
+			return quick(ctx, i)
+		}
 		pulled := x.c >= 0 && math.Abs(o.fit.D[x.c]) > 1
 		if a, err := quick(ctx, i); err != nil || a != nil && a.chance > 0.9 && !pulled {
 			return nil, err // as sound as can be, and so is its part: no need of the exact test
@@ -100,6 +103,10 @@ func (o *outcome) mislabelled(i int) float64 {
 func (o *outcome) far(i int) bool {
 	x := &o.model.obs.list[i]
 	v := o.model.values(x, o.fit.P, o.fit.D)
+	if x.c >= 0 && o.model.obs.caps[x.c].uses == 1 {
+		// A part that served nowhere else is at what is printed on it: its error as fitted is what this trial made of it.
+		v[atCs] = o.model.obs.caps[x.c].value
+	}
 	signs, _ := v.signs(!math.IsNaN(x.value[peakAt]))
 	for k, s := range signs {
 		allowed := material[k]
