@@ -130,7 +130,7 @@ func (c *csvFile) read(rec *Record) error {
 		return fmt.Errorf("has one sample, on line %d: an interval needs two, and a ring many more", c.line)
 	}
 	var err error
-	rec.Start, rec.Volts = c.times.first, c.volts.all(n)
+	rec.Start, rec.Volts = c.times.first+0, c.volts.all(n) // adding 0 makes a negative zero, which is no other instant, plain
 	rec.Interval, err = c.times.interval()
 	return err
 }
