@@ -2,8 +2,10 @@ package recipes
 
 import (
 	"errors"
+	"io"
 	"os"
 	"path/filepath"
+	"strings"
 	"testing"
 )
 
@@ -102,6 +104,36 @@ func TestCommitIsAllOrNothing(t *testing.T) {
 		b.discard()
 		same(t, "after a failed commit", folder(t, dir), want)
 	}
+}
+
+// What cannot be written to its end is not there, and what stood there stays.
+func TestWriteFile(t *testing.T) {
+	dir := t.TempDir()
+	path := filepath.Join(dir, "a.csv")
+	half := func(w io.Writer) error {
+		_, err := io.WriteString(w, "half")
+		return errors.Join(err, errors.New("the disk is full"))
+	}
+	for _, stands := range []string{"", "old"} {
+		want := map[string]string{}
+		if stands != "" {
+			want["a.csv"] = stands
+			if err := os.WriteFile(path, []byte(stands), 0o600); err != nil {
+				t.Fatal(err)
+			}
+			if err := WriteFile(path, false, half); !errors.Is(err, ErrExists) {
+				t.Errorf("over a file: %v", err)
+			}
+		}
+		if err := WriteFile(path, true, half); err == nil || !strings.HasSuffix(err.Error(), "the disk is full; nothing was written") {
+			t.Errorf("half written: %v", err)
+		}
+		same(t, "after a failure", folder(t, dir), want)
+	}
+	if err := WriteFile(path, true, Content{Text: []byte("new")}.write); err != nil {
+		t.Error(err)
+	}
+	same(t, "replaced", folder(t, dir), map[string]string{"a.csv": "new"})
 }
 
 func TestFree(t *testing.T) {
