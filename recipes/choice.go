@@ -81,8 +81,8 @@ func (s Source) ratedPeak(ctx context.Context, board string) (float64, error) {
 //go:embed choice.go
 var choiceSource string
 
-// Choice is the page of a recommendation: the network of least loss whose peak stays under the limit with its parts
-// anywhere in tolerance and the loop anywhere the trials allow.
+// Choice is the page of a recommendation: the network of least loss whose peak stays under the limit, with its parts anywhere
+// in tolerance and the loop anywhere the trials allow; and what else would do.
 func Choice(ctx context.Context, p *page.Page, src Source) error {
 	p.Weave(choiceSource)
 
@@ -159,13 +159,13 @@ func ratingFigures(r snubber.Ratings) []page.Figure {
 		value             float64
 	}{
 		{"resistor to buy", "resistor_w", "twice its loss, next rating above", quantity.Power, r.ResistorW},
-		{"its pulse, each edge", "pulse_j", "", quantity.Energy, r.PulseJ},
-		{"its peak current", "resistor_peak_a", "", quantity.Current, r.ResistorPeakA},
+		{"resistor's pulse, each edge", "pulse_j", "", quantity.Energy, r.PulseJ},
+		{"resistor's peak current", "resistor_peak_a", "", quantity.Current, r.ResistorPeakA},
 		{"capacitor to buy", "capacitor_buy_v", "half as much again as it sees, next rating above", quantity.Voltage, r.CapacitorBuyV},
-		{"it sees", "capacitor_v", "at worst", quantity.Voltage, r.CapacitorV},
-		{"its RMS current", "capacitor_rms_a", "", quantity.Current, r.CapacitorRMSA},
-		{"its peak current", "capacitor_peak_a", "", quantity.Current, r.CapacitorPeakA},
-		{"its dv/dt, in a microsecond", "capacitor_v_per_us", "", quantity.Voltage, r.CapacitorVPerS * 1e-6},
+		{"capacitor sees", "capacitor_v", "at worst", quantity.Voltage, r.CapacitorV},
+		{"capacitor's RMS current", "capacitor_rms_a", "", quantity.Current, r.CapacitorRMSA},
+		{"capacitor's peak current", "capacitor_peak_a", "", quantity.Current, r.CapacitorPeakA},
+		{"capacitor's dv/dt", "capacitor_v_per_us", "in a microsecond", quantity.Voltage, r.CapacitorVPerS * 1e-6},
 		{"diode's peak current", "diode_peak_a", "", quantity.Current, r.DiodePeakA},
 		{"diode's recovery, at most", "diode_recovery_s", "", quantity.Time, r.DiodeRecoveryS},
 	} {

@@ -136,7 +136,9 @@ func networkPlot(ctx context.Context, rec *snubber.Recommendation) (*page.Plot, 
 	peak := across(g.Peak)
 	p.Contours(page.LinearAxis("peak", quantity.Voltage, "peak_v"), rs, cs, peak)
 	p.Contours(page.LogAxis("loss", quantity.Power, "loss_w"), rs, cs, across(g.Loss))
-	p.Contours(page.LinearAxis("limit of the peak", quantity.Voltage, "peak_v"), rs, cs, peak).Levels(rec.LimitV)
+	if !round10(rec.LimitV) { // where it is a round number it is among the contours of the peak
+		p.Contours(page.LinearAxis("limit of the peak", quantity.Voltage, "peak_v"), rs, cs, peak).Levels(rec.LimitV)
+	}
 	p.Mark("choice", rec.Choice.R, rec.Choice.C)
 	return p, nil
 }
@@ -194,4 +196,10 @@ func spectrumPlot(before, after *Captured, withWhat string) *page.Plot {
 		p.Upright("bare ring "+quantity.Format(before.Line.Hz, quantity.Frequency, 3), before.Line.Hz)
 	}
 	return p
+}
+
+// round10 says whether v is a multiple of ten, in its own power of ten.
+func round10(v float64) bool {
+	unit := math.Pow(10, math.Floor(math.Log10(v)))
+	return math.Abs(v/unit-math.Round(v/unit)) < 1e-9
 }

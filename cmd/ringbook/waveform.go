@@ -5,6 +5,7 @@ import (
 	"errors"
 	"fmt"
 	"os"
+	"path/filepath"
 
 	"ringbook/recipes"
 	"ringbook/recipes/page"
@@ -115,6 +116,7 @@ func readCaptures(paths []string) ([]waveform.Record, error) {
 		if err != nil {
 			return nil, fmt.Errorf("waveform: %w", err)
 		}
+		r.Origin = filepath.Base(path) // where it lies is this machine's business
 		records = append(records, r)
 	}
 	return records, nil

@@ -8,6 +8,8 @@ import (
 	"go/token"
 	"path"
 	"strings"
+	"unicode"
+	"unicode/utf8"
 )
 
 // script is a recipe as it is written: the body of its function, cut into steps.
@@ -98,12 +100,18 @@ func named(d ast.Decl, function string) bool {
 // shortName is a run-time name without the path of its package.
 func shortName(function string) string { return function[strings.LastIndexByte(function, '/')+1:] }
 
-// lead is the comment above the recipe: of its function, or of the variable that holds it.
+// lead is the comment above the recipe: of its function, or of the variable that holds it. How Go's comments begin, "Name is
+// the page of ...", is for readers of the code: the page begins with what it is of.
 func lead(d ast.Decl, n ast.Node) string {
 	switch d := d.(type) {
 	case *ast.FuncDecl:
 		if n == ast.Node(d) {
-			return markdownOf(d.Doc)
+			text := markdownOf(d.Doc)
+			if of, is := strings.CutPrefix(text, d.Name.Name+" is the page of "); is {
+				first, size := utf8.DecodeRuneInString(of)
+				return string(unicode.ToUpper(first)) + of[size:]
+			}
+			return text
 		}
 	case *ast.GenDecl:
 		if len(d.Specs) == 1 {
