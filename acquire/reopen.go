@@ -156,8 +156,18 @@ func (in *instrument) reopen(ctx context.Context, lost error) error {
 	}
 }
 
+// live says whether an output of the rig was switched on.
+func (s *Station) live() bool {
+	for _, in := range s.instruments {
+		if in.switched != nil && *in.switched {
+			return true
+		}
+	}
+	return false
+}
+
 // resume opens the link once, throws away what comes of before, hears the same identity, and puts the instrument back
-// as it was: set up, with the network it held. An output is not switched: it must be as it was.
+// as it was: set up, with the network it held unless the bus is on. An output is not switched: it must be as it was.
 func (in *instrument) resume(ctx context.Context) error {
 	link, err := in.station.open(ctx, in.Address)
 	if err != nil {
@@ -175,7 +185,12 @@ func (in *instrument) resume(ctx context.Context) error {
 		if err := in.setUp(ctx); err != nil {
 			return err
 		}
-		if in.holds != "" {
+		switch {
+		case in.holds == "":
+		case in.station.live():
+			// A lost link switches nothing; one that lost its power too would be fitted hot.
+			in.station.say(fmt.Sprintf("instrument %s is not told again to fit its network, for the bus is on: if it lost its power too, switch off and fit it anew", in.Name))
+		default:
 			if err := in.send(ctx, in.holds); err != nil {
 				return err
 			}

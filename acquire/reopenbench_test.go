@@ -9,6 +9,7 @@ import (
 	"ringbook/acquire"
 	"ringbook/acquire/simbench"
 	"ringbook/acquire/simbench/device"
+	"ringbook/snubber"
 )
 
 // Whatever the simulated scope does once, captures and readings come through, and the warnings say what happened. An
@@ -80,5 +81,48 @@ func TestTroubles(t *testing.T) {
 	}
 	if _, err := s.Take(t.Context(), nil); err == nil || !strings.Contains(err.Error(), "instrument error -310") || !strings.Contains(err.Error(), "fan") {
 		t.Errorf("an error in its queue: %v", err)
+	}
+}
+
+// A fixture whose link is lost and back is told again to fit its network, but never with the bus on.
+func TestNoFitOnALiveBus(t *testing.T) {
+	bench, err := simbench.Start(t.Context(), simbench.Default())
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer bench.Close()
+	rig, err := acquire.ParseRig("rig.toml", []byte(bench.RigTOML()))
+	if err != nil {
+		t.Fatal(err)
+	}
+	s := openStation(t, rig)
+	var told []string
+	s.Notify(func(m string) { told = append(told, m) })
+	if err := s.Switch(t.Context(), false); err != nil {
+		t.Fatal(err)
+	}
+	if err := s.Discharged(t.Context(), 5, 30*time.Second, nil); err != nil {
+		t.Fatal(err)
+	}
+	if err := s.Fit(t.Context(), snubber.Network{Kind: snubber.C, C: 470e-12}); err != nil {
+		t.Fatal(err)
+	}
+	for _, on := range []bool{true, false} {
+		if err := s.Switch(t.Context(), on); err != nil {
+			t.Fatal(err)
+		}
+		told = nil
+		if err := bench.Trouble("fixture", device.Trouble{Kind: device.Drop, After: 1}); err != nil {
+			t.Fatal(err)
+		}
+		if _, err := s.Take(t.Context(), nil); err != nil && on {
+			t.Fatal(err)
+		}
+		if held := strings.Contains(strings.Join(told, "\n"), "not told again"); held != on || len(told) < 2 {
+			t.Errorf("bus on %v: %q", on, told)
+		}
+	}
+	if m := bench.Mistakes(); len(m) > 0 {
+		t.Errorf("hot swaps: %+v", m)
 	}
 }
