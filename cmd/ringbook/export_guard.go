@@ -42,9 +42,12 @@ func writeGuarded(w io.Writer, trials iter.Seq2[snubber.Trial, error]) (n int, e
 	_, err = io.Copy(w, recast(r, guardTexts))
 	r.CloseWithError(err) // where w fails, WriteCSV fails as well
 	if failed := <-wrote; failed != nil {
-		err = failed
+		return n, failed
 	}
-	return n, err
+	if err != nil {
+		return n, fmt.Errorf("write CSV: %w", err)
+	}
+	return n, nil
 }
 
 // guardTexts guards one row.

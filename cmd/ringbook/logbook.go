@@ -127,7 +127,7 @@ func number(n int, one, many string) string {
 	return fmt.Sprintf("%d %s", n, many)
 }
 
-// readable keeps what a damaged file may hold from moving a terminal's cursor.
+// readable keeps what a damaged file or a file's name may hold from moving a terminal's cursor.
 func readable(s string) string {
 	return strings.Map(func(r rune) rune {
 		if unicode.IsControl(r) || unicode.Is(unicode.Cf, r) {

@@ -76,7 +76,7 @@ one's link in the chain. 'ringbook trial import' reads them back to the bit, and
 			if a.json {
 				return a.printJSON(map[string]any{"file": out, what: n})
 			}
-			return a.say("%d %s are in %s.", n, what, out)
+			return a.say("%d %s are in %s.", n, what, readable(out))
 		},
 	}
 	scope.add(cmd)

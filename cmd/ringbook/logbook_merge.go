@@ -42,6 +42,7 @@ func (a *app) merge(ctx context.Context, other string) (m store.Merged, err erro
 
 // cameIn says what came into the logbook from a file that holds entries with their identities.
 func (a *app) cameIn(m store.Merged, from string) error {
+	from = readable(from)
 	switch {
 	case a.json:
 		return a.printJSON(map[string]any{"logged": m.Trials, "strikes": m.Strikes, "decisions": m.Decisions,
