@@ -88,9 +88,13 @@ func unguardTexts(header, row []string) ([]string, error) {
 	return slices.Delete(row, at, at+1), nil
 }
 
+// mostRow bounds a row, in bytes; store.ReadCSV takes no longer one.
+const mostRow = 4 << 20
+
 // recasting is CSV whose rows are changed as they are read. Each row keeps its line.
 type recasting struct {
 	in     *csv.Reader
+	bound  *io.LimitedReader                            // of a row: a mark left open would otherwise take in the whole file
 	change func(header, row []string) ([]string, error) // header is nil for the header row
 	header []string
 	text   bytes.Buffer
@@ -98,7 +102,8 @@ type recasting struct {
 }
 
 func recast(r io.Reader, change func(header, row []string) ([]string, error)) *recasting {
-	c := &recasting{in: csv.NewReader(r), change: change, line: 1}
+	bound := &io.LimitedReader{R: r}
+	c := &recasting{in: csv.NewReader(bound), bound: bound, change: change, line: 1}
 	c.in.FieldsPerRecord = -1    // whoever reads the text counts
 	c.in.TrimLeadingSpace = true // as store.ReadCSV does
 	return c
@@ -114,7 +119,11 @@ func (c *recasting) Read(p []byte) (int, error) {
 }
 
 func (c *recasting) row() error {
+	c.bound.N = mostRow
 	row, err := c.in.Read()
+	if c.bound.N <= 0 {
+		return fmt.Errorf("after line %d: a row of more than %d bytes; see whether a quotation mark was left open", c.line, mostRow)
+	}
 	if err != nil {
 		return err
 	}
