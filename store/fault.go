@@ -64,7 +64,11 @@ func explain(path string, err error) error {
 		}
 		return fmt.Errorf("logbook %s: %w", path, err)
 	}
-	switch lite.Code() & 0xff {
+	code := lite.Code() & 0xff
+	if lite.Code() == sqlite3.SQLITE_IOERR_SHMSIZE { // no room for the file that readers and writers share
+		code = sqlite3.SQLITE_FULL
+	}
+	switch code {
 	case sqlite3.SQLITE_BUSY, sqlite3.SQLITE_LOCKED:
 		f.Kind = ErrBusy
 		f.What = "another program kept it locked for longer than " + busyWait.String()

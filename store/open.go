@@ -72,7 +72,7 @@ func OpenReadOnly(ctx context.Context, path string) (*Logbook, error) {
 	// Opened with mode=ro, SQLite makes its files beside a logbook and may not remove them again. So the file is opened as
 	// for writing, which SQLite takes for reading where the file is write-protected, and every statement that writes is refused.
 	lb, err := openToRead(ctx, path, "mode=rw&_pragma=query_only(1)")
-	if errors.Is(err, ErrReadOnly) && !exists(path+"-wal") && !exists(path+"-journal") {
+	if (errors.Is(err, ErrReadOnly) || errors.Is(err, ErrFull)) && !holds(path+"-wal") && !holds(path+"-journal") {
 		// No room for the files that let readers and writers share; with no writes pending, none are needed.
 		lb, err = openToRead(ctx, path, "mode=ro&immutable=1")
 	}
@@ -147,4 +147,10 @@ func dsn(path, mode string, wait time.Duration) string {
 func exists(path string) bool {
 	_, err := os.Stat(path)
 	return !errors.Is(err, fs.ErrNotExist)
+}
+
+// holds is whether there is a file at path, and something in it.
+func holds(path string) bool {
+	info, err := os.Stat(path)
+	return err == nil && info.Size() > 0 || err != nil && !errors.Is(err, fs.ErrNotExist)
 }
