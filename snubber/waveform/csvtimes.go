@@ -94,7 +94,8 @@ func (l *timeline) interval() (float64, error) {
 			}
 		}
 	}
-	return fewestDigits(mean, max(unit, float)/float64(l.n-1)), nil
+	// Few samples with few digits leave much open: what is printed is then the better guess than a rounder number.
+	return fewestDigits(mean, min(max(unit, float)/float64(l.n-1), 1e-3*mean)), nil
 }
 
 // lastPlace is one unit of the last place printed, and at most two of a float64's last place at the largest of the times.
