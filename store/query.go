@@ -3,6 +3,7 @@ package store
 import (
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 
 	"ringbook/snubber"
@@ -95,24 +96,44 @@ func (q *Query) condition() (string, []any) {
 	if q.Network != "" {
 		add("t.network = ?", string(q.Network))
 	}
-	within := func(value string, r Range, wrap string) {
-		if r == (Range{}) {
-			return
+	for _, column := range []struct {
+		name string
+		Range
+	}{{"t.c", q.C}, {"t.r", q.R}} {
+		if in, bounds := column.in(column.name); in != "" {
+			add(in, bounds...)
 		}
-		bounds, values := []string{}, []any{}
-		if r.Min != 0 {
-			bounds, values = append(bounds, value+" >= ?"), append(values, r.Min)
-		}
-		if r.Max != 0 {
-			bounds, values = append(bounds, value+" <= ?"), append(values, r.Max)
-		}
-		add(fmt.Sprintf(wrap, strings.Join(bounds, " AND ")), values...)
 	}
-	within("t.c", q.C, "%s")
-	within("t.r", q.R, "%s")
-	within("x.value", q.RingHz, "EXISTS (SELECT 1 FROM reading x WHERE x.trial = t.seq AND x.quantity = 'ring_hz' AND %s)")
-	within("x.value", q.PeakV, "EXISTS (SELECT 1 FROM reading x WHERE x.trial = t.seq AND x.quantity = 'peak_v' AND %s)")
+	for _, r := range q.readings() {
+		in, bounds := r.in("x.value")
+		add("EXISTS (SELECT 1 FROM reading x WHERE x.trial = t.seq AND x.quantity = '"+r.quantity+"' AND "+in+")", bounds...)
+	}
 	return where, args
+}
+
+// readRange is a range of a quantity as read.
+type readRange struct {
+	quantity string
+	Range
+}
+
+// readings are the ranges asked for.
+func (q *Query) readings() []readRange {
+	all := []readRange{{"ring_hz", q.RingHz}, {"peak_v", q.PeakV}}
+	return slices.DeleteFunc(all, func(r readRange) bool { return r.Range == Range{} })
+}
+
+// in is the condition that value is in r; "" where r has no bound.
+func (r Range) in(value string) (string, []any) {
+	var bounds []string
+	var args []any
+	if r.Min != 0 {
+		bounds, args = append(bounds, value+" >= ?"), append(args, r.Min)
+	}
+	if r.Max != 0 {
+		bounds, args = append(bounds, value+" <= ?"), append(args, r.Max)
+	}
+	return strings.Join(bounds, " AND "), args
 }
 
 // key is the value of trial t that the query sorts by, in SQL.

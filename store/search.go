@@ -155,7 +155,7 @@ func (s *search) where(first, last int64) (string, []any) {
 		add("t.seq BETWEEN ? AND ?", first, last)
 	}
 	for _, w := range s.words {
-		condition, values := w.condition(first, last)
+		condition, values := w.condition(first, last, s.readings())
 		add(condition, values...)
 	}
 	if s.after == nil {

@@ -66,15 +66,25 @@ func (w *wanted) names(ctx context.Context, tx *sql.Tx) error {
 
 // condition is what w asks of trial t, where the rows in question are first to last. A phrase that names may have is looked for
 // in each of these (+ keeps SQLite from going through all trials of a revision); one that is in the trials' own words leads to
-// the trials that have it.
-func (w *wanted) condition(first, last int64) (string, []any) {
-	const own = "t.seq IN (SELECT rowid FROM trial_word WHERE trial_word MATCH ? AND rowid BETWEEN ? AND ?%s)"
-	recent, args := "", []any{w.match, first, last}
-	if w.recent != nil {
-		recent, args = " UNION ALL SELECT value FROM json_each(?)", append(args, list(w.recent))
+// the trials that have it. What is asked of their readings is looked at on the way there, before the trial itself: of a narrow
+// range, few are left.
+func (w *wanted) condition(first, last int64, readings []readRange) (string, []any) {
+	named := w.revisions != nil || w.instruments != nil
+	where, args := "t.seq IN (SELECT w.rowid FROM trial_word w", []any(nil)
+	if !named {
+		for i, r := range readings {
+			x := fmt.Sprintf("x%d", i)
+			in, bounds := r.in(x + ".value")
+			where += fmt.Sprintf(" CROSS JOIN reading %[1]s ON %[1]s.trial = w.rowid AND %[1]s.quantity = '%[2]s' AND %[3]s", x, r.quantity, in)
+			args = append(args, bounds...)
+		}
 	}
-	where := fmt.Sprintf(own, recent)
-	if w.revisions == nil && w.instruments == nil {
+	where, args = where+" WHERE trial_word MATCH ? AND w.rowid BETWEEN ? AND ?", append(args, w.match, first, last)
+	if w.recent != nil {
+		where, args = where+" UNION ALL SELECT value FROM json_each(?)", append(args, list(w.recent))
+	}
+	where += ")"
+	if !named {
 		return where, args
 	}
 	where = "+" + where
