@@ -53,7 +53,7 @@ func open(ctx context.Context, path string, wait time.Duration) (*Logbook, error
 	return lb, nil
 }
 
-// OpenReadOnly opens the logbook at path for reading alone. It works on a write-protected file or folder, where a
+// OpenReadOnly opens the logbook at path for reading alone. It works on a write-protected file or folder and on a full disk, where a
 // logbook that was closed in an orderly way is read as it stands. One of an older schema is read as it is: a migration only
 // adds, and what was not there then reads as none.
 //
@@ -73,7 +73,7 @@ func OpenReadOnly(ctx context.Context, path string) (*Logbook, error) {
 	// for writing, which SQLite takes for reading where the file is write-protected, and every statement that writes is refused.
 	lb, err := openToRead(ctx, path, "mode=rw&_pragma=query_only(1)")
 	if (errors.Is(err, ErrReadOnly) || errors.Is(err, ErrFull)) && !holds(path+"-wal") && !holds(path+"-journal") {
-		// No room for the files that let readers and writers share; with no writes pending, none are needed.
+		// No place for the files that let readers and writers share; with no writes pending, none are needed.
 		lb, err = openToRead(ctx, path, "mode=ro&immutable=1")
 	}
 	return lb, err

@@ -17,7 +17,8 @@ import (
 // the logbook. With a Limit it gives one page; the next begins After the last trial's id. After an error the sequence ends.
 //
 // A page in the order of time that is searched for by words costs no more in a long logbook than in a short one, as long as
-// trials were logged more or less in the order they were read. Other orders look at every trial that matches.
+// trials were logged more or less in the order they were read; where few match, it goes back as far as they are apart. Other
+// orders look at every trial that matches.
 func (lb *Logbook) Search(ctx context.Context, q Query) iter.Seq2[snubber.Trial, error] {
 	return func(yield func(snubber.Trial, error) bool) {
 		fail := func(err error) { yield(snubber.Trial{}, fmt.Errorf("search: %w", explain(lb.path, err))) }
