@@ -26,7 +26,7 @@ func smallDisk(t testing.TB) disk {
 		t.Skipf("a disk to fill cannot be mounted here: %v", err)
 	}
 	t.Cleanup(func() {
-		if err := syscall.Unmount(d.folder, 0); err != nil {
+		if err := syscall.Unmount(d.folder, syscall.MNT_DETACH); err != nil { // a failed test may have it in use
 			t.Error(err)
 		}
 	})
