@@ -38,7 +38,7 @@ has a table, figures or a plot. --watch serves the page to browsers on this comp
 		Args:      words(0, 1),
 		ValidArgs: recipeNames(),
 		RunE: func(cmd *cobra.Command, args []string) error {
-			debug.SetGCPercent(50) // a page of very many trials is built in memory once: a little time for a third of it
+			debug.SetGCPercent(40) // a page of very many trials is built in memory once: a little time for a third of it
 			listens := cmd.Flags().Changed("listen")
 			if len(args) == 0 {
 				if out != "" || watch || listens {
