@@ -170,26 +170,26 @@ func kills(t *testing.T) int {
 	return n
 }
 
-// transcript is what a program writes, for a test that waits for it.
-type transcript struct {
+// written is what a program writes, for a test that waits for it.
+type written struct {
 	mu   sync.Mutex
 	text strings.Builder
 }
 
-func (x *transcript) Write(p []byte) (int, error) {
+func (x *written) Write(p []byte) (int, error) {
 	x.mu.Lock()
 	defer x.mu.Unlock()
 	return x.text.Write(p)
 }
 
-func (x *transcript) String() string {
+func (x *written) String() string {
 	x.mu.Lock()
 	defer x.mu.Unlock()
 	return x.text.String()
 }
 
-// count waits until the program has written something so many times.
-func (x *transcript) await(t *testing.T, text string, times int) {
+// await waits until the program has written something so many times.
+func (x *written) await(t *testing.T, text string, times int) {
 	t.Helper()
 	for range 600 {
 		if strings.Count(x.String(), text) >= times {

@@ -69,7 +69,7 @@ func TestSubstituteInterrupted(t *testing.T) {
 	b := startBench(t)
 	for i, signals := range [][]os.Signal{{os.Interrupt}, {syscall.SIGTERM}, {syscall.SIGHUP}, {os.Interrupt, os.Interrupt, syscall.SIGTERM}, {os.Interrupt}} {
 		cmd := b.program(night("A")...)
-		seen := &transcript{}
+		seen := &written{}
 		cmd.Stderr = seen
 		if err := cmd.Start(); err != nil {
 			t.Fatal(err)
@@ -122,7 +122,7 @@ func TestSubstituteTypedEarly(t *testing.T) {
 	t.Chdir(b.dir)
 	stdin, keys := io.Pipe()
 	defer keys.Close()
-	seen := &transcript{}
+	seen := &written{}
 	done := make(chan error, 1)
 	go func() {
 		done <- run(t.Context(), []string{"substitute", "--board", "w", "--revision", "A", "--session", "s", "--probe-c", "3p9", "--c-tol", "5%"}, stdin, io.Discard, seen)
@@ -162,7 +162,7 @@ func TestSubstituteFaults(t *testing.T) {
 	t.Chdir(b.dir)
 	ctx, cancel := context.WithTimeout(t.Context(), 2*time.Minute)
 	defer cancel()
-	seen := &transcript{}
+	seen := &written{}
 	done := make(chan error, 1)
 	go func() { done <- run(ctx, night("A"), strings.NewReader(""), io.Discard, seen) }()
 	for i, trouble := range []string{"DROP SCOPE,4", "STALe COUNTER", "DROP SUPPLY,2,0.5", "LINE SUPPLY,'READY'", "DROP RELAYS", "CUT SCOPE,3", "GARBage FIXTURE,1"} {
