@@ -105,16 +105,23 @@ func (a *app) weave(ctx context.Context, w weaving) (_ *recipes.Woven, err error
 	return w.recipe.Page(ctx, recipes.Source{Logbook: lb, Scope: scope, Limits: w.limits, OnHand: w.onHand})
 }
 
+// outFile is the file that -o names; nil where it names none.
+func outFile(out string, force bool) (*recipes.File, error) {
+	if out == "" {
+		return nil, nil
+	}
+	file, err := recipes.NewFile(out, force)
+	if errors.Is(err, recipes.ErrEnding) {
+		return nil, &usageError{err}
+	}
+	return file, err
+}
+
 // weavePage weaves a page once, to a file or to standard output.
 func (a *app) weavePage(ctx context.Context, w weaving, out string, force bool) error {
-	var file *recipes.File
-	if out != "" {
-		var err error
-		if file, err = recipes.NewFile(out, force); errors.Is(err, recipes.ErrEnding) {
-			return &usageError{err}
-		} else if err != nil {
-			return err
-		}
+	file, err := outFile(out, force)
+	if err != nil {
+		return err
 	}
 	woven, failed := a.weave(ctx, w)
 	if failed != nil && (woven == nil || woven.Empty) {
@@ -124,7 +131,6 @@ func (a *app) weavePage(ctx context.Context, w weaving, out string, force bool) 
 	if failed != nil {
 		answer.Error = new(failed.Error())
 	}
-	var err error
 	switch {
 	case file != nil:
 		if answer.Files, err = file.Write(woven.Page); err != nil {

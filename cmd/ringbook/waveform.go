@@ -36,17 +36,11 @@ that are logged with a trial, in place of files: the trial's own readings stay a
 		Args: words(0, 1000),
 		RunE: func(cmd *cobra.Command, args []string) error {
 			ctx := cmd.Context()
-			var file *recipes.File
-			if out != "" {
-				var err error
-				if file, err = recipes.NewFile(out, force); errors.Is(err, recipes.ErrEnding) {
-					return &usageError{err}
-				} else if err != nil {
-					return fmt.Errorf("waveform: %w", err)
-				}
+			file, err := outFile(out, force)
+			if err != nil {
+				return err
 			}
 			var records []waveform.Record
-			var err error
 			title := "The captured edge"
 			switch {
 			case trial != "" && len(args) > 0:
@@ -108,6 +102,9 @@ func readCaptures(paths []string) ([]waveform.Record, error) {
 	var records []waveform.Record
 	for _, path := range paths {
 		f, err := os.Open(path)
+		if errors.Is(err, os.ErrNotExist) {
+			return nil, fmt.Errorf("waveform: there is no file %s; save the capture as CSV, time in seconds and volts, and name it here", path)
+		}
 		if err != nil {
 			return nil, fmt.Errorf("waveform: %w", err)
 		}
