@@ -25,13 +25,10 @@ const exactTrials = 25
 func (o *outcome) test() func(context.Context, int) (*aside, error) {
 	quick := o.linearised()
 	return func(ctx context.Context, i int) (*aside, error) {
-		x := &o.model.obs.list[i]
 		if len(o.kept) > exactTrials {
-			if x.c >= 0 && o.model.obs.caps[x.c].uses == 1 && math.Abs(o.fit.D[x.c]) > 1.5 {
-				return o.without(ctx, i) // its own part, pulled to the end of its tolerance: the readings alone do not show it
-			}
 			return quick(ctx, i)
 		}
+		x := &o.model.obs.list[i]
 		pulled := x.c >= 0 && math.Abs(o.fit.D[x.c]) > 1
 		if a, err := quick(ctx, i); err != nil || a != nil && a.chance > 0.9 && !pulled {
 			return nil, err // as sound as can be, and so is its part: no need of the exact test
