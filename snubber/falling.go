@@ -53,15 +53,16 @@ func (f *falling) slope(t float64) float64 {
 // peak is the highest voltage, walked to as highest has it.
 func (f *falling) peak() (when, volts float64) {
 	m, w0 := f.bus.modes, f.bus.w0
-	rate := m.slowest()
+	rate, slow := m.slowest(), m.slowest()
 	if m.third {
-		rate = math.Max(rate, -m.p)
+		rate, slow = math.Max(rate, -m.p), math.Min(slow, -m.p)
 	}
-	period := 2 * math.Pi / rate
+	period, end := 2*math.Pi/rate, 60/slow
 	if m.q > 0 {
 		period = 2 * math.Pi / math.Sqrt(m.q)
+		end = 1.5 * period
 	}
-	return highest(f.v[atE], f.v[atFall]+1.5*period/w0, math.Min(period, 2*math.Pi/rate)/w0/16, f.slope, f.at)
+	return highest(f.v[atE], f.v[atFall]+end/w0, math.Min(period, 2*math.Pi/rate)/w0/16, f.slope, f.at)
 }
 
 // highest walks from 0 to end in the given step, or in four thousandths of the way where that is longer, and gives the
